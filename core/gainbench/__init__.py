@@ -1,0 +1,1 @@
+"""Gainbench: cascaded PI gains for DC and permanent-magnet drives, checked on the sampled loops."""

@@ -1,0 +1,284 @@
+"""Edits of a sheet's text that leave comments, order and spelling alone: all that is known of tomlkit."""
+
+from __future__ import annotations
+
+import math
+import re
+import tomllib
+from collections.abc import Mapping, MutableMapping, Sequence
+from typing import Any
+
+from gainbench.errors import SheetError
+from gainbench.sheetfile.entries import Count, Flag, Gain, Number, shown
+from gainbench.sheetfile.tables import ENTRIES
+
+_PART = re.compile(r'\.?(?:"(?P<quoted>[^"]*)"|(?P<bare>[^.\[\]"]+))|\[(?P<index>\d{1,6})\]')
+_TOML_NUMBER = re.compile(r"[+-]?(?:0|[1-9](?:_?\d)*)(?:\.\d(?:_?\d)*)?(?:[eE][+-]?\d+)?", re.ASCII)
+_GAIN_PATH = re.compile(r"kept\[\d+\]\.(?P<loop>current|speed)\.(?P<key>k[pi])")
+
+Key = str | int
+
+
+def split_path(path: str) -> list[Key]:
+    """The keys of a dotted path; what follows ``tolerance.`` is one key.
+
+    Raises
+    ------
+    SheetError
+        If the text is no path.
+    """
+    head, dot, rest = path.partition(".")
+    if head == "tolerance" and dot:
+        return [head, rest.strip('"')]
+    keys: list[Key] = []
+    position = 0
+    while position < len(path):
+        match = _PART.match(path, position)
+        if match is None:
+            break
+        index = match["index"]
+        keys.append(int(index) if index is not None else match["quoted"] or match["bare"] or "")
+        position = match.end()
+    if position < len(path) or not keys:
+        raise SheetError(f"{shown(path)} is not the path of an entry (for example machine.resistance)")
+    return keys
+
+
+def look_up(data: object, keys: Sequence[Key]) -> object | None:
+    """The plain value at a path, None where there is none."""
+    node = data
+    for position, key in enumerate(keys):
+        if isinstance(node, Mapping) and isinstance(key, str):
+            if key not in node and "." in key:
+                return look_up(node, [*key.split("."), *keys[position + 1 :]])
+            node = node.get(key)
+        elif isinstance(node, list) and isinstance(key, int) and key < len(node):
+            node = node[key]
+        else:
+            return None
+    return node
+
+
+def spelling(text: str, path: str, value: object) -> str:
+    """A number or a switch as it stands in the text."""
+    try:
+        item = look_up(_parsed(text, path), split_path(path))
+    except SheetError:
+        item = None
+    as_string = getattr(item, "as_string", None)
+    return str(as_string()) if as_string is not None else shown(value)
+
+
+def with_values(text: str, values: Mapping[str, str | int | float | bool | None], *, name: str) -> str:
+    """The text with some values set, added, or taken out with None.
+
+    Raises
+    ------
+    SheetError
+        If a path leads nowhere.
+    """
+    document = _parsed(text, name)
+    wanted: dict[str, object | None] = {}
+    for path, value in values.items():
+        keys = split_path(path)
+        item = _item(path, value)
+        try:
+            wanted[path] = _put(document, keys, item)
+        except _EDIT_FAULTS:
+            raise SheetError(f"{name}: {path} cannot be reached; check the path, or edit the file itself") from None
+    result = _written(document, text)
+    _confirm(result, wanted, name)
+    return result
+
+
+def with_kept(text: str, entry: Mapping[str, object], *, name: str) -> str:
+    """The text with one more [[kept]] at the end of the shelf."""
+    import tomlkit
+
+    document = _parsed(text, name)
+    try:
+        table = tomlkit.table()
+        for key, value in entry.items():
+            if isinstance(value, Mapping):
+                pairs = ", ".join(f"{inner} = {tomlkit.item(own).as_string()}" for inner, own in value.items())
+                table.add(key, tomlkit.parse(f"x = {{ {pairs} }}")["x"])
+            else:
+                table.add(key, tomlkit.item(value))
+        table.trivia.indent = ""
+        if "kept" in document:
+            shelf = document["kept"]
+            if isinstance(shelf, tomlkit.items.AoT) and len(shelf):
+                _end_with_blank_line(shelf[-1])
+            shelf.append(table)
+        else:
+            _end_with_blank_line(document)
+            shelf = tomlkit.aot()
+            shelf.append(table)
+            document.add("kept", shelf)
+    except _EDIT_FAULTS:
+        raise SheetError(f"{name}: the shelf cannot be written to as it stands in the file") from None
+    result = _written(document, text)
+    _same_but(text, result, "kept", name)
+    return result
+
+
+def without_kept(text: str, index: int, *, name: str) -> str:
+    """The text without one of its [[kept]]."""
+    document = _parsed(text, name)
+    try:
+        shelf: Any = document["kept"]
+        del shelf[index]
+        if not len(shelf):
+            del document["kept"]
+    except _EDIT_FAULTS:
+        raise SheetError(f"{name}: the shelf cannot be written to as it stands in the file") from None
+    result = _written(document, text)
+    _same_but(text, result, "kept", name)
+    return result
+
+
+# WORKAROUND tomlkit 0.13 to 0.15: tables out of order and dotted keys fail in the middle of an edit, each with a
+# different built-in exception; an edit that went through is confirmed by reading its result.
+_EDIT_FAULTS = (KeyError, IndexError, TypeError, ValueError, AttributeError, AssertionError, RecursionError)
+
+
+def _parsed(text: str, name: str) -> Any:
+    """The text as tomlkit's document."""
+    import tomlkit
+
+    try:
+        return tomlkit.parse(text)
+    except _EDIT_FAULTS as error:
+        raise SheetError(f"{name}: the text cannot be edited: {error}") from None
+
+
+def _written(document: Any, before: str) -> str:
+    """The document as text, with the line ends it had."""
+    import tomlkit
+
+    text = tomlkit.dumps(document)
+    if "\r\n" in before and "\n" not in before.replace("\r\n", ""):
+        return text.replace("\r\n", "\n").replace("\n", "\r\n")
+    return text
+
+
+def _item(path: str, value: str | int | float | bool | None) -> Any:
+    """A value as typed into a box, as an item of the text; None stays None."""
+    import tomlkit
+
+    if value is None:
+        return None
+    if isinstance(value, float) and not math.isfinite(value):
+        raise SheetError(f"{path}: the number must be finite")
+    if isinstance(value, str):
+        match = _GAIN_PATH.fullmatch(path)
+        entry = ENTRIES.get(f"aims.{match['loop']}.{match['key']}" if match else path)
+        plain = value.strip()
+        if isinstance(entry, Flag) and plain in {"true", "false"}:
+            return tomlkit.item(plain == "true")
+        if isinstance(entry, Number | Count | Gain) and _TOML_NUMBER.fullmatch(plain):
+            return tomlkit.parse(f"x = {plain}")["x"]
+    return tomlkit.item(value)
+
+
+def _put(document: Any, keys: Sequence[Key], item: Any) -> object | None:
+    """Set, add or take out one value; gives the plain value that must be there afterwards."""
+    import tomlkit
+
+    if len(keys) == 2 and keys[0] == "tolerance" and keys[1] not in document.get("tolerance", {}):
+        nested = [keys[0], *str(keys[1]).split(".")]
+        keys = nested if look_up(document, nested) is not None else keys
+    node = document
+    for key in keys[:-1]:
+        if isinstance(key, str) and key not in node:
+            if item is None:
+                return None
+            table = tomlkit.table()
+            if node is document:
+                _end_with_blank_line(document)
+            else:
+                table.add(tomlkit.nl())
+            node[key] = table
+        node = node[key]
+    last = keys[-1]
+    if not isinstance(last, str) or not isinstance(node, MutableMapping):
+        raise KeyError(last)
+    if item is None:
+        if last in node:
+            del node[last]
+        return None
+    if last in node:
+        _replace(node, last, item)
+    else:
+        _append(node, last, item)
+    plain: object = item.unwrap()
+    return plain
+
+
+def _replace(table: Any, key: str, item: Any) -> None:
+    """Change a value, and leave the comment behind it in its column."""
+    import tomlkit
+
+    container = table.value if isinstance(table, tomlkit.items.Table) else None
+    width = len(container.item(key).as_string()) if container is not None else 0
+    table[key] = item
+    if container is None:
+        return
+    new = container.item(key)
+    if new.trivia.comment and not new.trivia.comment_ws.strip(" "):
+        new.trivia.comment_ws = " " * max(1, len(new.trivia.comment_ws) + width - len(new.as_string()))
+
+
+def _append(table: Any, key: str, item: Any) -> None:
+    """Add a key below the last one of a table, above the blank lines and comments that lead to the next table."""
+    import tomlkit
+
+    container = table.value if isinstance(table, tomlkit.items.Table) else None
+    tail: list[Any] = []
+    if container is not None:
+        body = container.body
+        end = max((index for index, (name, _) in enumerate(body) if name is not None), default=-1)
+        gap = next(
+            (index for index in range(end + 1, len(body)) if isinstance(body[index][1], tomlkit.items.Whitespace)), None
+        )
+        if gap is not None:
+            tail = body[gap:]
+            del body[gap:]
+    table[key] = item
+    if container is not None:
+        container.body.extend(tail)
+
+
+def _end_with_blank_line(table: Any) -> None:
+    """Leave a blank line below a table, or below all that there is."""
+    import tomlkit
+
+    text = table.as_string()
+    if text and not text.endswith("\n"):
+        table.add(tomlkit.nl())
+    if text and not text.endswith(("\n\n", "\r\n\r\n")):
+        table.add(tomlkit.nl())
+
+
+def _confirm(text: str, wanted: Mapping[str, object | None], name: str) -> None:
+    """See that the text now says what was asked for."""
+    try:
+        data = tomllib.loads(text)
+    except ValueError:
+        data = {}
+    for path, value in wanted.items():
+        if look_up(data, split_path(path)) != value:
+            raise SheetError(f"{name}: {path} cannot be changed as it stands in the file; edit the file itself")
+
+
+def _same_but(before: str, after: str, key: str, name: str) -> None:
+    """See that an edit touched nothing but one key."""
+    try:
+        old, new = tomllib.loads(before), tomllib.loads(after)
+    except ValueError:
+        old, new = {}, {key: None}
+        old["changed"] = True
+    old.pop(key, None)
+    new.pop(key, None)
+    if old != new:
+        raise SheetError(f"{name}: {key} cannot be changed as it stands in the file; edit the file itself")

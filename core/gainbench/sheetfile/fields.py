@@ -1,0 +1,59 @@
+"""What a window asks about single entries: which there are, of what dimension, and what a typed text means."""
+
+from __future__ import annotations
+
+from gainbench.errors import SheetError, SheetProblem
+from gainbench.sheetfile.entries import Count, EntryError, Flag, Gain, GainValue, Number, Quantity, shown
+from gainbench.sheetfile.tables import ENTRIES
+from gainbench.units import Dimension
+
+
+def quantity_paths() -> dict[str, Dimension]:
+    """Every quantity and number of a sheet by its dotted path, and its dimension."""
+    return {path: entry.dimension for path, entry in ENTRIES.items() if isinstance(entry, Quantity | Number | Gain)}
+
+
+def read_entry(path: str, text: str) -> float | int | bool | str:
+    """What a text typed for one entry means.
+
+    Parameters
+    ----------
+    path : str
+        ``machine.resistance``.
+    text : str
+        As typed into a box: without quotes.
+
+    Returns
+    -------
+    float, int, bool or str
+        In the model's unit; the word itself for a choice. A gain is SI in the unit that was typed.
+
+    Raises
+    ------
+    SheetError
+        If the text is refused, with one problem; the rules between entries are not applied.
+    """
+    entry = ENTRIES.get(path)
+    if entry is None:
+        raise SheetError(f"{shown(path)} is not the path of an entry (for example machine.resistance)")
+    value: object = text
+    plain = text.strip()
+    try:
+        if isinstance(entry, Number | Gain):
+            value = float(plain)
+        elif isinstance(entry, Count):
+            value = int(plain)
+        elif isinstance(entry, Flag):
+            value = {"true": True, "false": False}.get(plain, text)
+    except ValueError:
+        value = text
+    try:
+        result = entry.read(value)
+    except EntryError as error:
+        problem = SheetProblem(path=path, value=shown(text), reason=error.reason, example=error.example)
+        raise SheetError(str(problem), problems=(problem,)) from None
+    if isinstance(result, GainValue):
+        return result.value
+    if isinstance(result, float | int | str):
+        return result
+    return str(result)

@@ -1,0 +1,41 @@
+"""Demo sheets, templates and icons, as package data."""
+
+from __future__ import annotations
+
+from importlib.resources import files
+from importlib.resources.abc import Traversable
+
+_SUFFIX = ".bench.toml"
+
+
+def demo_sheet_names() -> tuple[str, ...]:
+    """Names of the demo sheets, without ``.bench.toml``; the one that opens by default comes first."""
+    names = sorted(one.name.removesuffix(_SUFFIX) for one in _sheets().iterdir() if one.name.endswith(_SUFFIX))
+    return tuple(sorted(names, key=lambda name: name != "label-unwinder"))
+
+
+def demo_sheet(name: str) -> Traversable:
+    """The file of a demo sheet.
+
+    Parameters
+    ----------
+    name : str
+        One of :func:`demo_sheet_names`.
+
+    Returns
+    -------
+    Traversable
+        Its place in the package; ``read_text(encoding="utf-8")`` gives its text.
+
+    Raises
+    ------
+    KeyError
+        If there is no demo sheet of that name.
+    """
+    if name not in demo_sheet_names():
+        raise KeyError(name)
+    return _sheets() / f"{name}{_SUFFIX}"
+
+
+def _sheets() -> Traversable:
+    return files(__name__) / "sheets"
