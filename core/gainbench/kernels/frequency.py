@@ -1,0 +1,195 @@
+"""Frequency response of a sampled plant and of a PI controller, from state space in delta form.
+
+With z = exp(j w T) and delta = z - 1 = -2 sin^2(w T/2) + j sin(w T), the response is c (delta I - m)^-1 b + d: no
+polynomial in z is expanded, so that frequencies far below the rate keep their digits. The state matrix is brought to
+Hessenberg form once, so that each frequency costs one elimination below the diagonal.
+"""
+
+from __future__ import annotations
+
+import cmath
+import math
+
+import numpy as np
+from numba import njit
+from numpy.typing import NDArray
+
+from gainbench.kernels.lifting import BACKWARD, FORWARD
+from gainbench.kernels.loop_records import SampledPlant
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def hessenberg(plant: SampledPlant) -> SampledPlant:
+    """The same plant in other coordinates, by Householder reflections: m is zero below its first subdiagonal.
+
+    References
+    ----------
+    G. H. Golub, C. F. Van Loan, Matrix Computations, section 7.4 (from memory).
+    """
+    n = plant.m.shape[0]
+    m, c = plant.m.copy(), plant.c.copy()
+    b0, b1, bw = plant.b0.copy(), plant.b1.copy(), plant.bw.copy()
+    v = np.zeros(n)
+    for k in range(n - 2):
+        norm = 0.0
+        for r in range(k + 1, n):
+            norm += m[r, k] * m[r, k]
+        norm = math.sqrt(norm)
+        rest = 0.0
+        for r in range(k + 2, n):
+            rest += abs(m[r, k])
+        if rest == 0.0:
+            continue
+        v[:] = 0.0
+        v[k + 1 :] = m[k + 1 :, k]
+        v[k + 1] += norm if v[k + 1] >= 0.0 else -norm
+        size = 0.0
+        for r in range(k + 1, n):
+            size += v[r] * v[r]
+        beta = 2.0 / size
+        for j in range(n):
+            total = 0.0
+            for r in range(k + 1, n):
+                total += v[r] * m[r, j]
+            for r in range(k + 1, n):
+                m[r, j] -= beta * total * v[r]
+        for r in range(n):
+            total = 0.0
+            for j in range(k + 1, n):
+                total += m[r, j] * v[j]
+            for j in range(k + 1, n):
+                m[r, j] -= beta * total * v[j]
+        for column in (c, b0, b1, bw):
+            total = 0.0
+            for r in range(k + 1, n):
+                total += v[r] * column[r]
+            for r in range(k + 1, n):
+                column[r] -= beta * total * v[r]
+        m[k + 2 :, k] = 0.0
+    return SampledPlant(
+        m, c, b0, b1, bw, plant.d0, plant.d1, plant.dw, plant.period, plant.shift, plant.window, plant.scale,
+        plant.filter_gain,
+    )
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def workspace(plant: SampledPlant) -> NDArray[np.complex128]:
+    """Room for one elimination, shape (n + 2, n)."""
+    n = plant.m.shape[0]
+    return np.empty((n + 2, n), dtype=np.complex128)
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def plant_at(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> complex:
+    """Measured value over controller output at one frequency; ``plant.m`` is upper Hessenberg."""
+    n = plant.m.shape[0]
+    angle = w * plant.period
+    half = math.sin(0.5 * angle)
+    delta = complex(-2.0 * half * half, math.sin(angle))
+    back = complex(math.cos(angle), -math.sin(angle))
+    fed = plant.dw != 0.0
+    for r in range(n):
+        if plant.bw[r] != 0.0:
+            fed = True
+    # Rows of delta I - m, and both right-hand sides behind them.
+    for r in range(n):
+        for k in range(max(r - 1, 0), n):
+            work[r, k] = -plant.m[r, k]
+        work[r, r] += delta
+        work[n, r] = plant.b0[r] + plant.b1[r] * back
+        work[n + 1, r] = plant.bw[r]
+    for k in range(n - 1):
+        low = work[k + 1, k]
+        if low == 0.0:
+            continue
+        top = work[k, k]
+        if abs(low.real) + abs(low.imag) > abs(top.real) + abs(top.imag):
+            for j in range(k, n):
+                work[k, j], work[k + 1, j] = work[k + 1, j], work[k, j]
+            work[n, k], work[n, k + 1] = work[n, k + 1], work[n, k]
+            work[n + 1, k], work[n + 1, k + 1] = work[n + 1, k + 1], work[n + 1, k]
+            low, top = top, low
+        factor = low / top
+        for j in range(k + 1, n):
+            work[k + 1, j] -= factor * work[k, j]
+        work[n, k + 1] -= factor * work[n, k]
+        if fed:
+            work[n + 1, k + 1] -= factor * work[n + 1, k]
+    raw = plant.d0 + plant.d1 * back
+    loop = complex(plant.dw, 0.0)
+    for side in range(2 if fed else 1):
+        for k in range(n - 1, -1, -1):
+            value = work[n + side, k]
+            for j in range(k + 1, n):
+                value -= work[k, j] * work[n + side, j]
+            value /= work[k, k]
+            work[n + side, k] = value
+            if side == 0:
+                raw += plant.c[k] * value
+            else:
+                loop += plant.c[k] * value
+    ahead = complex(plant.scale, 0.0)
+    if plant.window > 1:
+        # Sum of z^-i over the window: a ratio of sines with half the window's delay.
+        ratio = math.sin(0.5 * angle * plant.window) / half
+        lag = -0.5 * angle * (plant.window - 1)
+        ahead *= ratio * complex(math.cos(lag), math.sin(lag))
+    if plant.shift > 0:
+        lag = -angle * plant.shift
+        ahead *= complex(math.cos(lag), math.sin(lag))
+    if plant.filter_gain != 1.0:
+        ahead *= plant.filter_gain / (1.0 - (1.0 - plant.filter_gain) * back)
+    if fed:
+        return ahead * raw / (1.0 - ahead * loop)
+    return ahead * raw
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def integral_at(w: float, period: float, rule: int) -> complex:
+    """Integral part over error for Ki T = 1: backward (1 + d)/d, forward 1/d, trapezoid (2 + d)/(2 d), d = z - 1."""
+    # 1/(z - 1) = -1/2 - j/2 cot(w T/2), exactly.
+    turn = -0.5 / math.tan(0.5 * w * period)
+    if rule == BACKWARD:
+        return complex(0.5, turn)
+    if rule == FORWARD:
+        return complex(-0.5, turn)
+    return complex(0.0, turn)
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def pi_at(kp: float, ki_period: float, rule: int, w: float, period: float) -> complex:
+    """The PI controller at one frequency."""
+    return kp + ki_period * integral_at(w, period, rule)
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def plant_response(plant: SampledPlant, w: NDArray[np.float64]) -> NDArray[np.complex128]:
+    """Measured value over controller output, shape of ``w``."""
+    reduced = hessenberg(plant)
+    work = workspace(reduced)
+    out = np.empty(w.size, dtype=np.complex128)
+    for k in range(w.size):
+        out[k] = plant_at(reduced, w[k], work)
+    return out
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def gains_at(response: complex, w: float, period: float, rule: int, margin: float) -> tuple[float, float]:
+    """The one kp and Ki T with which L(w) = exp(j (margin - pi)), of any sign."""
+    wanted = cmath.exp(complex(0.0, margin - math.pi)) / response
+    shape = integral_at(w, period, rule)
+    if shape.imag == 0.0:
+        return math.nan, math.nan
+    ki_period = wanted.imag / shape.imag
+    return wanted.real - ki_period * shape.real, ki_period
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def gains_over(
+    response: NDArray[np.complex128], w: NDArray[np.float64], period: float, rule: int, margin: float
+) -> NDArray[np.float64]:
+    """``gains_at`` for each frequency, shape (2, n)."""
+    out = np.empty((2, w.size))
+    for k in range(w.size):
+        out[0, k], out[1, k] = gains_at(response[k], w[k], period, rule, margin)
+    return out

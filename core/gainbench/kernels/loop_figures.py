@@ -1,0 +1,262 @@
+"""Margins and bandwidth of a sampled loop: brackets from its curve, each refined on the loop itself."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+from numba import njit
+from numpy.typing import NDArray
+
+from gainbench.kernels.frequency import pi_at, plant_at, workspace
+from gainbench.kernels.loop_curve import loop_curve
+from gainbench.kernels.loop_records import LoopNumbers, SampledPlant
+
+SIZE = 0
+"""tanh ln \\|L\\|: zero at a crossing of one."""
+CLOSED = 1
+"""tanh ln of sqrt(2) \\|L/(1 + L)\\|: zero at the bandwidth."""
+ACROSS = 2
+"""Im L/\\|L\\|: zero on the real axis."""
+SENSITIVITY = 3
+"""-\\|1 + L\\|^2."""
+
+REAL_NOISE = 1e-7
+"""Im L/\\|L\\| below this at both ends of a bracket is rounding, far below every corner, and no crossing of the axis."""
+NARROW = 1e-14
+"""Width of a bracket, as a share of the frequency, at which the search for a root ends."""
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def measure(kind: int, loop: complex) -> float:
+    """One of the functions above, of L."""
+    square = loop.real * loop.real + loop.imag * loop.imag
+    if kind == SIZE:
+        return (square - 1.0) / (square + 1.0)
+    if kind == ACROSS:
+        return loop.imag / math.sqrt(square) if square > 0.0 else 0.0
+    distance = (1.0 + loop.real) * (1.0 + loop.real) + loop.imag * loop.imag
+    if kind == CLOSED:
+        return (2.0 * square - distance) / (2.0 * square + distance)
+    return -distance
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def loop_at(
+    plant: SampledPlant, kp: float, ki_period: float, rule: int, w: float, work: NDArray[np.complex128]
+) -> complex:
+    """L at one frequency."""
+    return plant_at(plant, w, work) * pi_at(kp, ki_period, rule, w, plant.period)
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def root(
+    plant: SampledPlant,
+    kp: float,
+    ki_period: float,
+    rule: int,
+    kind: int,
+    low: float,
+    high: float,
+    at_low: float,
+    at_high: float,
+    work: NDArray[np.complex128],
+) -> float:
+    """Frequency of a sign change within a bracket, by the Illinois rule with a halving where that stalls.
+
+    References
+    ----------
+    M. Dowell, P. Jarratt, A modified regula falsi method, BIT 11, 1971 (from memory).
+    """
+    side = 0
+    for turn in range(80):
+        if high - low <= NARROW * high:
+            break
+        middle = low - at_low * (high - low) / (at_high - at_low)
+        if turn % 4 == 3 or not low < middle < high:
+            middle = 0.5 * (low + high)
+        if middle in (low, high):
+            break
+        value = measure(kind, loop_at(plant, kp, ki_period, rule, middle, work))
+        if value == 0.0:
+            return middle
+        if (value > 0.0) == (at_low > 0.0):
+            low, at_low = middle, value
+            if side == -1:
+                at_high *= 0.5
+            side = -1
+        else:
+            high, at_high = middle, value
+            if side == 1:
+                at_low *= 0.5
+            side = 1
+    return 0.5 * (low + high)
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def summit(
+    plant: SampledPlant,
+    kp: float,
+    ki_period: float,
+    rule: int,
+    kind: int,
+    sign: float,
+    low: float,
+    high: float,
+    work: NDArray[np.complex128],
+) -> tuple[float, float]:
+    """Frequency and value of the largest ``sign`` times measure within a bracket, by golden section."""
+    ratio = 0.5 * (math.sqrt(5.0) - 1.0)
+    left, right = high - ratio * (high - low), low + ratio * (high - low)
+    at_left = sign * measure(kind, loop_at(plant, kp, ki_period, rule, left, work))
+    at_right = sign * measure(kind, loop_at(plant, kp, ki_period, rule, right, work))
+    for _ in range(44):
+        if high - low <= 1e-9 * high:
+            break
+        if at_left > at_right:
+            high, right, at_right = right, left, at_left
+            left = high - ratio * (high - low)
+            at_left = sign * measure(kind, loop_at(plant, kp, ki_period, rule, left, work))
+        else:
+            low, left, at_left = left, right, at_right
+            right = low + ratio * (high - low)
+            at_right = sign * measure(kind, loop_at(plant, kp, ki_period, rule, right, work))
+    if at_left > at_right:
+        return left, sign * at_left
+    return right, sign * at_right
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def crossings(
+    plant: SampledPlant,
+    kp: float,
+    ki_period: float,
+    rule: int,
+    kind: int,
+    w: NDArray[np.float64],
+    loop: NDArray[np.complex128],
+    work: NDArray[np.complex128],
+) -> NDArray[np.float64]:
+    """Zeros of a measure in rising order, shape (2, n): frequency, and -1 where it falls, 1 where it rises.
+
+    Between two points of the curve, a peak that reaches through zero and back is looked for where three points
+    show one that comes near.
+    """
+    values = np.empty(w.size)
+    for k in range(w.size):
+        values[k] = measure(kind, loop[k])
+    # The last point, where L is real, is treated by itself on the real axis.
+    size = w.size - 1 if kind == ACROSS else w.size
+    out = np.empty((2, 2 * w.size))
+    count = 0
+    for k in range(1, size):
+        before, after = values[k - 1], values[k]
+        if before == 0.0 or (before < 0.0) == (after < 0.0):
+            # Hidden pair: the middle of three points stands out towards zero.
+            if k + 1 < size and kind != ACROSS:
+                further = values[k + 1]
+                sign = 1.0 if after < 0.0 else -1.0
+                inner = sign * after
+                reach = max(abs(after - before), abs(after - further))
+                out_of = inner >= sign * before and inner >= sign * further
+                if out_of and further * after > 0.0 and before * after > 0.0 and inner > -2.0 * reach:
+                    place, value = summit(plant, kp, ki_period, rule, kind, sign, w[k - 1], w[k + 1], work)
+                    if sign * value > 0.0:
+                        way = 1.0 if sign > 0.0 else -1.0
+                        out[0, count] = root(
+                            plant, kp, ki_period, rule, kind, w[k - 1], place, before, value, work
+                        )
+                        out[1, count] = way
+                        out[0, count + 1] = root(
+                            plant, kp, ki_period, rule, kind, place, w[k + 1], value, further, work
+                        )
+                        out[1, count + 1] = -way
+                        count += 2
+            continue
+        if after == 0.0 and k + 1 < size and (values[k + 1] < 0.0) == (before < 0.0):
+            continue
+        if kind == ACROSS and (
+            (loop[k].real > 0.0 and loop[k - 1].real > 0.0) or max(abs(before), abs(after)) < REAL_NOISE
+        ):
+            continue
+        place = w[k] if after == 0.0 else root(plant, kp, ki_period, rule, kind, w[k - 1], w[k], before, after, work)
+        out[0, count] = place
+        out[1, count] = 1.0 if before < 0.0 else -1.0
+        count += 1
+    return out[:, :count].copy()
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def first_fall(found: NDArray[np.float64]) -> float:
+    """The first zero through which a measure falls; NaN if none."""
+    for k in range(found.shape[1]):
+        if found[1, k] < 0.0:
+            return found[0, k]
+    return math.nan
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def numbers_of(
+    plant: SampledPlant,
+    kp: float,
+    ki_period: float,
+    rule: int,
+    w: NDArray[np.float64],
+    loop: NDArray[np.complex128],
+) -> LoopNumbers:
+    """All figures of a stable loop from its curve; ``plant`` reduced."""
+    work = workspace(plant)
+    ones = crossings(plant, kp, ki_period, rule, SIZE, w, loop, work)
+    phase_margin = math.nan
+    delay_margin = math.nan
+    for k in range(ones.shape[1]):
+        point = loop_at(plant, kp, ki_period, rule, ones[0, k], work)
+        above = math.atan2(-point.imag, -point.real)
+        if math.isnan(phase_margin) or abs(above) < phase_margin:
+            phase_margin = abs(above)
+        delay = (above if above >= 0.0 else above + math.tau) / ones[0, k]
+        if math.isnan(delay_margin) or delay < delay_margin:
+            delay_margin = delay
+    gain_margin = math.nan
+    gain_reduction = math.nan
+    axis = crossings(plant, kp, ki_period, rule, ACROSS, w, loop, work)
+    for k in range(axis.shape[1] + 1):
+        # The curve ends on the real axis, at the Nyquist frequency.
+        point = loop[w.size - 1] if k == axis.shape[1] else loop_at(plant, kp, ki_period, rule, axis[0, k], work)
+        if point.real >= 0.0:
+            continue
+        factor = -1.0 / point.real
+        if factor > 1.0 and not factor >= gain_margin:
+            gain_margin = factor
+        if factor < 1.0 and not factor <= gain_reduction:
+            gain_reduction = factor
+    values = np.empty(w.size)
+    for k in range(w.size):
+        values[k] = measure(SENSITIVITY, loop[k])
+    best = values.max()
+    nearest = best
+    for k in range(1, w.size - 1):
+        if values[k] >= values[k - 1] and values[k] >= values[k + 1]:
+            reach = max(values[k] - values[k - 1], values[k] - values[k + 1])
+            if values[k] + 2.0 * reach >= best:
+                value = summit(plant, kp, ki_period, rule, SENSITIVITY, 1.0, w[k - 1], w[k + 1], work)[1]
+                nearest = max(nearest, value)
+    bandwidth = first_fall(crossings(plant, kp, ki_period, rule, CLOSED, w, loop, work))
+    sensitivity = 1.0 / math.sqrt(-nearest) if nearest < 0.0 else math.inf
+    return LoopNumbers(
+        first_fall(ones), phase_margin, delay_margin, gain_margin, gain_reduction, sensitivity, bandwidth
+    )
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def loop_numbers(
+    plant: SampledPlant,
+    kp: float,
+    ki_period: float,
+    rule: int,
+    peaks: NDArray[np.float64],
+    spreads: NDArray[np.float64],
+) -> tuple[LoopNumbers, NDArray[np.float64], NDArray[np.complex128]]:
+    """Figures and curve of a loop; figures mean something for a stable one."""
+    reduced, w, loop = loop_curve(plant, kp, ki_period, rule, peaks, spreads)
+    return numbers_of(reduced, kp, ki_period, rule, w, loop), w, loop

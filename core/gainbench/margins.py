@@ -1,0 +1,207 @@
+"""Stability, open loop, margins and bandwidth of the sampled loops themselves.
+
+``L = C(z) G(z)`` with ``C`` the PI controller and ``G`` of :mod:`gainbench.sampling`, from above 0 to the loop's own
+Nyquist frequency, that one included.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from gainbench.plant import Plant
+from gainbench.results import Gains, LockedStep, LoopCurve, LoopFigures
+from gainbench.sampling import Hardware, Loop
+
+POLE_TOLERANCE = 1e-9
+"""A closed-loop pole below 1 by less than this, or above by less, is on the unit circle and counts as stable."""
+_SHARP = 0.35
+"""A pole whose decay is less than this share of its frequency gets points of its own on the curve."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LoopReading:
+    """A loop with one set of gains: its figures and its curve."""
+
+    figures: LoopFigures
+    curve: LoopCurve
+
+
+def is_stable(loop: Loop, gains: Gains) -> bool:
+    """Whether all closed-loop poles are below 1 + 1e-9 in size, the free rotor angle left out.
+
+    With ``lambda`` an eigenvalue of the state matrix less one, ``|1 + lambda|^2 - 1 = 2 Re lambda + |lambda|^2``
+    keeps the digits of poles close to one.
+
+    Parameters
+    ----------
+    loop : Loop
+        Current or speed loop.
+    gains : Gains
+        Of its PI controller.
+
+    Returns
+    -------
+    bool
+    """
+    poles = np.linalg.eigvals(loop.closed(gains))
+    excess = 2.0 * poles.real + poles.real**2 + poles.imag**2
+    return bool(np.all(excess < 2.0 * POLE_TOLERANCE))
+
+
+def plant_response(loop: Loop, frequency: NDArray[np.float64]) -> NDArray[np.complex128]:
+    """G over frequency: the measured value over the controller's output.
+
+    Parameters
+    ----------
+    loop : Loop
+        Current loop: A/V; speed loop: rad/(s A).
+    frequency : ndarray, shape (n,)
+        Up to the Nyquist frequency [rad/s], > 0.
+
+    Returns
+    -------
+    ndarray, shape (n,)
+    """
+    from gainbench.kernels import frequency as kernel
+
+    response: NDArray[np.complex128] = kernel.plant_response(
+        loop.plant, np.ascontiguousarray(frequency, dtype=np.float64)
+    )
+    return response
+
+
+def open_loop(loop: Loop, gains: Gains, *, frequency: NDArray[np.float64]) -> NDArray[np.complex128]:
+    """L over frequency.
+
+    Parameters
+    ----------
+    loop : Loop
+        Current or speed loop.
+    gains : Gains
+        Of its PI controller.
+    frequency : ndarray, shape (n,)
+        Up to the Nyquist frequency [rad/s], > 0.
+
+    Returns
+    -------
+    ndarray, shape (n,)
+    """
+    from gainbench.kernels import frequency as kernel
+
+    w = np.ascontiguousarray(frequency, dtype=np.float64)
+    period = loop.plant.period
+    controller = [kernel.pi_at(gains.kp, gains.ki * period, loop.rule, one, period) for one in w]
+    product: NDArray[np.complex128] = kernel.plant_response(loop.plant, w) * np.array(controller, dtype=np.complex128)
+    return product
+
+
+def read_loop(loop: Loop, gains: Gains) -> LoopReading:
+    """All figures of a loop with one set of gains, and its curve for drawing.
+
+    Figures are found as brackets on the curve and refined on the loop itself: the first fall of ``|L|`` through 1,
+    over all ``|L| = 1`` the smallest distance of the phase to -180 degrees and the smallest delay, the nearest
+    crossings of the negative real axis (the Nyquist frequency included), the largest ``|1/(1 + L)|`` and the first
+    fall of ``|L/(1 + L)|`` through ``1/sqrt(2)``.
+
+    Parameters
+    ----------
+    loop : Loop
+        Current or speed loop.
+    gains : Gains
+        Of its PI controller.
+
+    Returns
+    -------
+    LoopReading
+        Figures other than ``stable`` are None where the loop is unstable.
+    """
+    from gainbench.kernels import loop_figures
+
+    stable = is_stable(loop, gains)
+    peaks, spreads = _sharp_modes(loop)
+    period = loop.plant.period
+    numbers, frequency, response = loop_figures.loop_numbers(
+        loop.plant, gains.kp, gains.ki * period, loop.rule, peaks, spreads
+    )
+    frequency_hz = frequency / math.tau
+    frequency_hz.setflags(write=False)
+    response.setflags(write=False)
+    curve = LoopCurve(frequency_hz=frequency_hz, open_loop=response)
+    if not stable:
+        return LoopReading(figures=LoopFigures(stable=False), curve=curve)
+    return LoopReading(
+        figures=LoopFigures(
+            stable=True,
+            crossover_hz=_known(numbers.crossover / math.tau),
+            phase_margin_deg=_known(math.degrees(numbers.phase_margin)),
+            delay_margin_s=_known(numbers.delay_margin),
+            gain_margin_db=_known(20.0 * math.log10(numbers.gain_margin)),
+            gain_reduction_db=_known(20.0 * math.log10(numbers.gain_reduction)),
+            peak_sensitivity=_known(numbers.peak_sensitivity),
+            bandwidth_hz=_known(numbers.bandwidth / math.tau),
+        ),
+        curve=curve,
+    )
+
+
+def _known(value: float) -> float | None:
+    """None for what the kernel found none of, and for a sensitivity without bound."""
+    return value if math.isfinite(value) else None
+
+
+def _sharp_modes(loop: Loop) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Frequencies and half widths [rad/s] of what the even grid could miss."""
+    modes = [mode for mode in loop.modes if -mode.real < _SHARP * mode.imag]
+    if loop.plant.m.shape[0] > 2:
+        period = loop.plant.period
+        for pole in np.linalg.eigvals(loop.plant.m):
+            turn = math.atan2(pole.imag, 1.0 + pole.real)
+            size = abs(1.0 + pole)
+            if turn > 0.0 and size > 0.0 and abs(math.log(size)) < _SHARP * turn:
+                modes.append(complex(math.log(size), turn) / period)
+    found = np.array([[mode.imag, abs(mode.real)] for mode in modes]).reshape(-1, 2)
+    return np.ascontiguousarray(found[:, 0]), np.ascontiguousarray(found[:, 1])
+
+
+def locked_step(own: Hardware, plant: Plant, *, gains: Gains, rule: int) -> LockedStep:
+    """The current loop's step with the rotor locked, without a clamp, until it settles.
+
+    ``L di/dt = v - R i`` between ticks, so that 10 % and 90 % are met in closed form and not at whole ticks. The loop
+    is linear: a tenth of the current limit, or any other reference, gives the same share.
+
+    Parameters
+    ----------
+    own : Hardware
+        Timing of the current loop.
+    plant : Plant
+        R, L and the sampler's filter.
+    gains : Gains
+        Of the current loop.
+    rule : int
+        Integrator rule: 0 backward, 1 forward, 2 trapezoid.
+
+    Returns
+    -------
+    LockedStep
+        Figures are None where the step does not get there, as with a locked loop that does not settle.
+    """
+    from gainbench.kernels import locked_step as kernel
+
+    pi = kernel.LockedPi(gains.kp, gains.ki * own.period, rule)
+    times, curve, per_tick = kernel.locked_step(
+        plant.resistance, plant.inductance, plant.filter_time, own.period, own.delay.held, own.delay.part, pi
+    )
+    time = np.arange(curve.size + 1) * (own.period / per_tick)
+    current = np.concatenate(([0.0], curve))
+    time.setflags(write=False)
+    current.setflags(write=False)
+    return LockedStep(
+        rise_s=_known(times.at_high - times.at_low),
+        overshoot_percent=_known(max(100.0 * (times.largest - 1.0), 0.0 * times.largest)),
+        time=time,
+        current=current,
+    )
