@@ -22,7 +22,7 @@ from gainbench.model import (
     TrainKind,
 )
 from gainbench.plant import Plant, refer
-from gainbench.results import Finding, Gains, LockedStep, LoopAssessment, Response
+from gainbench.results import Finding, LockedStep, LoopAssessment, Response
 from gainbench.sampling import Loop, current_loop, hardware, speed_loop
 from gainbench.simulate import simulate, start_breaks
 from gainbench.tuning import Design, design_current, design_speed
@@ -114,7 +114,7 @@ def _loop_assessment(design: Design, loop: Loop | None) -> LoopAssessment:
             refusal=design.refusal,
             asked_crossover=design.asked_crossover,
         )
-    reading = read_loop(loop, design.gains)
+    reading = read_loop(loop, design.gains, stable=design.stable)
     return LoopAssessment(
         gains=design.gains,
         figures=reading.figures,

@@ -9,7 +9,7 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from gainbench.model import Machine, MachineKind, Rig, SpeedSensor
+from gainbench.model import Machine, MachineKind, Rig, SpeedSensor, Stage
 from gainbench.plant import Plant, back_emf_candidates, refer
 
 SLIP_WINDOW = 0.04
@@ -149,13 +149,6 @@ def derived_constants(rig: Rig) -> DerivedConstants:
     if machine.rated_voltage is not None:
         sine = machine.kind is MachineKind.PM_SINE
         rated = voltage_ceiling(plant, machine.rated_voltage * (math.sqrt(2.0 / 3.0) if sine else 1.0))
-    antiresonance = resonance = count_speed = None
-    if plant.elastic:
-        motor, load = plant.motor_inertia, plant.load_inertia
-        antiresonance = math.sqrt(plant.stiffness / load)
-        resonance = math.sqrt(plant.stiffness * (motor + load) / (motor * load))
-    if stage.speed_sensor is SpeedSensor.ENCODER and stage.encoder_counts is not None:
-        count_speed = math.tau / (stage.encoder_counts * stage.speed_window * stage.speed_period)
     return DerivedConstants(
         electrical_time=plant.inductance / plant.resistance,
         rotor_mechanical_time=gradient * machine.rotor_inertia,
@@ -165,11 +158,64 @@ def derived_constants(rig: Rig) -> DerivedConstants:
         at_bus_voltage=voltage_ceiling(plant, plant.voltage_limit),
         reflected_load_inertia=reflected,
         inertia_ratio=reflected / machine.rotor_inertia,
-        antiresonance=antiresonance,
-        resonance=resonance,
-        count_speed=count_speed,
+        antiresonance=antiresonance(plant),
+        resonance=resonance(plant),
+        count_speed=count_speed(stage),
         current_loop_delay=(stage.update_delay + 0.5) * stage.current_period,
     )
+
+
+def antiresonance(plant: Plant) -> float | None:
+    """Frequency at which the load swings against a held motor: ``sqrt(k/JL)``, undamped.
+
+    Parameters
+    ----------
+    plant : Plant
+        Values at the motor shaft.
+
+    Returns
+    -------
+    float or None
+        [rad/s]; None where the train is rigid.
+    """
+    return math.sqrt(plant.stiffness / plant.load_inertia) if plant.elastic else None
+
+
+def resonance(plant: Plant) -> float | None:
+    """Frequency at which motor and load swing against each other: ``sqrt(k (JM + JL)/(JM JL))``, undamped.
+
+    Parameters
+    ----------
+    plant : Plant
+        Values at the motor shaft.
+
+    Returns
+    -------
+    float or None
+        [rad/s]; None where the train is rigid.
+    """
+    if not plant.elastic:
+        return None
+    motor, load = plant.motor_inertia, plant.load_inertia
+    return math.sqrt(plant.stiffness * (motor + load) / (motor * load))
+
+
+def count_speed(stage: Stage) -> float | None:
+    """The step of the measured speed that one encoder count makes: ``2 pi/(counts m Tw)``.
+
+    Parameters
+    ----------
+    stage : Stage
+        Sensor and rates.
+
+    Returns
+    -------
+    float or None
+        [rad/s]; None with an ideal sensor.
+    """
+    if stage.speed_sensor is not SpeedSensor.ENCODER or stage.encoder_counts is None:
+        return None
+    return math.tau / (stage.encoder_counts * stage.speed_window * stage.speed_period)
 
 
 def voltage_ceiling(plant: Plant, voltage: float) -> VoltageCeiling:

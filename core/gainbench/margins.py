@@ -18,6 +18,8 @@ from gainbench.sampling import Hardware, Loop
 
 POLE_TOLERANCE = 1e-9
 """A closed-loop pole below 1 by less than this, or above by less, is on the unit circle and counts as stable."""
+LARGEST_WINDOW = 60
+"""Speed windows of more periods are judged by the argument principle: their state matrices take seconds."""
 _SHARP = 0.35
 """A pole whose decay is less than this share of its frequency gets points of its own on the curve."""
 
@@ -47,9 +49,34 @@ def is_stable(loop: Loop, gains: Gains) -> bool:
     -------
     bool
     """
-    poles = np.linalg.eigvals(loop.closed(gains))
+    if loop.plant.window > LARGEST_WINDOW:
+        return _winds_inside(loop, gains)
+    return bool(np.all(_inside(_poles(loop.closed(gains)))))
+
+
+def _poles(matrix: NDArray[np.float64]) -> NDArray[np.complex128]:
+    """Eigenvalues, always as complex numbers."""
+    return np.asarray(np.linalg.eigvals(matrix), dtype=np.complex128)
+
+
+def _inside(poles: NDArray[np.complex128]) -> NDArray[np.bool_]:
+    """Which poles, less one, are on or within the unit circle."""
     excess = 2.0 * poles.real + poles.real**2 + poles.imag**2
-    return bool(np.all(excess < 2.0 * POLE_TOLERANCE))
+    return np.asarray(excess < 2.0 * POLE_TOLERANCE)
+
+
+def _winds_inside(loop: Loop, gains: Gains) -> bool:
+    from gainbench.kernels.winding import half_turns
+
+    poles = _poles(loop.plant.m)
+    slowest = int(np.argmin(np.abs(poles)))
+    taken_out = poles[slowest].imag == 0.0
+    slow = float(poles[slowest].real) if taken_out else math.nan
+    others = np.delete(poles, slowest) if taken_out else poles
+    turns = half_turns(loop.plant, gains.kp, gains.ki * loop.plant.period, loop.rule, slow)
+    # Zeros within less poles within, of what is left: poles that were taken out leave a zero more.
+    outside = int(np.sum(~_inside(others))) + int(taken_out) + int(gains.ki != 0.0) - round(turns)
+    return outside == 0
 
 
 def plant_response(loop: Loop, frequency: NDArray[np.float64]) -> NDArray[np.complex128]:
@@ -99,7 +126,7 @@ def open_loop(loop: Loop, gains: Gains, *, frequency: NDArray[np.float64]) -> ND
     return product
 
 
-def read_loop(loop: Loop, gains: Gains) -> LoopReading:
+def read_loop(loop: Loop, gains: Gains, *, stable: bool | None = None) -> LoopReading:
     """All figures of a loop with one set of gains, and its curve for drawing.
 
     Figures are found as brackets on the curve and refined on the loop itself: the first fall of ``|L|`` through 1,
@@ -113,6 +140,8 @@ def read_loop(loop: Loop, gains: Gains) -> LoopReading:
         Current or speed loop.
     gains : Gains
         Of its PI controller.
+    stable : bool, optional
+        Whether the loop is stable, where that is known already.
 
     Returns
     -------
@@ -121,7 +150,8 @@ def read_loop(loop: Loop, gains: Gains) -> LoopReading:
     """
     from gainbench.kernels import loop_figures
 
-    stable = is_stable(loop, gains)
+    if stable is None:
+        stable = is_stable(loop, gains)
     peaks, spreads = _sharp_modes(loop)
     period = loop.plant.period
     numbers, frequency, response = loop_figures.loop_numbers(
@@ -158,7 +188,7 @@ def _sharp_modes(loop: Loop) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     modes = [mode for mode in loop.modes if -mode.real < _SHARP * mode.imag]
     if loop.plant.m.shape[0] > 2:
         period = loop.plant.period
-        for pole in np.linalg.eigvals(loop.plant.m):
+        for pole in _poles(loop.plant.m):
             turn = math.atan2(pole.imag, 1.0 + pole.real)
             size = abs(1.0 + pole)
             if turn > 0.0 and size > 0.0 and abs(math.log(size)) < _SHARP * turn:
@@ -195,7 +225,7 @@ def locked_step(own: Hardware, plant: Plant, *, gains: Gains, rule: int) -> Lock
     times, curve, per_tick = kernel.locked_step(
         plant.resistance, plant.inductance, plant.filter_time, own.period, own.delay.held, own.delay.part, pi
     )
-    time = np.arange(curve.size + 1) * (own.period / per_tick)
+    time = np.linspace(0.0, curve.size * own.period / per_tick, curve.size + 1)
     current = np.concatenate(([0.0], curve))
     time.setflags(write=False)
     current.setflags(write=False)

@@ -236,7 +236,7 @@ class StateSpace:
     @property
     def angle(self) -> int:
         """Index of the motor angle: the last state."""
-        return self.a.shape[0] - 1
+        return int(self.a.shape[0]) - 1
 
 
 def state_space(plant: Plant, *, locked: bool = False) -> StateSpace:

@@ -175,9 +175,7 @@ def current_loop(own: Hardware, firmware: Firmware) -> CurrentLoop:
     return CurrentLoop(
         hardware=own,
         plant=SampledPlant._make(
-            current_plant(
-                own.a, own.voltage_column, own.sampled_current, own.period, own.delay.held, own.delay.part
-            )
+            current_plant(own.a, own.voltage_column, own.sampled_current, own.period, own.delay.held, own.delay.part)
         ),
         rule=_RULES[firmware.integrator],
     )

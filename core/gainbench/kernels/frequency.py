@@ -67,7 +67,18 @@ def hessenberg(plant: SampledPlant) -> SampledPlant:
                 column[r] -= beta * total * v[r]
         m[k + 2 :, k] = 0.0
     return SampledPlant(
-        m, c, b0, b1, bw, plant.d0, plant.d1, plant.dw, plant.period, plant.shift, plant.window, plant.scale,
+        m,
+        c,
+        b0,
+        b1,
+        bw,
+        plant.d0,
+        plant.d1,
+        plant.dw,
+        plant.period,
+        plant.shift,
+        plant.window,
+        plant.scale,
         plant.filter_gain,
     )
 

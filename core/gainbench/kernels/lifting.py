@@ -183,13 +183,22 @@ def speed_plant(
     c = np.zeros(size - 1)
     if window == 0:
         c[1] = 1.0
-        return SampledPlant(
-            m, c, new[keep], old[keep], fed[keep], 0.0, 0.0, 0.0, tw, 0, 1, 1.0, filter_gain
-        )
+        return SampledPlant(m, c, new[keep], old[keep], fed[keep], 0.0, 0.0, 0.0, tw, 0, 1, 1.0, filter_gain)
     c[:] = whole[angle, :size][keep]
     return SampledPlant(
-        m, c, new[keep], old[keep], fed[keep], new[angle], old[angle], fed[angle], tw, 1, window,
-        1.0 / (window * tw), filter_gain,
+        m,
+        c,
+        new[keep],
+        old[keep],
+        fed[keep],
+        new[angle],
+        old[angle],
+        fed[angle],
+        tw,
+        1,
+        window,
+        1.0 / (window * tw),
+        filter_gain,
     )
 
 

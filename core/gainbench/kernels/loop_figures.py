@@ -22,7 +22,7 @@ SENSITIVITY = 3
 """-\\|1 + L\\|^2."""
 
 REAL_NOISE = 1e-7
-"""Im L/\\|L\\| below this at both ends of a bracket is rounding, far below every corner, and no crossing of the axis."""
+"""Im L/\\|L\\| below this at both ends of a bracket is rounding far below every corner, no crossing of the axis."""
 NARROW = 1e-14
 """Width of a bracket, as a share of the frequency, at which the search for a root ends."""
 
@@ -163,9 +163,7 @@ def crossings(
                     place, value = summit(plant, kp, ki_period, rule, kind, sign, w[k - 1], w[k + 1], work)
                     if sign * value > 0.0:
                         way = 1.0 if sign > 0.0 else -1.0
-                        out[0, count] = root(
-                            plant, kp, ki_period, rule, kind, w[k - 1], place, before, value, work
-                        )
+                        out[0, count] = root(plant, kp, ki_period, rule, kind, w[k - 1], place, before, value, work)
                         out[1, count] = way
                         out[0, count + 1] = root(
                             plant, kp, ki_period, rule, kind, place, w[k + 1], value, further, work
@@ -191,7 +189,7 @@ def first_fall(found: NDArray[np.float64]) -> float:
     """The first zero through which a measure falls; NaN if none."""
     for k in range(found.shape[1]):
         if found[1, k] < 0.0:
-            return found[0, k]
+            return float(found[0, k])
     return math.nan
 
 

@@ -50,7 +50,7 @@ def bandwidth_margin(loop: Loop, *, bandwidth: float, margin: float) -> Design:
         )
     crossover = _crossover_for(loop, bandwidth, margin=margin)
     if crossover is not None:
-        return Design(gains=gains_for(loop, crossover, margin=margin), asked_crossover=crossover)
+        return Design(gains=gains_for(loop, crossover, margin=margin), stable=True, asked_crossover=crossover)
     nearest = nearest_bandwidth(loop, bandwidth, margin=margin)
     return Design(
         refusal=Refusal(

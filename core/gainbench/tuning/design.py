@@ -42,7 +42,7 @@ def design_current(aims: LoopAims, plant: Plant, *, stage: Stage, loop: CurrentL
     Raises
     ------
     ValueError
-        If the method's targets are missing, or the method is none of the current loop's; a sheet that was read is complete.
+        If the method's targets are missing, or the method is none of this loop's; a sheet that was read is complete.
     """
     match aims.method:
         case DesignMethod.CROSSOVER_MARGIN:

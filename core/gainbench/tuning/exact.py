@@ -79,7 +79,7 @@ def crossover_margin(loop: Loop, *, crossover: float, margin: float) -> Design:
     """
     gains = gains_for(loop, crossover, margin=margin)
     if holds(loop, gains):
-        return Design(gains=gains, asked_crossover=crossover)
+        return Design(gains=gains, stable=True, asked_crossover=crossover)
     return Design(
         refusal=Refusal(
             reason=_limit(loop, gains, crossover=crossover, margin=margin),
@@ -156,10 +156,10 @@ def _limit(loop: Loop, gains: Gains | None, *, crossover: float, margin: float) 
     nyquist = 0.5 / loop.plant.period
     if gains is None:
         return f"{hertz:.4g} Hz is not below {nyquist:.4g} Hz, half the rate of this loop"
-    response = plant_response(loop, np.array([crossover]))[0]
-    room = 180.0 + math.degrees(math.atan2(response.imag, response.real))
-    room = room - 360.0 if room > 180.0 else room
-    if gains.ki <= 0.0:
+    # Followed from far below: the phase itself is only known to whole turns.
+    way = np.geomspace(crossover_grid(loop)[0] * min(1.0, crossover * loop.plant.period), crossover, 400)
+    room = 180.0 + math.degrees(float(np.unwrap(np.angle(plant_response(loop, way)))[-1]))
+    if wanted > room:
         if room <= 0.0:
             return (
                 f"at {hertz:.4g} Hz delay and plant have already turned the phase to {room - 180.0:.1f} degrees, "
@@ -169,13 +169,17 @@ def _limit(loop: Loop, gains: Gains | None, *, crossover: float, margin: float) 
             f"at {hertz:.4g} Hz delay and plant leave {room:.1f} degrees with a proportional part alone, less than the "
             f"{wanted:.1f} asked for"
         )
-    if gains.kp <= 0.0:
+    if wanted < room - 90.0:
         return (
-            f"at {hertz:.4g} Hz an integral part alone keeps more than the {wanted:.1f} degrees asked for, and the "
-            f"proportional part would have to be negative"
+            f"at {hertz:.4g} Hz even an integral part alone leaves {room - 90.0:.1f} degrees, more than the "
+            f"{wanted:.1f} asked for, and a PI controller cannot take away more"
+        )
+    if not (gains.kp > 0.0 and gains.ki > 0.0):
+        return (
+            f"at {hertz:.4g} Hz {wanted:.1f} degrees would take a gain that is zero or negative: Kp {gains.kp:.4g}, "
+            f"Ki {gains.ki:.4g} in SI units"
         )
     return (
         f"the only gains that give {wanted:.1f} degrees at {hertz:.4g} Hz make the loop unstable, because of what it "
         f"does at other frequencies"
     )
-

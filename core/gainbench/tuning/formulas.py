@@ -108,9 +108,7 @@ def speed_lag_cancellation(plant: Plant, *, crossover: float) -> Design:
                 "nothing would remove a steady error"
             )
         )
-    return Design(
-        gains=Gains(kp=crossover * plant.inertia / plant.torque, ki=crossover * plant.viscous / plant.torque)
-    )
+    return Design(gains=Gains(kp=crossover * plant.inertia / plant.torque, ki=crossover * plant.viscous / plant.torque))
 
 
 def symmetric_optimum(plant: Plant, *, stage: Stage, spread: float, current_crossover_hz: float) -> Design:

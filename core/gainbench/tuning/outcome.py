@@ -13,5 +13,7 @@ class Design:
 
     gains: Gains | None = None
     refusal: Refusal | None = None
+    stable: bool | None = None
+    """True where the method made sure of it; None where nobody looked."""
     asked_crossover: float | None = None
     """The crossover the gains are exact for [rad/s]; None where the method has none."""
