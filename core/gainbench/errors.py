@@ -5,7 +5,6 @@
     GainbenchError
     +-- UnitError        a text that is not a quantity of the dimension asked for
     +-- SheetError       a bench sheet that cannot be read, or a value in it that is refused
-    +-- TargetError      design targets that no positive gains with a stable loop meet
     +-- HandoverError    firmware files that cannot be written, or whose origin cannot be told
 
 Wrong physics is not an error: it is a finding of level ``breaks`` in the assessment. A message says
@@ -67,10 +66,6 @@ class SheetError(GainbenchError):
     def __init__(self, message: str, *, problems: tuple[SheetProblem, ...] = ()) -> None:
         super().__init__(message)
         self.problems = problems
-
-
-class TargetError(GainbenchError):
-    """No positive gains with a stable loop meet the targets asked for."""
 
 
 class HandoverError(GainbenchError):

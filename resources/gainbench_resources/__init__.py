@@ -37,5 +37,10 @@ def demo_sheet(name: str) -> Traversable:
     return _sheets() / f"{name}{_SUFFIX}"
 
 
+def template(name: str) -> Traversable:
+    """The file of a template; ``read_text(encoding="utf-8")`` gives its text."""
+    return files(__name__) / "templates" / name
+
+
 def _sheets() -> Traversable:
     return files(__name__) / "sheets"

@@ -85,9 +85,16 @@ def hessenberg(plant: SampledPlant) -> SampledPlant:
 
 @njit(cache=True, nogil=True, error_model="numpy")
 def workspace(plant: SampledPlant) -> NDArray[np.complex128]:
-    """Room for one elimination, shape (n + 2, n)."""
+    """Room for one elimination, shape (n + 3, n)."""
     n = plant.m.shape[0]
-    return np.empty((n + 2, n), dtype=np.complex128)
+    return np.empty((n + 3, n), dtype=np.complex128)
+
+
+@njit(cache=True, nogil=True, error_model="numpy", inline="always")
+def inverse(value: complex) -> complex:
+    """1/value without the scaling of a general division: pivots are far from where it would be needed."""
+    size = 1.0 / (value.real * value.real + value.imag * value.imag)
+    return complex(value.real * size, -value.imag * size)
 
 
 @njit(cache=True, nogil=True, error_model="numpy")
@@ -111,21 +118,25 @@ def plant_at(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> com
         work[n + 1, r] = plant.bw[r]
     for k in range(n - 1):
         low = work[k + 1, k]
-        if low == 0.0:
-            continue
         top = work[k, k]
+        if low == 0.0:
+            work[n + 2, k] = inverse(top)
+            continue
         if abs(low.real) + abs(low.imag) > abs(top.real) + abs(top.imag):
             for j in range(k, n):
                 work[k, j], work[k + 1, j] = work[k + 1, j], work[k, j]
             work[n, k], work[n, k + 1] = work[n, k + 1], work[n, k]
             work[n + 1, k], work[n + 1, k + 1] = work[n + 1, k + 1], work[n + 1, k]
             low, top = top, low
-        factor = low / top
+        pivot = inverse(top)
+        work[n + 2, k] = pivot
+        factor = low * pivot
         for j in range(k + 1, n):
             work[k + 1, j] -= factor * work[k, j]
         work[n, k + 1] -= factor * work[n, k]
         if fed:
             work[n + 1, k + 1] -= factor * work[n + 1, k]
+    work[n + 2, n - 1] = inverse(work[n - 1, n - 1])
     raw = plant.d0 + plant.d1 * back
     loop = complex(plant.dw, 0.0)
     for side in range(2 if fed else 1):
@@ -133,7 +144,7 @@ def plant_at(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> com
             value = work[n + side, k]
             for j in range(k + 1, n):
                 value -= work[k, j] * work[n + side, j]
-            value /= work[k, k]
+            value *= work[n + 2, k]
             work[n + side, k] = value
             if side == 0:
                 raw += plant.c[k] * value
@@ -149,7 +160,7 @@ def plant_at(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> com
         lag = -angle * plant.shift
         ahead *= complex(math.cos(lag), math.sin(lag))
     if plant.filter_gain != 1.0:
-        ahead *= plant.filter_gain / (1.0 - (1.0 - plant.filter_gain) * back)
+        ahead *= plant.filter_gain * inverse(1.0 - (1.0 - plant.filter_gain) * back)
     if fed:
         return ahead * raw / (1.0 - ahead * loop)
     return ahead * raw

@@ -21,8 +21,12 @@ ACROSS = 2
 SENSITIVITY = 3
 """-\\|1 + L\\|^2."""
 
-REAL_NOISE = 1e-7
-"""Im L/\\|L\\| below this at both ends of a bracket is rounding far below every corner, no crossing of the axis."""
+REAL_NOISE = 1e-5
+"""Im L/\\|L\\| below this at both ends of a bracket is rounding, no crossing of the axis.
+
+Where a freely turning train makes L nearly real, far below every corner, rounding of the state matrix (up to 1e-11)
+stands for a friction that is not there; it would cross the axis at no more than its square root.
+"""
 NARROW = 1e-14
 """Width of a bracket, as a share of the frequency, at which the search for a root ends."""
 

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
-from difflib import get_close_matches
 from typing import TypeVar
 
 from pydantic import ValidationError
@@ -12,8 +11,16 @@ from gainbench.errors import SheetProblem
 from gainbench.model import DesignMethod, Rig, Sheet, Tolerance
 from gainbench.sheetfile import building, rules
 from gainbench.sheetfile.entries import EntryError, shown
+from gainbench.sheetfile.problems import (
+    MOST_OF_A_KIND,
+    missing,
+    not_a_table,
+    quoted_key,
+    refused,
+    unknown_key,
+    unknown_keys,
+)
 from gainbench.sheetfile.tables import (
-    ENTRIES,
     REQUIRED_TABLES,
     TABLES,
     TITLE,
@@ -65,7 +72,7 @@ def check(data: Raw, *, default_title: str) -> tuple[Sheet | None, list[SheetPro
     problems = list(_format(data))
     if problems:
         return None, problems
-    problems += _unknown("", data, _TOP)
+    problems += unknown_keys("", data, _TOP)
     title = _title(data, default_title, problems)
     raw = _raw_tables(data, problems)
     machine = _table(MachineTable, "machine", raw, problems)
@@ -110,7 +117,7 @@ def check(data: Raw, *, default_title: str) -> tuple[Sheet | None, list[SheetPro
 
 def _format(data: Raw) -> Iterator[SheetProblem]:
     if "format" not in data:
-        yield SheetProblem(path="format", value="", reason="is missing; it has no default", example="format = 1")
+        yield missing("format")
         return
     value = data["format"]
     if not isinstance(value, int) or isinstance(value, bool):
@@ -130,40 +137,8 @@ def _title(data: Raw, default: str, problems: list[SheetProblem]) -> str:
     try:
         return TITLE.read(data["title"])
     except EntryError as error:
-        problems.append(_refused("title", data["title"], error))
+        problems.append(refused("title", data["title"], error))
         return default
-
-
-def _refused(path: str, value: object, error: EntryError) -> SheetProblem:
-    return SheetProblem(path=path, value=shown(value), reason=error.reason, example=error.example)
-
-
-def _unknown(path: str, data: Raw, known: Sequence[str]) -> Iterator[SheetProblem]:
-    for key in data:
-        if key not in known:
-            yield unknown_key(path, key, data[key], known)
-
-
-def unknown_key(path: str, key: str, value: object, known: Sequence[str]) -> SheetProblem:
-    """A key that is not in the format, with what may have been meant."""
-    full = f"{path}.{_quoted(key)}" if path else _quoted(key)
-    near = get_close_matches(key[:100], known, n=1)
-    elsewhere = [entry for entry in ENTRIES if entry.rpartition(".")[2] == key]
-    if near:
-        hint = f"; {near[0]} is near"
-    elif elsewhere:
-        hint = f"; it belongs in [{elsewhere[0].rpartition('.')[0]}]"
-    else:
-        hint = f"; known are {', '.join(known)}" if len(known) <= 10 else ""
-    return SheetProblem(path=full, value=shown(value), reason=f"this key is not known{hint}")
-
-
-def _quoted(key: str) -> str:
-    return key if key.replace("_", "").replace("-", "").isalnum() and key.isascii() and len(key) < 60 else shown(key)
-
-
-def _not_a_table(path: str, value: object) -> SheetProblem:
-    return SheetProblem(path=path, value=shown(value), reason=f"must be a table, [{path}]")
 
 
 def _raw_tables(data: Raw, problems: list[SheetProblem]) -> dict[str, Raw]:
@@ -171,9 +146,9 @@ def _raw_tables(data: Raw, problems: list[SheetProblem]) -> dict[str, Raw]:
     found: dict[str, Raw] = {}
     aims = data.get("aims", {})
     if isinstance(aims, Mapping):
-        problems += _unknown("aims", aims, _AIMS)
+        problems += unknown_keys("aims", aims, _AIMS)
     else:
-        problems.append(_not_a_table("aims", aims))
+        problems.append(not_a_table("aims", aims))
         aims = {}
     for path in TABLES:
         holder, _, key = path.rpartition(".")
@@ -183,11 +158,9 @@ def _raw_tables(data: Raw, problems: list[SheetProblem]) -> dict[str, Raw]:
             if isinstance(table, Mapping):
                 found[path] = table
             else:
-                problems.append(_not_a_table(path, table))
+                problems.append(not_a_table(path, table))
         elif path in REQUIRED_TABLES and (not holder or isinstance(data.get("aims", {}), Mapping)):
-            problems.append(
-                SheetProblem(path=path, value="", reason=f"the table [{path}] is missing; it has no default")
-            )
+            problems.append(missing(path))
     return found
 
 
@@ -202,7 +175,7 @@ def _validated(kind: type[_T], path: str, raw: object, problems: list[SheetProbl
     try:
         return kind.model_validate(raw)
     except ValidationError as error:
-        for one in error.errors(include_url=False):
+        for one in error.errors(include_url=False)[:MOST_OF_A_KIND]:
             problems.append(_translated(kind, path, one["type"], one["loc"], one["input"], one.get("ctx", {})))
         return None
 
@@ -212,16 +185,16 @@ def _translated(
 ) -> SheetProblem:
     """A problem that pydantic found, as ours."""
     keys = [str(part) for part in loc]
-    full = ".".join([path, *(_quoted(key) for key in keys)])
+    full = ".".join([path, *(quoted_key(key) for key in keys)])
     error = context.get("error")
     if isinstance(error, EntryError):
-        return _refused(full, value, error)
+        return refused(full, value, error)
     if code == "extra_forbidden":
         holder = _holder(kind, keys[:-1])
         return unknown_key(".".join([path, *keys[:-1]]), keys[-1], value, list(holder.model_fields))
     if code == "missing":
-        return rules.missing(full)
-    return SheetProblem(path=full, value=shown(value), reason="must be a table")
+        return missing(full)
+    return not_a_table(full, value)
 
 
 def _holder(kind: type[Table], keys: Sequence[str]) -> type[Table]:
@@ -246,13 +219,17 @@ def _list(data: Raw, key: str, problems: list[SheetProblem]) -> list[object]:
     value = data.get(key, [])
     if isinstance(value, list):
         return value
-    problems.append(SheetProblem(path=key, value=shown(value), reason=f"must be tables in double brackets, [[{key}]]"))
+    problems.append(
+        SheetProblem(path=key, value=shown(value), reason="must be tables in double brackets", example=f"[[{key}]]")
+    )
     return []
 
 
 def _kept(data: Raw, firmware: FirmwareTable | None, problems: list[SheetProblem]) -> list[KeptTable | None]:
     found: list[KeptTable | None] = []
     for index, raw in enumerate(_list(data, "kept", problems)):
+        if len(problems) > MOST_OF_A_KIND:
+            break
         path = f"kept[{index}]"
         table = _validated(KeptTable, path, raw, problems)
         found.append(table)
@@ -269,6 +246,8 @@ def _kept(data: Raw, firmware: FirmwareTable | None, problems: list[SheetProblem
 
 def _evidence(data: Raw, problems: list[SheetProblem]) -> None:
     for index, raw in enumerate(_list(data, "evidence", problems)):
+        if len(problems) > MOST_OF_A_KIND:
+            break
         table = _validated(EvidenceTable, f"evidence[{index}]", raw, problems)
         if table is not None:
             problems += rules.evidence_values(index, table)
@@ -277,6 +256,6 @@ def _evidence(data: Raw, problems: list[SheetProblem]) -> None:
 def _tolerances(data: Raw, rig: Rig | None, problems: list[SheetProblem]) -> tuple[Tolerance, ...]:
     raw = data.get("tolerance", {})
     if not isinstance(raw, Mapping):
-        problems.append(_not_a_table("tolerance", raw))
+        problems.append(not_a_table("tolerance", raw))
         return ()
     return read_tolerances(raw, rig, problems)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 import json
-from dataclasses import MISSING, Field, fields, is_dataclass
+from dataclasses import MISSING, Field, fields, is_dataclass, replace
 from enum import Enum
 
 from gainbench.model import Sheet
@@ -14,8 +14,8 @@ from gainbench.sheetfile.document import SheetDocument, parse_sheet
 def digest(content: Sheet | SheetDocument | str) -> str:
     """SHA-256 of what a sheet says.
 
-    Comments, blanks, the order of keys, the choice of units and the title do not enter; values that are left out
-    and values that repeat the default give the same digest.
+    Comments, blanks, the order of keys, the choice of units, the title and the evidence do not enter; values that
+    are left out and values that repeat the default give the same digest.
 
     Parameters
     ----------
@@ -63,9 +63,8 @@ def _content(content: Sheet | SheetDocument | str) -> dict[str, object]:
     if isinstance(content, str):
         content = parse_sheet(content, "sheet")
     sheet = content.sheet if isinstance(content, SheetDocument) else content
-    plain = _plain(sheet)
-    assert isinstance(plain, dict)
-    return plain
+    duty = replace(sheet.duty, load_at=None) if sheet.duty.load_at == sheet.duty.length / 2.0 else sheet.duty
+    return {one.name: _plain(getattr(replace(sheet, duty=duty), one.name)) for one in fields(sheet)}
 
 
 def _hashed(value: object) -> str:
@@ -82,7 +81,7 @@ def _plain(value: object) -> object:
         return {name: _plain(own) for name, own, default in pairs if default is MISSING or own != default}
     if isinstance(value, tuple):
         return [_plain(one) for one in value]
-    # Counts and switches stay as they are; 3 and 3.0 are one number in a sheet.
+    # 3 and 3.0 are one number in a sheet.
     if isinstance(value, int) and not isinstance(value, bool):
         return float(value)
     return value

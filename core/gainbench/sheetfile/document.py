@@ -6,6 +6,7 @@ which was read anew from that text, so that what is shown is what would be saved
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 
@@ -65,11 +66,13 @@ class SheetDocument:
         Returns
         -------
         str or None
-            ``"0.60 ohm"`` without its quotes, ``"3.0"``; None where the sheet does not hold the key.
+            ``"0.60 ohm"`` without its quotes, ``"3.0"``; None where the sheet does not hold the key, or holds a table.
         """
         value = editing.look_up(self._data, editing.split_path(path))
         if value is None or isinstance(value, str):
             return value
+        if isinstance(value, Mapping | list):
+            return None
         return editing.spelling(self._text, path, value)
 
     def with_value(self, path: str, value: EntryValue) -> SheetDocument:
@@ -187,6 +190,8 @@ def add_kept(document: SheetDocument, name: str, *, current: Gains, speed: Gains
     SheetError
         If the name is taken or empty, or the gains are refused.
     """
+    if not all(map(math.isfinite, (current.kp, current.ki, speed.kp, speed.ki))):
+        raise SheetError(f"{document.name}: these gains cannot be kept: a number must be finite")
     entry: dict[str, object] = {
         "name": name,
         "current": {

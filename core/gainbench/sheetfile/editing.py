@@ -6,15 +6,15 @@ import math
 import re
 import tomllib
 from collections.abc import Mapping, MutableMapping, Sequence
+from functools import lru_cache
 from typing import Any
 
 from gainbench.errors import SheetError
-from gainbench.sheetfile.entries import Count, Flag, Gain, Number, shown
-from gainbench.sheetfile.tables import ENTRIES
+from gainbench.sheetfile.entries import Count, Flag, Gain, Number, Quantity, shown, typed_number
+from gainbench.sheetfile.tables import entry_at
+from gainbench.units import Dimension
 
 _PART = re.compile(r'\.?(?:"(?P<quoted>[^"]*)"|(?P<bare>[^.\[\]"]+))|\[(?P<index>\d{1,6})\]')
-_TOML_NUMBER = re.compile(r"[+-]?(?:0|[1-9](?:_?\d)*)(?:\.\d(?:_?\d)*)?(?:[eE][+-]?\d+)?", re.ASCII)
-_GAIN_PATH = re.compile(r"kept\[\d+\]\.(?P<loop>current|speed)\.(?P<key>k[pi])")
 
 Key = str | int
 
@@ -62,7 +62,7 @@ def look_up(data: object, keys: Sequence[Key]) -> object | None:
 def spelling(text: str, path: str, value: object) -> str:
     """A number or a switch as it stands in the text."""
     try:
-        item = look_up(_parsed(text, path), split_path(path))
+        item = look_up(_only_read(text), split_path(path))
     except SheetError:
         item = None
     as_string = getattr(item, "as_string", None)
@@ -78,16 +78,19 @@ def with_values(text: str, values: Mapping[str, str | int | float | bool | None]
         If a path leads nowhere.
     """
     document = _parsed(text, name)
-    wanted: dict[str, object | None] = {}
+    wanted = tomllib.loads(text)
     for path, value in values.items():
         keys = split_path(path)
         item = _item(path, value)
         try:
-            wanted[path] = _put(document, keys, item)
+            found = _put(document, keys, item)
+            _put_plain(wanted, found, None if item is None else item.unwrap())
         except _EDIT_FAULTS:
             raise SheetError(f"{name}: {path} cannot be reached; check the path, or edit the file itself") from None
     result = _written(document, text)
-    _confirm(result, wanted, name)
+    if _plain(result) != wanted:
+        paths = ", ".join(values)
+        raise SheetError(f"{name}: {paths} cannot be changed as it stands in the file; edit the file itself")
     return result
 
 
@@ -101,7 +104,7 @@ def with_kept(text: str, entry: Mapping[str, object], *, name: str) -> str:
         for key, value in entry.items():
             if isinstance(value, Mapping):
                 pairs = ", ".join(f"{inner} = {tomlkit.item(own).as_string()}" for inner, own in value.items())
-                table.add(key, tomlkit.parse(f"x = {{ {pairs} }}")["x"])
+                table.add(key, tomlkit.value(f"{{ {pairs} }}"))
             else:
                 table.add(key, tomlkit.item(value))
         table.trivia.indent = ""
@@ -142,6 +145,12 @@ def without_kept(text: str, index: int, *, name: str) -> str:
 _EDIT_FAULTS = (KeyError, IndexError, TypeError, ValueError, AttributeError, AssertionError, RecursionError)
 
 
+@lru_cache(maxsize=4)
+def _only_read(text: str) -> Any:
+    """The text as tomlkit's document, for callers that leave it as it is: a window asks for many spellings of one."""
+    return _parsed(text, "sheet")
+
+
 def _parsed(text: str, name: str) -> Any:
     """The text as tomlkit's document."""
     import tomlkit
@@ -171,18 +180,20 @@ def _item(path: str, value: str | int | float | bool | None) -> Any:
     if isinstance(value, float) and not math.isfinite(value):
         raise SheetError(f"{path}: the number must be finite")
     if isinstance(value, str):
-        match = _GAIN_PATH.fullmatch(path)
-        entry = ENTRIES.get(f"aims.{match['loop']}.{match['key']}" if match else path)
+        keys = split_path(path)
+        entry = entry_at(str(keys[1]) if keys[0] == "tolerance" and len(keys) == 2 else path)
         plain = value.strip()
         if isinstance(entry, Flag) and plain in {"true", "false"}:
             return tomlkit.item(plain == "true")
-        if isinstance(entry, Number | Count | Gain) and _TOML_NUMBER.fullmatch(plain):
-            return tomlkit.parse(f"x = {plain}")["x"]
+        share = isinstance(entry, Quantity) and entry.dimension is Dimension.SHARE
+        number = typed_number(value) if share or isinstance(entry, Number | Count | Gain) else None
+        if number is not None:
+            return tomlkit.value(number)
     return tomlkit.item(value)
 
 
-def _put(document: Any, keys: Sequence[Key], item: Any) -> object | None:
-    """Set, add or take out one value; gives the plain value that must be there afterwards."""
+def _put(document: Any, keys: Sequence[Key], item: Any) -> Sequence[Key]:
+    """Set, add or take out one value; gives the keys that lead to it in this document."""
     import tomlkit
 
     if len(keys) == 2 and keys[0] == "tolerance" and keys[1] not in document.get("tolerance", {}):
@@ -192,7 +203,7 @@ def _put(document: Any, keys: Sequence[Key], item: Any) -> object | None:
     for key in keys[:-1]:
         if isinstance(key, str) and key not in node:
             if item is None:
-                return None
+                return keys
             table = tomlkit.table()
             if node is document:
                 _end_with_blank_line(document)
@@ -206,13 +217,26 @@ def _put(document: Any, keys: Sequence[Key], item: Any) -> object | None:
     if item is None:
         if last in node:
             del node[last]
-        return None
-    if last in node:
+    elif last in node:
         _replace(node, last, item)
     else:
         _append(node, last, item)
-    plain: object = item.unwrap()
-    return plain
+    return keys
+
+
+def _put_plain(data: Any, keys: Sequence[Key], value: object) -> None:
+    """The same to plain values: what the edited text must mean, and nothing besides."""
+    node = data
+    for key in keys[:-1]:
+        if isinstance(key, str) and key not in node:
+            if value is None:
+                return
+            node[key] = {}
+        node = node[key]
+    if value is None:
+        node.pop(keys[-1], None)
+    else:
+        node[keys[-1]] = value
 
 
 def _replace(table: Any, key: str, item: Any) -> None:
@@ -220,11 +244,12 @@ def _replace(table: Any, key: str, item: Any) -> None:
     import tomlkit
 
     container = table.value if isinstance(table, tomlkit.items.Table) else None
-    width = len(container.item(key).as_string()) if container is not None else 0
+    old: Any = container.item(key) if container is not None else None
+    width = len(old.as_string()) if old is not None else 0
     table[key] = item
     if container is None:
         return
-    new = container.item(key)
+    new: Any = container.item(key)
     if new.trivia.comment and not new.trivia.comment_ws.strip(" "):
         new.trivia.comment_ws = " " * max(1, len(new.trivia.comment_ws) + width - len(new.as_string()))
 
@@ -260,25 +285,19 @@ def _end_with_blank_line(table: Any) -> None:
         table.add(tomlkit.nl())
 
 
-def _confirm(text: str, wanted: Mapping[str, object | None], name: str) -> None:
-    """See that the text now says what was asked for."""
+def _plain(text: str) -> dict[str, object] | None:
+    """What a text means, None where it is no TOML any more."""
     try:
-        data = tomllib.loads(text)
+        return tomllib.loads(text)
     except ValueError:
-        data = {}
-    for path, value in wanted.items():
-        if look_up(data, split_path(path)) != value:
-            raise SheetError(f"{name}: {path} cannot be changed as it stands in the file; edit the file itself")
+        return None
 
 
 def _same_but(before: str, after: str, key: str, name: str) -> None:
     """See that an edit touched nothing but one key."""
-    try:
-        old, new = tomllib.loads(before), tomllib.loads(after)
-    except ValueError:
-        old, new = {}, {key: None}
-        old["changed"] = True
+    old, new = tomllib.loads(before), _plain(after)
     old.pop(key, None)
-    new.pop(key, None)
+    if new is not None:
+        new.pop(key, None)
     if old != new:
         raise SheetError(f"{name}: {key} cannot be changed as it stands in the file; edit the file itself")

@@ -7,6 +7,7 @@ of :mod:`gainbench.sheetfile.tables`, where pydantic calls them.
 from __future__ import annotations
 
 import math
+import re
 import unicodedata
 from dataclasses import dataclass, field
 from difflib import get_close_matches
@@ -19,8 +20,11 @@ from gainbench.units import Dimension, parse, show
 if TYPE_CHECKING:
     from pydantic_core import CoreSchema
 
-_BIDIRECTIONAL = frozenset(map(chr, (*range(0x202A, 0x202F), *range(0x2066, 0x206A), 0x200E, 0x200F)))
+# Unicode's property Bidi_Control: they make a text read otherwise than it is.
+_BIDIRECTIONAL = frozenset(map(chr, (*range(0x202A, 0x202F), *range(0x2066, 0x206A), 0x200E, 0x200F, 0x061C)))
 _SHOWN_LENGTH = 60
+_TOML_NUMBER = re.compile(r"[+-]?(?:0|[1-9](?:_?\d)*)(?:\.\d(?:_?\d)*)?(?:[eE][+-]?\d{1,4})?", re.ASCII)
+_LOOSE_NUMBER = re.compile(r"[+-]?(?:\d{1,50}\.?\d{0,50}|\.\d{1,50})(?:[eE][+-]?\d{1,3})?", re.ASCII)
 
 
 class EntryError(ValueError):
@@ -64,8 +68,9 @@ def shown(value: object) -> str:
     if isinstance(value, bool):
         return "true" if value else "false"
     if isinstance(value, str):
-        text = "".join(c if not _is_control(c) else f"\\u{ord(c):04x}" for c in value)
-        return f'"{text}"' if len(text) <= _SHOWN_LENGTH else f'"{text[:_SHOWN_LENGTH]}..."'
+        cut = value[:_SHOWN_LENGTH]
+        text = "".join(c if not _is_control(c) else f"\\u{ord(c):04x}" for c in cut)
+        return f'"{text}"' if cut == value else f'"{text}..."'
     if isinstance(value, dict):
         return "{...}" if value else "{}"
     if isinstance(value, list):
@@ -80,6 +85,16 @@ def _is_control(character: str) -> bool:
 
 def _is_number(value: object) -> bool:
     return isinstance(value, int | float) and not isinstance(value, bool)
+
+
+def typed_number(text: str) -> str | None:
+    """A number as typed into a box, as TOML spells it; None where the text is none."""
+    plain = text.strip()
+    if _TOML_NUMBER.fullmatch(plain):
+        return plain
+    if not _LOOSE_NUMBER.fullmatch(plain):
+        return None
+    return repr(float(plain)) if set(plain) & set(".eE") else str(int(plain))
 
 
 def _finite(value: Any) -> float:
@@ -114,7 +129,7 @@ class Limits:
         if size < 0.0 <= self.low:
             raise EntryError("must be at least 0" if self.zero or self.low == 0.0 else "must be above 0")
         if size == 0.0 < self.low and not self.above:
-            raise EntryError("must be above 0")
+            raise EntryError("must not be 0" if self.signed else "must be above 0")
         if size < self.low or (self.above and size == self.low):
             word = "above" if self.above else "at least"
             raise EntryError(f"is too small: it must be {word} {_plain(self.low, dimension)}")
@@ -177,7 +192,7 @@ class Number(_PlainValidator):
 
 def _limited(number: float, entry: Quantity | Number) -> float:
     try:
-        return entry.limits.check(number, entry.dimension)
+        return entry.limits.check(number + 0.0, entry.dimension)
     except EntryError as error:
         raise EntryError(error.reason, example=entry.example) from None
 
@@ -197,8 +212,10 @@ class Count(_PlainValidator):
     def read(self, value: object) -> int:
         if not isinstance(value, int) or isinstance(value, bool):
             raise EntryError("must be a whole number, without quotes and without a decimal point", example=self.example)
-        if not self.low <= value <= self.high:
-            raise EntryError(f"must be from {self.low} to {self.high}", example=self.example)
+        if value < self.low:
+            raise EntryError(f"is too small: it must be at least {self.low}", example=self.example)
+        if value > self.high:
+            raise EntryError(f"is too large: it must be at most {self.high}", example=self.example)
         return value
 
 
@@ -217,7 +234,7 @@ class Choice(_PlainValidator):
             if isinstance(value, str) and value == word.value:
                 return word
         known = [word.value for word in self.words]
-        near = get_close_matches(value.lower(), known, n=1) if isinstance(value, str) else []
+        near = get_close_matches(value[:100].lower(), known, n=1) if isinstance(value, str) else []
         hint = f"; {near[0]} is near" if near else ""
         raise EntryError(f"must be one of {', '.join(known)}{hint}", example=f'"{near[0]}"' if near else self.example)
 
@@ -339,6 +356,6 @@ class Gain(_PlainValidator):
 
     def _checked(self, number: float) -> float:
         try:
-            return self.limits.check(number, Dimension.NUMBER)
+            return self.limits.check(number + 0.0, Dimension.NUMBER)
         except EntryError as error:
             raise EntryError(error.reason, example=self.example) from None

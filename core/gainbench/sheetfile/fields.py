@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from gainbench.errors import SheetError, SheetProblem
-from gainbench.sheetfile.entries import Count, EntryError, Flag, Gain, GainValue, Number, Quantity, shown
+from gainbench.errors import SheetError
+from gainbench.sheetfile.entries import Count, EntryError, Flag, Gain, GainValue, Number, Quantity, shown, typed_number
+from gainbench.sheetfile.problems import refused
 from gainbench.sheetfile.tables import ENTRIES
 from gainbench.units import Dimension
 
@@ -37,20 +38,16 @@ def read_entry(path: str, text: str) -> float | int | bool | str:
     if entry is None:
         raise SheetError(f"{shown(path)} is not the path of an entry (for example machine.resistance)")
     value: object = text
-    plain = text.strip()
-    try:
-        if isinstance(entry, Number | Gain):
-            value = float(plain)
-        elif isinstance(entry, Count):
-            value = int(plain)
-        elif isinstance(entry, Flag):
-            value = {"true": True, "false": False}.get(plain, text)
-    except ValueError:
-        value = text
+    number = typed_number(text)
+    if isinstance(entry, Flag):
+        value = {"true": True, "false": False}.get(text.strip(), text)
+    elif isinstance(entry, Number | Gain | Count) and number is not None:
+        whole = not set(number) & set(".eE")
+        value = int(number) if whole else float(number)
     try:
         result = entry.read(value)
     except EntryError as error:
-        problem = SheetProblem(path=path, value=shown(text), reason=error.reason, example=error.example)
+        problem = refused(path, text, error)
         raise SheetError(str(problem), problems=(problem,)) from None
     if isinstance(result, GainValue):
         return result.value

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import stat
 import tomllib
 from pathlib import Path
@@ -11,6 +12,8 @@ from gainbench.errors import SheetError
 MAX_BYTES = 1_000_000
 """The largest sheet that is read: a larger one is no sheet."""
 SUFFIX = ".bench.toml"
+_MOST_DOTS = 30
+_STRING_OR_COMMENT = re.compile(r'"(?:[^"\\\n]|\\.)*"|\'[^\'\n]*\'|#[^\n]*')
 _BYTE_ORDER_MARKS = {b"\xff\xfe": "UTF-16", b"\xfe\xff": "UTF-16"}
 
 
@@ -71,18 +74,36 @@ def plain_values(text: str, name: str) -> dict[str, object]:
     SheetError
         If the text is not TOML, or longer than a sheet is.
     """
-    if len(text) > MAX_BYTES or len(text.encode("utf-8", errors="replace")) > MAX_BYTES:
+    try:
+        size = len(text) if len(text) > MAX_BYTES else len(text.encode("utf-8"))
+    except UnicodeEncodeError:
+        raise SheetError(f"{name}: the text holds a half character that no file can hold; take it out") from None
+    if size > MAX_BYTES:
         raise SheetError(f"{name}: the text is longer than {MAX_BYTES} bytes; a bench sheet is shorter")
     if not text.strip():
         raise SheetError(f"{name}: the file is empty; a bench sheet starts with format = 1")
+    _refuse_deep_keys(text, name)
     try:
         return tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
-        raise SheetError(f"{name}: this is not TOML: {error}") from None
+        raise SheetError(
+            f"{name}: this is not TOML: {error}; texts and quantities stand in quotes"
+            ' (for example resistance = "0.60 ohm")'
+        ) from None
     except RecursionError:
         raise SheetError(f"{name}: this is not a bench sheet: its brackets are nested too deeply") from None
     except ValueError:
         raise SheetError(f"{name}: this is not a bench sheet: a number or a date in it cannot be read") from None
+
+
+def _refuse_deep_keys(text: str, name: str) -> None:
+    """Keep dotted keys short: the TOML reader's memory and time grow with the square of their parts."""
+    # A string over several lines may hide where a line's own strings begin, so that dots in them count as well.
+    several_lines = '"""' in text or "'''" in text
+    plain = text if several_lines else _STRING_OR_COMMENT.sub("", text)
+    for number, line in enumerate(plain.split("\n"), start=1):
+        if line.count(".") > _MOST_DOTS:
+            raise SheetError(f"{name}: this is not a bench sheet: line {number} has more than {_MOST_DOTS} dots")
 
 
 def default_title(name: str) -> str:

@@ -11,8 +11,8 @@ from collections.abc import Iterator, Mapping
 from gainbench.errors import SheetProblem, UnitError
 from gainbench.model import MAX_TICKS, DesignMethod, MachineKind, SpeedSensor, TrainKind, WindupRule
 from gainbench.sheetfile.entries import GainValue, shown
+from gainbench.sheetfile.problems import example_line, example_of, missing
 from gainbench.sheetfile.tables import (
-    ENTRIES,
     SIGNALS,
     CurrentGainsTable,
     CurrentLoopTable,
@@ -24,6 +24,7 @@ from gainbench.sheetfile.tables import (
     SpeedLoopTable,
     StageTable,
     TrainTable,
+    entry_at,
 )
 from gainbench.units import unit_size
 
@@ -43,14 +44,6 @@ _METHOD_KEYS: dict[str, tuple[str, ...]] = {
 Raw = Mapping[str, object]
 
 
-def missing(path: str, why: str = "") -> SheetProblem:
-    """A required key that is not there."""
-    entry = ENTRIES.get(path)
-    example = f"{path.rpartition('.')[2]} = {entry.example}" if entry is not None else ""
-    reason = f"is missing; {why} needs it" if why else "is missing; it has no default"
-    return SheetProblem(path=path, value="", reason=reason, example=example)
-
-
 def machine_presence(machine: Raw) -> Iterator[SheetProblem]:
     """Keys that the kind of machine needs."""
     kind = machine.get("kind")
@@ -64,7 +57,7 @@ def machine_presence(machine: Raw) -> Iterator[SheetProblem]:
             value="",
             reason=f"is missing; give {names}"
             + (", a speed_constant is not used for pm-sine" if "speed_constant" in machine else ""),
-            example=f"torque_constant = {ENTRIES['machine.torque_constant'].example}",
+            example=example_line("machine.torque_constant"),
         )
     needed: list[str] = []
     if kind in (MachineKind.PM_SINE, MachineKind.PM_BLOCK):
@@ -75,7 +68,7 @@ def machine_presence(machine: Raw) -> Iterator[SheetProblem]:
             needed.append("back_emf_values")
     for key in needed:
         if key not in machine:
-            yield missing(f"machine.{key}", f"kind {shown(kind)}")
+            yield missing(f"machine.{key}", why=f"kind {shown(kind)}")
 
 
 def train_presence(train: Raw) -> Iterator[SheetProblem]:
@@ -83,13 +76,13 @@ def train_presence(train: Raw) -> Iterator[SheetProblem]:
     if train.get("kind") == TrainKind.ELASTIC:
         for key in ("shaft_stiffness", "shaft_damping"):
             if key not in train:
-                yield missing(f"train.{key}", 'kind "elastic"')
+                yield missing(f"train.{key}", why='kind "elastic"')
 
 
 def stage_presence(stage: Raw) -> Iterator[SheetProblem]:
     """Keys that the speed sensor needs."""
     if stage.get("speed_sensor") == SpeedSensor.ENCODER and "encoder_counts" not in stage:
-        yield missing("stage.encoder_counts", 'speed_sensor "encoder"')
+        yield missing("stage.encoder_counts", why='speed_sensor "encoder"')
 
 
 def loop_presence(path: str, loop: Raw) -> Iterator[SheetProblem]:
@@ -98,8 +91,8 @@ def loop_presence(path: str, loop: Raw) -> Iterator[SheetProblem]:
     if not isinstance(method, str):
         return
     for key in _METHOD_KEYS.get(method, ()):
-        if key not in loop:
-            yield missing(f"{path}.{key}", f"method {shown(method)}")
+        if key not in loop and entry_at(f"{path}.{key}") is not None:
+            yield missing(f"{path}.{key}", why=f"method {shown(method)}")
     if method == DesignMethod.BY_HAND:
         yield from one_integral(path, loop)
 
@@ -108,12 +101,18 @@ def one_integral(path: str, gains: Raw) -> Iterator[SheetProblem]:
     """Exactly one of ki, ti and wi."""
     given = [key for key in ("ki", "ti", "wi") if key in gains]
     if not given:
-        yield SheetProblem(path=f"{path}.ki", value="", reason="is missing; give one of ki, ti and wi")
+        yield SheetProblem(
+            path=f"{path}.ki",
+            value="",
+            reason="is missing; give one of ki, ti and wi",
+            example=example_line(f"{path}.ki"),
+        )
     for key in given[1:]:
         yield SheetProblem(
             path=f"{path}.{key}",
             value=shown(gains[key]),
             reason=f"{given[0]} is given as well: give one of ki, ti and wi, and take the others out",
+            example=f"{given[0]} = {shown(gains[given[0]])}",
         )
 
 
@@ -124,7 +123,7 @@ def train_values(train: TrainTable) -> Iterator[SheetProblem]:
             path="train.load_inertia",
             value="0",
             reason="must be above 0 behind an elastic shaft",
-            example=ENTRIES["train.load_inertia"].example,
+            example=example_of("train.load_inertia"),
         )
 
 
@@ -136,7 +135,7 @@ def stage_values(stage: StageTable, raw: Raw) -> Iterator[SheetProblem]:
             path="stage.current_rate",
             value=shown(raw["current_rate"]),
             reason="must be twice stage.pwm_frequency, equal to it, or it over a whole number",
-            example=shown(raw["pwm_frequency"]),
+            example=f'"{stage.pwm_frequency / max(1, round(ratio)):.12g} Hz"',
         )
     divisor = stage.current_rate / stage.speed_rate
     if not _whole(divisor):
@@ -168,6 +167,7 @@ def duty_values(duty: DutyTable, stage: StageTable | None, raw: Raw) -> Iterator
                 path=f"duty.{key}",
                 value=shown(raw[key]),
                 reason=f"is beyond duty.length, which is {shown(raw['length'])}",
+                example=shown(raw["length"]),
             )
     start = duty.reference_at or 0.0
     if duty.stop_at is not None and duty.stop_at < start:
@@ -175,6 +175,7 @@ def duty_values(duty: DutyTable, stage: StageTable | None, raw: Raw) -> Iterator
             path="duty.stop_at",
             value=shown(raw["stop_at"]),
             reason=f"is before duty.reference_at, which is {shown(raw.get('reference_at', '0 s'))}",
+            example=shown(raw["length"]),
         )
     if stage is None:
         return
@@ -188,7 +189,10 @@ def duty_values(duty: DutyTable, stage: StageTable | None, raw: Raw) -> Iterator
         )
     if ticks < 1:
         yield SheetProblem(
-            path="duty.length", value=shown(raw["length"]), reason="is shorter than one period of the current loop"
+            path="duty.length",
+            value=shown(raw["length"]),
+            reason="is shorter than one period of the current loop",
+            example=f'"{1000.0 / stage.current_rate:.6g} s"',
         )
 
 
@@ -206,7 +210,7 @@ def gain_values(
             path=f"{path}.ki",
             value=shown(raw["ki"]),
             reason="this unit is that of Ki times the loop's period, and aims.firmware.ki_includes_period is not true",
-            example='"4681 V/(A*s)"' if isinstance(gains, CurrentGainsTable | CurrentLoopTable) else '"57.6 A/rad"',
+            example=example_of(f"{path}.ki"),
         )
     if not used or gains.kp is None or gains.kp.value != 0.0:
         return
@@ -218,7 +222,7 @@ def gain_values(
     elif firmware is not None and firmware.windup is WindupRule.BACK_CALCULATION:
         reason = 'must be above 0 where aims.firmware.windup is "back-calculation"'
     if reason:
-        yield SheetProblem(path=f"{path}.kp", value=shown(raw["kp"]), reason=reason)
+        yield SheetProblem(path=f"{path}.kp", value=shown(raw["kp"]), reason=reason, example=example_of(f"{path}.kp"))
 
 
 def kept_values(kept: list[KeptTable | None]) -> Iterator[SheetProblem]:
@@ -233,6 +237,7 @@ def kept_values(kept: list[KeptTable | None]) -> Iterator[SheetProblem]:
                 path=f"kept[{index}].name",
                 value=shown(one.name),
                 reason=f"kept[{seen[name]}] has this name as well: each kept tuning needs a name of its own",
+                example=f'"kept {index + 1}"',
             )
         seen.setdefault(name, index)
 
@@ -245,7 +250,7 @@ def evidence_values(index: int, evidence: EvidenceTable) -> Iterator[SheetProble
             path=f"evidence[{index}].columns",
             value="{}",
             reason="names no signal",
-            example='time = { column = "t", unit = "s" }',
+            example=example_line(f"evidence[{index}].columns.time"),
         )
     for signal, dimension in SIGNALS.items():
         column = getattr(evidence.columns, signal)

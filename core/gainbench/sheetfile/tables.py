@@ -6,9 +6,10 @@ Defaults are not in here: a key that is left out leaves the model's own default 
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Iterator
 from enum import StrEnum
-from typing import Annotated, Any, get_type_hints
+from typing import Annotated, Any, get_args, get_type_hints
 
 from pydantic import BaseModel, ConfigDict
 
@@ -311,15 +312,34 @@ TABLES: dict[str, type[Table]] = {
 REQUIRED_TABLES: tuple[str, ...] = ("machine", "train", "stage", "aims.current", "aims.speed", "duty")
 
 
-def _entries_of(table: type[Table]) -> Iterator[tuple[str, Entry]]:
+LISTS: dict[str, type[Table]] = {"kept": KeptTable, "evidence": EvidenceTable}
+"""The tables that a sheet may hold many of."""
+
+
+def _entries_of(table: type[Table], prefix: str) -> Iterator[tuple[str, Entry]]:
     for key, hint in get_type_hints(table, include_extras=True).items():
         marks: tuple[Any, ...] = getattr(hint, "__metadata__", ())
         for mark in marks:
             if isinstance(mark, Entry):
-                yield key, mark
+                yield f"{prefix}.{key}", mark
+        for inner in (hint, *get_args(hint)):
+            if isinstance(inner, type) and issubclass(inner, Table):
+                yield from _entries_of(inner, f"{prefix}.{key}")
 
 
 ENTRIES: dict[str, Entry] = {
-    f"{path}.{key}": entry for path, table in TABLES.items() for key, entry in _entries_of(table)
+    path: entry for holder, table in TABLES.items() for path, entry in _entries_of(table, holder)
 }
 """Every single value of a sheet by its dotted path, and what it may be."""
+
+_LISTED: dict[str, Entry] = {
+    path: entry for holder, table in LISTS.items() for path, entry in _entries_of(table, holder)
+}
+_INDEX = re.compile(r"\[\d+\]")
+
+
+def entry_at(path: str) -> Entry | None:
+    """What the value at a path may be, ``kept[0].speed.kp`` included; None where the format has no such value."""
+    if path == "title":
+        return TITLE
+    return ENTRIES.get(path) or _LISTED.get(_INDEX.sub("", path))

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Mapping
 from difflib import get_close_matches
 
 from gainbench.errors import SheetProblem, UnitError
 from gainbench.model import Rig, Tolerance
 from gainbench.sheetfile.entries import Entry, EntryError, Gain, Number, Quantity, shown
+from gainbench.sheetfile.problems import MOST_OF_A_KIND, TOLERANCE_EXAMPLE
 from gainbench.sheetfile.tables import ENTRIES
 from gainbench.units import Dimension, parse, parse_difference
 
@@ -31,22 +33,26 @@ def read_tolerances(raw: Mapping[str, object], rig: Rig | None, problems: list[S
     tuple of Tolerance
         Those that are taken.
     """
-    found: list[Tolerance] = []
+    found: dict[str, Tolerance] = {}
     for path, value in _flat(raw):
         entry = ENTRIES.get(path)
         shown_path = f'tolerance."{path}"' if path.isascii() and path.isprintable() else f"tolerance.{shown(path)}"
         try:
             if not isinstance(entry, Quantity | Number | Gain):
-                raise EntryError(_no_tolerance(path, entry))
+                raise EntryError(_no_tolerance(path, entry), example=TOLERANCE_EXAMPLE)
             tolerance = _read(path, value, entry)
             _check_reach(tolerance, entry, rig)
+            if path in found:
+                raise EntryError("this path is given twice: keep one of them", example=TOLERANCE_EXAMPLE)
         except EntryError as error:
             problems.append(
                 SheetProblem(path=shown_path, value=shown(value), reason=error.reason, example=error.example)
             )
+            if len(problems) > MOST_OF_A_KIND:
+                break
         else:
-            found.append(tolerance)
-    return tuple(found)
+            found[path] = tolerance
+    return tuple(found.values())
 
 
 def _flat(raw: Mapping[str, object], prefix: str = "") -> Iterator[tuple[str, object]]:
@@ -67,18 +73,19 @@ def _no_tolerance(path: str, entry: Entry | None) -> str:
 
 
 def _read(path: str, value: object, entry: Quantity | Number | Gain) -> Tolerance:
-    example = '"10 %"'
+    example = '"40 K"' if entry.dimension is Dimension.TEMPERATURE else '"10 %"'
     if isinstance(value, str) and value.rstrip().endswith("%"):
         try:
             relative = parse(value, Dimension.SHARE)
         except UnitError as error:
             raise EntryError(error.reason, example=example) from None
+        if entry.dimension is Dimension.TEMPERATURE:
+            raise EntryError("a share of a temperature has no meaning: write it in K", example=example)
         return Tolerance(path=path, relative=_bounded(relative, 1.0, "100 %"))
     if isinstance(value, int | float) and not isinstance(value, bool):
         if isinstance(entry, Quantity) and entry.dimension is not Dimension.SHARE:
-            raise EntryError("a plain number has no unit: write it in quotes, in percent or its unit", example=example)
-        number = float(value) if abs(value) < _LARGEST else _LARGEST * 2.0
-        return Tolerance(path=path, absolute=_bounded(number, _LARGEST, "1e15"))
+            raise EntryError("a plain number has no unit: write it in quotes with its unit", example=example)
+        return Tolerance(path=path, absolute=_bounded(value, _LARGEST, "1e15"))
     if not isinstance(value, str) or isinstance(entry, Number):
         raise EntryError("must be in percent or in the quantity's unit", example=example)
     dimensions = [unit.dimension for unit in entry.units] if isinstance(entry, Gain) else [entry.dimension]
@@ -94,11 +101,13 @@ def _read(path: str, value: object, entry: Quantity | Number | Gain) -> Toleranc
 
 
 def _bounded(number: float, high: float, words: str) -> float:
-    if not number >= 0.0:
+    if not abs(number) < math.inf:
+        raise EntryError("the number must be finite", example='"10 %"')
+    if number < 0.0:
         raise EntryError("must be at least 0: it is plus and minus", example='"10 %"')
     if number > high:
         raise EntryError(f"must be at most {words}", example='"10 %"')
-    return number
+    return float(number)
 
 
 def _check_reach(tolerance: Tolerance, entry: Quantity | Number | Gain, rig: Rig | None) -> None:

@@ -24,14 +24,19 @@ percent = 1/100 * radian / radian
 gram = 1/1000 * kilogram
 pound = 0.45359237 * kilogram
 ounce = 1/16 * pound
+slug = pound * 9.80665 / 0.3048
 inch = 0.0254 * meter
 foot = 12 * inch
 minute = 60 * second
 hour = 60 * minute
 turn = 2 * pi_number * radian
+kiloturn = 1000 * turn
 degree = 1/360 * turn
+arcminute = 1/60 * degree
+arcsecond = 1/60 * arcminute
 hertz = turn / second
 rpm = turn / minute
+rps = turn / second
 
 newton = kilogram * meter / second ** 2
 gravity = 9.80665 * meter / second ** 2
@@ -65,6 +70,7 @@ SPELLINGS: dict[str, str] = {
     "lb": "pound",
     "lbm": "pound",
     "oz": "ounce",
+    "slug": "slug",
     "s": "second",
     "sec": "second",
     "second": "second",
@@ -109,9 +115,14 @@ SPELLINGS: dict[str, str] = {
     "rev": "turn",
     "revs": "turn",
     "r": "turn",
+    "kr": "kiloturn",
+    "arcmin": "arcminute",
+    "arcsec": "arcsecond",
     "Hz": "hertz",
+    "hertz": "hertz",
     "rpm": "rpm",
     "RPM": "rpm",
+    "rps": "rps",
     "K": "kelvin",
     "%": "percent",
 }
@@ -135,7 +146,7 @@ PREFIXES: dict[str, int] = {
 
 PREFIXED: frozenset[str] = frozenset(
     [
-        *("m", "g", "s", "A", "V", "H", "N", "J", "W", "Hz", "rad", "rpm", "K"),
+        *("m", "g", "s", "sec", "A", "V", "H", "N", "J", "W", "Hz", "rad", "rpm", "K"),
         *("ohm", "Ohm", "\N{GREEK CAPITAL LETTER OMEGA}", "\N{OHM SIGN}"),
     ]
 )
@@ -153,7 +164,7 @@ RUN_TOGETHER: tuple[tuple[frozenset[str], frozenset[str]], ...] = (
     (frozenset(["inch", "foot"]), frozenset(["pound", "ounce", "pound_force", "ounce_force"])),
     (frozenset(["volt", "ampere"]), frozenset(["second"])),
 )
-"""Pairs that are written without a sign between them: Nm, gcm2, ozin, ftlb, Vs."""
+"""Pairs that are written without a sign between them: Nm, gcm2, ozin, ftlb, Vs; a torque also with seconds, Nms."""
 
 TEMPERATURES: dict[str, str] = {"degC": "degC", "°C": "degC", "℃": "degC", "degF": "degF", "°F": "degF", "K": "K"}
 """Scales of temperature, and their plain names."""
@@ -170,8 +181,6 @@ HINTS: dict[str, str] = {
     "Vpk": "write V: machine.back_emf_values says which volt it is",
     "VDC": "write V",
     "Vdc": "write V",
-    "Nms": "write N*m*s",
-    "mNms": "write mN*m*s",
     "cps": "write Hz",
     "kp": "write kgf",
     "U": "write rpm for turns per minute",

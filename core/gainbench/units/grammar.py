@@ -4,9 +4,10 @@
 
     unit    = factor { ("*" | "." | "-" | " " | "/") factor }      read from left to right
     factor  = ( NAME | "1" | "(" unit ")" ) [ power ]
-    power   = ("^" | "**") [ "-" ] DIGIT | DIGIT | superscript
+    power   = ("^" | "**") [ "-" ] DIGIT | [ "-" ] DIGIT | superscript
 
-The dot is the raised one. Nothing is evaluated; length, depth and powers are bounded.
+The dot is the raised one as well. A minus between names is a hyphen, ``oz-in``; before a digit it is the sign of a
+power, ``min-1``. Nothing is evaluated; length, depth and powers are bounded.
 """
 
 from __future__ import annotations
@@ -40,10 +41,10 @@ _NAME = r"[A-Za-z_%°℃µ\N{GREEK SMALL LETTER MU}\N{GREEK CAPITAL LETTER OMEGA
 _SUPERSCRIPT = str.maketrans("⁻¹²³⁴", "-1234")
 _TOKEN = re.compile(
     rf"(?P<name>{_NAME})"
-    r"|(?P<power>(?:\^|\*\*)\s*-?\d+)"
+    r"|(?P<power>(?:\^|\*\*) ?-?[0-9]+|-[0-9]+)"
     r"|(?P<superscript>⁻?[¹²³⁴])"
-    r"|(?P<digits>\d+)"
-    r"|(?P<sign>[*/()·⋅\-])"
+    r"|(?P<digits>[0-9]+)"
+    r"|(?P<sign>[*/().·⋅\-])"
     r"|(?P<space>[ \u00a0\u2009\u202f]+)"
 )
 
@@ -189,7 +190,7 @@ class _Reader:
 
     def product(self, *, depth: int) -> list[_Factor]:
         found = self.factor(depth=depth)
-        while (sign := self.take_sign("*·⋅-/")) is not None:
+        while (sign := self.take_sign("*.·⋅-/")) is not None:
             following = self.factor(depth=depth)
             found += _raised(following, -1) if sign == "/" else following
         return found
@@ -206,7 +207,8 @@ class _Reader:
         if digits == "1":
             return []
         if digits is not None:
-            raise UnitError(f'the number {digits} is out of place in the unit "{self.text}"')
+            hint = "; a thousand turns per minute are krpm" if digits == "1000" else ""
+            raise UnitError(f'the number {digits} is out of place in the unit "{self.text}"{hint}')
         name = self.take("name")
         if name is None:
             raise UnitError(f'the unit "{self.text}" is not complete')
@@ -241,19 +243,31 @@ def _single(name: str) -> _Factor | None:
 
 
 def _named(name: str) -> list[_Factor]:
-    """A name as one factor, or as two that are written together."""
+    """A name as one factor, or as some that are written together."""
     single = _single(name)
     if single is not None:
         return [single]
+    pair = _pair(name)
+    if pair is not None:
+        return pair
+    # Nms is N*m*s and no N*ms: a force over a time is in no unit of a drive.
+    pair = _pair(name[:-1]) if name.endswith("s") else None
+    if pair is not None and all(one.unit != "second" for one in pair):
+        return [*pair, _Factor(unit="second", ten=0, power=1)]
+    if name in TEMPERATURES:
+        raise UnitError(f"{name} is a temperature and stands alone; a difference of temperature is in K")
+    raise UnitError(f'the unit "{name}" is not known{_suggestion(name)}')
+
+
+def _pair(name: str) -> list[_Factor] | None:
+    """Two factors that are written together."""
     for cut in range(1, len(name)):
         left, right = _single(name[:cut]), _single(name[cut:])
         if left is None or right is None:
             continue
         if any(left.unit in first and right.unit in second for first, second in RUN_TOGETHER):
             return [left, right]
-    if name in TEMPERATURES:
-        raise UnitError(f"{name} is a temperature and stands alone; a difference of temperature is in K")
-    raise UnitError(f'the unit "{name}" is not known{_suggestion(name)}')
+    return None
 
 
 def _suggestion(name: str) -> str:

@@ -69,6 +69,8 @@ def parse(text: str, dimension: Dimension) -> float:
         value = math.inf
     if not math.isfinite(value):
         raise UnitError("the number is too large", example=dimension.example)
+    if value == 0.0 and number != 0 and dimension is not Dimension.TEMPERATURE:
+        raise UnitError("the number is too small", example=dimension.example)
     return value + 0.0
 
 

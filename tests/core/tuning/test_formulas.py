@@ -65,8 +65,8 @@ def test_w5_pole_placement_on_a_winding(plant):
 
 def test_w2_speed_gains_of_an_ideal_inner_loop(plant):
     # W2: J = 152e-6, Kt = 0.1, 100 Hz, 60 deg, inner loop 1: exact Ki 300.036 and Kp 0.827093. Mohan, Electric Drives
-    # (from memory). |C| Kt/(J w) = 1 at -120 deg gives Kp = sin 60 w J/Kt, Ki = cos 60 w^2 J/Kt; pole placement with the
-    # poles of that loop must give the same.
+    # (from memory). |C| Kt/(J w) = 1 at -120 deg gives Kp = sin 60 w J/Kt, Ki = cos 60 w^2 J/Kt; placing
+    # the poles of that loop must give the same.
     j, kt, w = 152e-6, 0.1, math.tau * 100.0
     kp, ki = math.sin(math.pi / 3.0) * w * j / kt, 0.5 * w * w * j / kt
     assert_quantity([kp, ki], [0.827093, 300.036], rtol=2e-6, unit="SI", why="digits printed")

@@ -1,8 +1,4 @@
-"""Conversion factors against published ones.
-
-Sources: NIST SP 811 (2008), appendix B.8, factors rounded to seven digits; omega.nl inertia conversion table; U7 to
-U9 of SP 811 from memory; identities where no source is named. Oracles: pint's own registry and scipy.constants.
-"""
+"""Conversion factors against published ones; oracles: pint's own registry and scipy.constants."""
 
 from __future__ import annotations
 
@@ -13,43 +9,26 @@ import pytest
 from scipy import constants
 
 from gainbench.units import Dimension, parse, unit_size
-
-INCH, POUND, GRAVITY = 0.0254, 0.45359237, 9.80665
-EXACT = 1e-12
-SEVEN_DIGITS = 1e-6
+from unit_values import EXACT, FACTORS, GRAVITY, INCH, POUND, SEVEN_DIGITS, Published
 
 
-@pytest.mark.parametrize(
-    ("unit", "dimension", "exact", "published"),
-    [
-        # U1 to U3: torques
-        ("ozf*in", Dimension.TORQUE, POUND / 16 * GRAVITY * INCH, 7.061552e-3),
-        ("lbf*in", Dimension.TORQUE, POUND * GRAVITY * INCH, 0.1129848),
-        ("lbf*ft", Dimension.TORQUE, POUND * GRAVITY * 12 * INCH, 1.355818),
-        # U4 to U6: inertias
-        ("lb*ft^2", Dimension.INERTIA, POUND * (12 * INCH) ** 2, 4.214011e-2),
-        ("lb*in^2", Dimension.INERTIA, POUND * INCH**2, 2.926397e-4),
-        ("oz*in^2", Dimension.INERTIA, POUND / 16 * INCH**2, 1.828998e-5),
-        ("oz*in*s^2", Dimension.INERTIA, POUND / 16 * GRAVITY * INCH, 7.061552e-3),
-        ("lb*in*s^2", Dimension.INERTIA, POUND * GRAVITY * INCH, 0.1129848),
-        # U7, from memory
-        ("kgf*cm", Dimension.TORQUE, 0.0980665, 0.0980665),
-        ("gf*cm", Dimension.TORQUE, 9.80665e-5, 9.80665e-5),
-        ("dyn*cm", Dimension.TORQUE, 1e-7, 1e-7),
-        # U8, from memory
-        ("hp", Dimension.POWER, 550 * 12 * INCH * POUND * GRAVITY, 745.6999),
-        ("hp_metric", Dimension.POWER, 735.49875, 735.4988),
-        ("hp_electric", Dimension.POWER, 746.0, 746.0),
-        # U9, from memory
-        ("rpm", Dimension.SPEED, math.pi / 30.0, 0.1047198),
-        # U10
-        ("V/krpm", Dimension.BACK_EMF_CONSTANT, 0.03 / math.pi, 9.549297e-3),
-    ],
-)
-def test_factor_is_the_published_one(unit: str, dimension: Dimension, exact: float, published: float) -> None:
-    size = unit_size(unit, dimension)
-    assert size == pytest.approx(exact, rel=EXACT)
-    assert size == pytest.approx(published, rel=SEVEN_DIGITS)
+@pytest.fixture(scope="module")
+def registry() -> pint.UnitRegistry:
+    return pint.UnitRegistry()
+
+
+@pytest.mark.parametrize("value", FACTORS, ids=lambda value: value.unit)
+def test_factor_is_the_published_one(value: Published) -> None:
+    size = unit_size(value.unit, value.dimension)
+    assert size == pytest.approx(value.exact, rel=EXACT)
+    assert size == pytest.approx(value.published, rel=SEVEN_DIGITS)
+
+
+def test_a_value_without_its_source_is_refused() -> None:
+    with pytest.raises(ValueError, match="needs its source"):
+        Published(unit="rpm", dimension=Dimension.SPEED, exact=1.0, published=1.0, source=" ")
+    with pytest.raises(ValueError, match="differ"):
+        Published(unit="rpm", dimension=Dimension.SPEED, exact=1.0, published=1.1, source="x")
 
 
 @pytest.mark.parametrize(
@@ -65,28 +44,51 @@ def test_factor_is_the_published_one(unit: str, dimension: Dimension, exact: flo
         ("hp", Dimension.POWER, "horsepower"),
         ("hp_metric", Dimension.POWER, "metric_horsepower"),
         ("hp_electric", Dimension.POWER, "electrical_horsepower"),
+        ("slug*ft^2", Dimension.INERTIA, "slug * foot ** 2"),
+        ("arcmin", Dimension.ANGLE, "arcminute"),
+        ("arcsec", Dimension.ANGLE, "arcsecond"),
+        ("rps", Dimension.SPEED, "revolutions_per_second"),
         ("V/krpm", Dimension.BACK_EMF_CONSTANT, "volt / (1000 rpm)"),
         ("g*cm^2", Dimension.INERTIA, "gram * centimeter ** 2"),
         ("mN*m/A", Dimension.TORQUE_CONSTANT, "millinewton * meter / ampere"),
     ],
 )
-def test_factor_is_that_of_another_library(unit: str, dimension: Dimension, oracle: str) -> None:
-    registry = pint.UnitRegistry()
+def test_factor_is_that_of_pint(registry: pint.UnitRegistry, unit: str, dimension: Dimension, oracle: str) -> None:
     assert unit_size(unit, dimension) == pytest.approx(registry(oracle).to_base_units().magnitude, rel=EXACT)
 
 
-def test_horsepower_is_that_of_scipy() -> None:
-    assert unit_size("hp", Dimension.POWER) == pytest.approx(constants.hp, rel=EXACT)
+@pytest.mark.parametrize(
+    ("unit", "dimension", "oracle"),
+    [
+        ("hp", Dimension.POWER, constants.hp),
+        ("lb", Dimension.MASS, constants.lb),
+        ("oz", Dimension.MASS, constants.oz),
+        ("slug", Dimension.MASS, constants.slug),
+        ("lbf", Dimension.FORCE, constants.lbf),
+        ("kgf", Dimension.FORCE, constants.kgf),
+        ("dyn", Dimension.FORCE, constants.dyn),
+        ("in", Dimension.LENGTH, constants.inch),
+        ("ft", Dimension.LENGTH, constants.foot),
+        ("min", Dimension.TIME, constants.minute),
+        ("h", Dimension.TIME, constants.hour),
+        ("deg", Dimension.ANGLE, constants.degree),
+        ("arcmin", Dimension.ANGLE, constants.arcmin),
+        ("arcsec", Dimension.ANGLE, constants.arcsec),
+    ],
+)
+def test_factor_is_that_of_scipy(unit: str, dimension: Dimension, oracle: float) -> None:
+    assert unit_size(unit, dimension) == pytest.approx(oracle, rel=EXACT)
 
 
 def test_inverse_torques() -> None:
-    # U1, SP 811 B.8: 1 N m = 141.6119 ozf in; U4: 1 kg m2 = 23.73036 lb ft2
+    # NIST SP 811, 2008, appendix B.8, from memory: 1 N m = 141.6119 ozf in (read in the torque table of me-systeme.de),
+    # 1 kg m2 = 23.73036 lb ft2 (read in the inertia conversions of webtec)
     assert 1.0 / unit_size("ozf*in", Dimension.TORQUE) == pytest.approx(141.6119, rel=SEVEN_DIGITS)
     assert 1.0 / unit_size("lb*ft^2", Dimension.INERTIA) == pytest.approx(23.73036, rel=SEVEN_DIGITS)
 
 
 def test_machine_constants_agree_between_trades() -> None:
-    # U10, identities of U1, U2 and U9
+    # Identities of the torques and the rpm above.
     volt = unit_size("V/krpm", Dimension.BACK_EMF_CONSTANT)
     assert volt == unit_size("V/krpm", Dimension.TORQUE_CONSTANT)
     assert volt / unit_size("ozf*in/A", Dimension.TORQUE_CONSTANT) == pytest.approx(1.352294, rel=SEVEN_DIGITS)
@@ -95,7 +97,7 @@ def test_machine_constants_agree_between_trades() -> None:
 
 
 def test_power_torque_speed_identities() -> None:
-    # U11
+    # Identities: 30000/pi, and one horsepower or kilowatt over one rpm.
     constant = unit_size("mN*m/A", Dimension.TORQUE_CONSTANT) * unit_size("rpm/V", Dimension.SPEED_CONSTANT)
     assert 1.0 / constant == pytest.approx(30000.0 / math.pi, rel=EXACT)
     watt_per_rpm = unit_size("kW", Dimension.POWER) / unit_size("rpm", Dimension.SPEED)
@@ -105,7 +107,7 @@ def test_power_torque_speed_identities() -> None:
 
 
 def test_ounce_is_a_mass_or_a_force() -> None:
-    # U12, omega.nl inertia conversion table: 1 ozf in s2 = 386.088 oz in2
+    # omega.nl, inertia conversion table: 1 ozf in s2 = 386.088 oz in2
     ratio = unit_size("oz*in*s^2", Dimension.INERTIA) / unit_size("oz*in^2", Dimension.INERTIA)
     assert ratio == pytest.approx(386.088, abs=2e-3)
     assert ratio == pytest.approx(GRAVITY / INCH, rel=EXACT)

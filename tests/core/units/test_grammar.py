@@ -1,5 +1,6 @@
 from __future__ import annotations
 
+import re
 import subprocess
 import sys
 
@@ -45,6 +46,16 @@ from gainbench.units.grammar import MAX_UNIT_LENGTH, amount
         ("r/min", Dimension.SPEED, "rpm"),
         ("1/(V/rpm)", Dimension.SPEED_CONSTANT, "rpm/V"),
         ("Nm s / rad", Dimension.VISCOUS_FRICTION, "N*m*s/rad"),
+        ("mN.m/A", Dimension.TORQUE_CONSTANT, "mN*m/A"),
+        ("kg.m^2", Dimension.INERTIA, "kg*m^2"),
+        ("Nms/rad", Dimension.VISCOUS_FRICTION, "N*m*s/rad"),
+        ("mNms/rad", Dimension.VISCOUS_FRICTION, "mN*m*s/rad"),
+        ("V A-1 s-1", Dimension.CURRENT_KI, "V/(A*s)"),
+        ("oz-in-s2", Dimension.INERTIA, "ozf*in*s^2"),
+        ("V/(kr/min)", Dimension.BACK_EMF_CONSTANT, "V/krpm"),
+        ("msec", Dimension.TIME, "ms"),
+        ("rps", Dimension.SPEED, "turn/s"),
+        ("hertz", Dimension.FREQUENCY, "Hz"),
     ],
 )
 def test_trade_spelling(unit: str, dimension: Dimension, plain: str) -> None:
@@ -78,12 +89,19 @@ def test_min_is_a_minute_and_not_a_milliinch() -> None:
         ("__import__('os')", "does not belong"),
         ("V" * (MAX_UNIT_LENGTH + 1), "longer"),
         ("degC/s", "stands alone"),
+        ("kg*m\N{ARABIC-INDIC DIGIT TWO}", "does not belong"),
+        ("V^\n2", "does not belong"),
+        ("V/1000rpm", "are krpm"),
+        ("N..m", "not complete"),
+        ("V.", "not complete"),
+        ("-1", "not complete"),
+        ("m^-9", "power -9"),
+        ("m-9", "power -9"),
     ],
 )
 def test_refused(unit: str, expected: str) -> None:
-    with pytest.raises(UnitError, match="^") as caught:
+    with pytest.raises(UnitError, match=re.escape(expected)):
         amount(unit)
-    assert expected in str(caught.value)
 
 
 def test_importing_the_package_leaves_pint_alone() -> None:
