@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import importlib
 import os
 from collections.abc import Iterator
 from pathlib import Path
@@ -10,49 +9,29 @@ from pathlib import Path
 import pytest
 from hypothesis import settings
 
+from qt_presence import qt_is_missing
+
 TREE = Path(__file__).resolve().parents[1]
 OUTSIDE_DATA = TREE.parent / "shared" / "data"
-QT_MODULES = ("PySide6.QtGui", "PySide6.QtWidgets", "PySide6.QtTest")
 
 # Before anything imports Qt: a window that a test opens must never come up on the screen of the one who runs it.
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
 
-
-def _qt_trouble() -> str:
-    """Why Qt cannot be imported here, in its own words; empty where it can."""
-    try:
-        for name in QT_MODULES:
-            importlib.import_module(name)
-    except ImportError as error:
-        return f"Qt cannot be imported: {error}"
-    return ""
-
-
-def _on_ci() -> bool:
-    return os.environ.get("CI", "").lower() == "true"
-
-
 # A deadline would be a timed test; the CI machine tries the same examples every time.
-settings.register_profile("gainbench", deadline=None, derandomize=_on_ci())
+settings.register_profile("gainbench", deadline=None, derandomize=os.environ.get("CI", "").lower() == "true")
 settings.load_profile("gainbench")
 
 
 def pytest_addoption(parser: pytest.Parser, pluginmanager: pytest.PytestPluginManager) -> None:
     """Leave the plugin for Qt out where Qt cannot be imported: it would end the whole run while it is configured."""
-    if pluginmanager.has_plugin("pytest-qt") and not _on_ci() and _qt_trouble():
+    if pluginmanager.has_plugin("pytest-qt") and qt_is_missing():
         pluginmanager.unregister(name="pytest-qt")
-
-
-@pytest.fixture(scope="session")
-def tree() -> Path:
-    """The folder that holds ``core``, ``app``, ``resources`` and ``tests``."""
-    return TREE
 
 
 @pytest.fixture(scope="session")
 def qt_trouble() -> str:
     """Why Qt cannot be imported here; empty where it can, and always empty on the CI machine, where it must."""
-    return "" if _on_ci() else _qt_trouble()
+    return qt_is_missing()
 
 
 @pytest.fixture(scope="session")

@@ -6,6 +6,7 @@
     +-- UnitError        a text that is not a quantity of the dimension asked for
     +-- SheetError       a bench sheet that cannot be read, or a value in it that is refused
     +-- HandoverError    firmware files that cannot be written, or whose origin cannot be told
+    +-- LogError         a log of the bench that cannot be read or used
 
 Wrong physics is not an error: it is a finding of level ``breaks`` in the assessment. A message says
 where, what, why, and how to put it right; it is shown to the user as it stands.
@@ -70,3 +71,7 @@ class SheetError(GainbenchError):
 
 class HandoverError(GainbenchError):
     """Firmware files cannot be written, or an origin cannot be told."""
+
+
+class LogError(GainbenchError):
+    """A log cannot be read, or cannot be used for what is asked; the message names the file."""

@@ -19,6 +19,7 @@ from gainbench.model.aims import (
     WindupRule,
 )
 from gainbench.model.duty import MAX_TICKS, Duty
+from gainbench.model.evidence import SIGNAL_DIMENSIONS, EvidenceLog, Experiment, LogColumn, SignalName
 from gainbench.model.machine import BackEmfValues, CurrentValues, Machine, MachineKind, WindingValues
 from gainbench.model.sheet import KeptTuning, Rig, Sheet, Tolerance
 from gainbench.model.stage import SpeedSensor, Stage
@@ -27,22 +28,27 @@ from gainbench.model.train import Train, TrainKind
 __all__ = [
     "CURRENT_METHODS",
     "MAX_TICKS",
+    "SIGNAL_DIMENSIONS",
     "SPEED_METHODS",
     "Aims",
     "BackEmfValues",
     "CurrentValues",
     "DesignMethod",
     "Duty",
+    "EvidenceLog",
+    "Experiment",
     "Firmware",
     "GainForm",
     "HandGains",
     "IntegratorRule",
     "KeptTuning",
+    "LogColumn",
     "LoopAims",
     "Machine",
     "MachineKind",
     "Rig",
     "Sheet",
+    "SignalName",
     "SpeedAims",
     "SpeedOutput",
     "SpeedSensor",

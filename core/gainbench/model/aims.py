@@ -79,7 +79,7 @@ class HandGains:
     kp: float
     """Current loop [V/A]; speed loop [A s/rad], or [N m s/rad] with ``kp_is_torque``; >= 0."""
     ki: float | None = None
-    """Current loop [V/(A s)]; speed loop [A/rad], or [N m/rad] with ``ki_is_torque``; times a second with ``ki_has_period``."""
+    """Current loop [V/(A s)]; speed loop [A/rad], [N m/rad] with ``ki_is_torque``, times s with ``ki_has_period``."""
     ti: float | None = None
     """Kp/Ki [s], > 0."""
     wi: float | None = None

@@ -58,7 +58,7 @@ class Machine:
     torque_constant: float | None = None
     """[N m/A], > 0, in the ampere of ``current_values``."""
     back_emf_constant: float | None = None
-    """[V s/rad], > 0, in the volt of ``back_emf_values`` (pm-sine), line-to-line peak (pm-block), terminal (brushed)."""
+    """[V s/rad], > 0, in volts of ``back_emf_values`` (pm-sine), line-to-line peak (pm-block) or terminals."""
     speed_constant: float | None = None
     """[rad/(s V)], > 0; not for pm-sine."""
     viscous_friction: float = 0.0

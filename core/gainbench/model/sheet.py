@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 from gainbench.model.aims import Aims, HandGains
 from gainbench.model.duty import Duty
+from gainbench.model.evidence import EvidenceLog
 from gainbench.model.machine import Machine
 from gainbench.model.stage import Stage
 from gainbench.model.train import Train
@@ -52,3 +53,4 @@ class Sheet:
     duty: Duty
     tolerances: tuple[Tolerance, ...] = ()
     kept: tuple[KeptTuning, ...] = ()
+    evidence: tuple[EvidenceLog, ...] = ()
