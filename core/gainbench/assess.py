@@ -43,7 +43,7 @@ class Assessment:
     findings: tuple[Finding, ...]
 
 
-def assess(sheet: Sheet) -> Assessment:
+def assess(sheet: Sheet, *, simulated: bool = True) -> Assessment:
     """Assess a sheet: plant, gains, margins of the sampled loops, response of the duty, findings.
 
     A pure function: the same sheet gives an equal assessment, and nothing is remembered between calls.
@@ -52,6 +52,8 @@ def assess(sheet: Sheet) -> Assessment:
     ----------
     sheet : Sheet
         As it was read, or made of the model's classes.
+    simulated : bool
+        False leaves out what is simulated, the locked step and the response, and the findings that rest on them.
 
     Returns
     -------
@@ -70,7 +72,7 @@ def assess(sheet: Sheet) -> Assessment:
     )
     start_problem = start_breaks(plant, sheet.rig.train.load_torque)
     locked = response = None
-    if current.gains is not None and _stable(current):
+    if simulated and current.gains is not None and _stable(current):
         locked = locked_step(own, plant, gains=current.gains, rule=inner.rule)
         if speed.gains is not None and _stable(speed) and start_problem is None:
             response = simulate(
@@ -127,14 +129,19 @@ def _stable(loop: LoopAssessment) -> bool:
     return loop.figures is not None and loop.figures.stable
 
 
-def warm_up() -> None:
+def warm_up(*, simulated: bool = True) -> None:
     """Compile, or load from the disk cache, every kernel that :func:`assess` may call.
 
     Takes seconds once per machine and parts of a second afterwards; a window calls it off its own thread. Until then
     the first call of :func:`assess` pays.
+
+    Parameters
+    ----------
+    simulated : bool
+        False compiles only what ``assess(sheet, simulated=False)`` calls.
     """
-    assess(_small_sheet(DesignMethod.CROSSOVER_MARGIN))
-    assess(_small_sheet(DesignMethod.BANDWIDTH_MARGIN))
+    assess(_small_sheet(DesignMethod.CROSSOVER_MARGIN), simulated=simulated)
+    assess(_small_sheet(DesignMethod.BANDWIDTH_MARGIN), simulated=simulated)
 
 
 def _small_sheet(method: DesignMethod) -> Sheet:

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from gainbench.kernels.loop_grid import loop_grid
 from gainbench.plant import Plant
 from gainbench.results import Gains, LockedStep, LoopCurve, LoopFigures
 from gainbench.sampling import Hardware, Loop
@@ -73,7 +74,9 @@ def _winds_inside(loop: Loop, gains: Gains) -> bool:
     taken_out = poles[slowest].imag == 0.0
     slow = float(poles[slowest].real) if taken_out else math.nan
     others = np.delete(poles, slowest) if taken_out else poles
-    turns = half_turns(loop.plant, gains.kp, gains.ki * loop.plant.period, loop.rule, slow)
+    nothing = np.empty(0)
+    grid = loop_grid(loop.plant.period, loop.plant.window, peaks=nothing, spreads=nothing)
+    turns = half_turns(loop.plant, gains.kp, gains.ki * loop.plant.period, loop.rule, slow, grid)
     # Zeros within less poles within, of what is left: poles that were taken out leave a zero more.
     outside = int(np.sum(~_inside(others))) + int(taken_out) + int(gains.ki != 0.0) - round(turns)
     return outside == 0
@@ -152,11 +155,10 @@ def read_loop(loop: Loop, gains: Gains, *, stable: bool | None = None) -> LoopRe
 
     if stable is None:
         stable = is_stable(loop, gains)
-    peaks, spreads = _sharp_modes(loop)
     period = loop.plant.period
-    numbers, frequency, response = loop_figures.loop_numbers(
-        loop.plant, gains.kp, gains.ki * period, loop.rule, peaks, spreads
-    )
+    peaks, spreads = sharp_modes(loop)
+    grid = loop_grid(period, loop.plant.window, peaks=peaks, spreads=spreads)
+    numbers, frequency, response = loop_figures.loop_numbers(loop.plant, gains.kp, gains.ki * period, loop.rule, grid)
     frequency_hz = frequency / math.tau
     frequency_hz.setflags(write=False)
     response.setflags(write=False)
@@ -183,7 +185,7 @@ def _known(value: float) -> float | None:
     return value if math.isfinite(value) else None
 
 
-def _sharp_modes(loop: Loop) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+def sharp_modes(loop: Loop) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """Frequencies and half widths [rad/s] of what the even grid could miss."""
     modes = [mode for mode in loop.modes if -mode.real < _SHARP * mode.imag]
     if loop.plant.m.shape[0] > 2:
@@ -220,11 +222,24 @@ def locked_step(own: Hardware, plant: Plant, *, gains: Gains, rule: int) -> Lock
         Figures are None where the step does not get there, as with a locked loop that does not settle.
     """
     from gainbench.kernels import locked_step as kernel
+    from gainbench.kernels.lifting import held_step
 
-    pi = kernel.LockedPi(gains.kp, gains.ki * own.period, rule)
-    times, curve, per_tick = kernel.locked_step(
-        plant.resistance, plant.inductance, plant.filter_time, own.period, own.delay.held, own.delay.part, pi
+    filtered = plant.filter_time > 0.0
+    a = np.zeros((2, 2))
+    a[0, 0] = -plant.resistance / plant.inductance
+    if filtered:
+        a[1, 0], a[1, 1] = 1.0 / plant.filter_time, -1.0 / plant.filter_time
+    column = np.array([1.0 / plant.inductance, 0.0])
+    part = own.delay.part
+    winding = kernel.Winding(
+        plant.resistance,
+        plant.inductance / plant.resistance,
+        filtered,
+        *held_step(a, column, part * own.period),
+        *held_step(a, column, (1.0 - part) * own.period),
     )
+    pi = kernel.LockedPi(gains.kp, gains.ki * own.period, rule)
+    times, curve, per_tick = kernel.locked_step(winding, own.period, own.delay.held, part, pi)
     time = np.linspace(0.0, curve.size * own.period / per_tick, curve.size + 1)
     current = np.concatenate(([0.0], curve))
     time.setflags(write=False)

@@ -120,7 +120,7 @@ def current_size(machine: Machine) -> float:
 
 
 def winding_size(machine: Machine) -> float:
-    """Ohms (and henries) of the equations in one of the sheet: per phase for pm-sine, between terminals for pm-block."""
+    """Ohms (and henries) of the equations in one of the sheet: phase values for pm-sine, line-to-line for pm-block."""
     if machine.kind is MachineKind.PM_SINE and machine.winding_values is WindingValues.LINE_TO_LINE:
         return 0.5
     if machine.kind is MachineKind.PM_BLOCK and machine.winding_values is WindingValues.PHASE:
@@ -161,7 +161,8 @@ def refer(rig: Rig) -> Plant:
     Raises
     ------
     ValueError
-        If the machine has none of the three constants, or an elastic train no stiffness or damping; a sheet that was read has them.
+        If the machine has none of the three constants, or an elastic train no stiffness or damping; a sheet that was
+        read has them.
     """
     machine, train, stage = rig.machine, rig.train, rig.stage
     constants = back_emf_candidates(machine)

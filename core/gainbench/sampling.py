@@ -21,6 +21,8 @@ from gainbench.plant import Plant, state_space
 from gainbench.results import Gains
 
 _RULES = {IntegratorRule.BACKWARD: 0, IntegratorRule.FORWARD: 1, IntegratorRule.TRAPEZOID: 2}
+_SPEED = 1
+"""Index of the motor's speed among the states."""
 _WHOLE = 1e-9
 """An update delay this close to a whole number of periods is that number."""
 
@@ -61,12 +63,10 @@ def update_delay(stage: Stage) -> UpdateDelay:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Hardware:
-    """The continuous plant as plain arrays, with the current loop's timing."""
+    """The plant over one current period, with the current loop's timing."""
 
-    a: NDArray[np.float64]
-    """shape (n, n)."""
-    voltage_column: NDArray[np.float64]
-    """shape (n,)."""
+    tick: NDArray[np.float64]
+    """exp(a Ts) - I, then the columns of the older and of the newer voltage of a period, shape (n, n + 2)."""
     sampled_current: int
     period: float
     """Ts [s]."""
@@ -93,12 +93,10 @@ class CurrentLoop:
 
         own, delay = self.hardware, self.hardware.delay
         matrix: NDArray[np.float64] = closed_current(
-            own.a,
-            own.voltage_column,
+            own.tick,
             own.sampled_current,
-            own.period,
             delay.held,
-            delay.part,
+            delay.part > 0.0,
             gains.kp,
             gains.ki * own.period,
             self.rule,
@@ -137,13 +135,15 @@ def hardware(plant: Plant, stage: Stage) -> Hardware:
     Hardware
         SI.
     """
+    from gainbench.kernels.lifting import tick_step
+
     space = state_space(plant)
+    delay = update_delay(stage)
     return Hardware(
-        a=np.array(space.a),
-        voltage_column=np.array(space.b[:, 0]),
+        tick=tick_step(np.array(space.a), np.array(space.b[:, 0]), stage.current_period, delay.part),
         sampled_current=space.sampled_current,
         period=stage.current_period,
-        delay=update_delay(stage),
+        delay=delay,
         modes=_elastic_modes(plant),
     )
 
@@ -170,12 +170,27 @@ def current_loop(own: Hardware, firmware: Firmware) -> CurrentLoop:
     ----------
     K. J. Astrom, B. Wittenmark, Computer-Controlled Systems, 3rd ed., 1997, section 2.3 (from memory).
     """
-    from gainbench.kernels.lifting import current_plant
-
+    # The last state, the angle, feeds nothing back.
+    n = own.tick.shape[0] - 1
+    nothing = np.zeros(n)
+    sampled = np.zeros(n)
+    sampled[own.sampled_current] = 1.0
     return CurrentLoop(
         hardware=own,
-        plant=SampledPlant._make(
-            current_plant(own.a, own.voltage_column, own.sampled_current, own.period, own.delay.held, own.delay.part)
+        plant=SampledPlant(
+            m=own.tick[:n, :n].copy(),
+            c=sampled,
+            b0=own.tick[:n, n + 2].copy(),
+            b1=own.tick[:n, n + 1].copy(),
+            bw=nothing,
+            d0=0.0,
+            d1=0.0,
+            dw=0.0,
+            period=own.period,
+            shift=own.delay.held,
+            window=1,
+            scale=1.0,
+            filter_gain=1.0,
         ),
         rule=_RULES[firmware.integrator],
     )
@@ -210,29 +225,40 @@ def speed_loop(own: Hardware, plant: Plant, *, stage: Stage, firmware: Firmware,
     ----------
     T. Chen, B. Francis, Optimal Sampled-Data Control Systems, 1995, chapter 8, for the lifting (from memory).
     """
-    from gainbench.kernels.lifting import speed_plant
+    from gainbench.kernels.lifting import closed_tick, lifted_tick
 
     encoder = stage.speed_sensor is SpeedSensor.ENCODER
     rule = _RULES[firmware.integrator]
-    gain = 1.0 if stage.speed_filter <= 0.0 else -math.expm1(-stage.speed_period / stage.speed_filter)
+    closed = closed_tick(
+        own.tick,
+        own.sampled_current,
+        own.delay.held,
+        own.delay.part > 0.0,
+        current.kp,
+        current.ki * own.period,
+        rule,
+        plant.back_emf if firmware.back_emf_feedforward else 0.0,
+    )
+    whole = lifted_tick(closed, own.tick.shape[0] - 1, stage.speed_delay, stage.speed_divisor)
+    n = whole.shape[0] - 1
+    speed = np.zeros(n)
+    speed[_SPEED] = 1.0
+    growth = whole[n] if encoder else np.zeros(n + 3)
     return SpeedLoop(
-        plant=SampledPlant._make(
-            speed_plant(
-                own.a,
-                own.voltage_column,
-                own.sampled_current,
-                own.period,
-                own.delay.held,
-                own.delay.part,
-                current.kp,
-                current.ki * own.period,
-                rule,
-                plant.back_emf if firmware.back_emf_feedforward else 0.0,
-                stage.speed_divisor,
-                stage.speed_delay,
-                stage.speed_window if encoder else 0,
-                gain,
-            )
+        plant=SampledPlant(
+            m=whole[:n, :n].copy(),
+            c=growth[:n].copy() if encoder else speed,
+            b0=whole[:n, n].copy(),
+            b1=whole[:n, n + 1].copy(),
+            bw=whole[:n, n + 2].copy(),
+            d0=float(growth[n]),
+            d1=float(growth[n + 1]),
+            dw=float(growth[n + 2]),
+            period=stage.speed_period,
+            shift=1 if encoder else 0,
+            window=stage.speed_window if encoder else 1,
+            scale=1.0 / (stage.speed_window * stage.speed_period) if encoder else 1.0,
+            filter_gain=1.0 if stage.speed_filter <= 0.0 else -math.expm1(-stage.speed_period / stage.speed_filter),
         ),
         rule=rule,
         modes=own.modes,

@@ -40,8 +40,8 @@ def hessenberg(plant: SampledPlant) -> SampledPlant:
             rest += abs(m[r, k])
         if rest == 0.0:
             continue
-        v[:] = 0.0
-        v[k + 1 :] = m[k + 1 :, k]
+        for r in range(n):
+            v[r] = m[r, k] if r > k else 0.0
         v[k + 1] += norm if v[k + 1] >= 0.0 else -norm
         size = 0.0
         for r in range(k + 1, n):
@@ -65,7 +65,8 @@ def hessenberg(plant: SampledPlant) -> SampledPlant:
                 total += v[r] * column[r]
             for r in range(k + 1, n):
                 column[r] -= beta * total * v[r]
-        m[k + 2 :, k] = 0.0
+        for r in range(k + 2, n):
+            m[r, k] = 0.0
     return SampledPlant(
         m,
         c,

@@ -25,96 +25,100 @@ def held_step(
     """exp(a width) - I and the integral of exp(a t) bv over ``width``."""
     n = a.shape[0]
     joint = np.zeros((n + 1, n + 1))
-    joint[:n, :n] = a * width
-    joint[:n, n] = bv * width
+    for r in range(n):
+        for c in range(n):
+            joint[r, c] = a[r, c] * width
+        joint[r, n] = bv[r] * width
     joint = expm_minus_identity(joint)
-    return joint[:n, :n].copy(), joint[:n, n].copy()
+    step, column = np.empty((n, n)), np.empty(n)
+    for r in range(n):
+        for c in range(n):
+            step[r, c] = joint[r, c]
+        column[r] = joint[r, n]
+    return step, column
 
 
 @njit(cache=True, nogil=True, error_model="numpy")
-def tick_step(
-    a: NDArray[np.float64], bv: NDArray[np.float64], period: float, part: float
-) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64]]:
-    """One current period: exp - I, input column of the older voltage (first ``part``), of the newer one (the rest)."""
+def tick_step(a: NDArray[np.float64], bv: NDArray[np.float64], period: float, part: float) -> NDArray[np.float64]:
+    """One current period, shape (n, n + 2): exp - I, then the columns of the older and of the newer voltage.
+
+    The older voltage acts through the first ``part`` of the period, the newer one through the rest.
+    """
+    n = a.shape[0]
     late, newer = held_step(a, bv, (1.0 - part) * period)
-    if part == 0.0:
-        return late, np.zeros(a.shape[0]), newer
-    early, column = held_step(a, bv, part * period)
-    older = column.copy()
-    for r in range(a.shape[0]):
-        for c in range(a.shape[0]):
-            older[r] += late[r, c] * column[c]
-    return late + early + matmul(late, early), older, newer
-
-
-@njit(cache=True, nogil=True, error_model="numpy")
-def current_plant(
-    a: NDArray[np.float64], bv: NDArray[np.float64], sampled: int, period: float, held: int, part: float
-) -> SampledPlant:
-    """From voltage command to current sample. The last state, the angle, feeds nothing back and is dropped."""
-    n = a.shape[0] - 1
-    step, older, newer = tick_step(a[:n, :n].copy(), bv[:n].copy(), period, part)
-    c = np.zeros(n)
-    c[sampled] = 1.0
-    return SampledPlant(step, c, newer, older, np.zeros(n), 0.0, 0.0, 0.0, period, held, 1, 1.0, 1.0)
+    early, older = held_step(a, bv, part * period)
+    both = matmul(late, early)
+    out = np.empty((n, n + 2))
+    for r in range(n):
+        carried = older[r]
+        for c in range(n):
+            out[r, c] = late[r, c] + early[r, c] + both[r, c]
+            carried += late[r, c] * older[c]
+        out[r, n] = carried
+        out[r, n + 1] = newer[r]
+    return out
 
 
 @njit(cache=True, nogil=True, error_model="numpy")
 def closed_tick(
-    a: NDArray[np.float64],
-    bv: NDArray[np.float64],
+    tick: NDArray[np.float64],
     sampled: int,
-    period: float,
     held: int,
-    part: float,
+    split: bool,
     kp: float,
     ki_period: float,
     rule: int,
     back_emf: float,
 ) -> NDArray[np.float64]:
-    """One tick of the closed current loop in delta form.
+    """One tick of the closed current loop in delta form; ``tick`` of :func:`tick_step`.
 
     States: plant, the voltages under way (newest first), integrator, the previous error (trapezoid), then the two
-    inputs current reference and measured speed as constant states.
+    inputs current reference and measured speed as constant states. ``split`` is True where two voltages act in a tick.
     """
-    n = a.shape[0]
-    step, older, newer = tick_step(a, bv, period, part)
-    stored = held + (1 if part > 0.0 else 0)
+    n = tick.shape[0]
+    stored = held + (1 if split else 0)
     trapezoid = rule == TRAPEZOID
     integral = n + stored
     size = integral + 1 + (1 if trapezoid else 0)
     reference, speed = size, size + 1
     d = np.zeros((size + 2, size + 2))
-    error = np.zeros(size + 2)
-    error[reference] = 1.0
-    error[sampled] -= 1.0
-    change = ki_period * error
+    # Rows of what follows from the states at the tick: the change of the integral, and the voltage.
+    half = 0.5 if trapezoid else 1.0
+    change, voltage = np.zeros(size + 2), np.zeros(size + 2)
+    change[reference] = half * ki_period
+    change[sampled] = -half * ki_period
     if trapezoid:
-        change *= 0.5
-        change[size - 1] += 0.5 * ki_period
-    voltage = kp * error
-    voltage[integral] += 1.0
+        change[size - 1] = half * ki_period
+    voltage[reference] = kp
+    voltage[sampled] = -kp
+    voltage[integral] = 1.0
+    voltage[speed] = back_emf
     if rule != FORWARD:
-        voltage += change
-    voltage[speed] += back_emf
-    d[:n, :n] = step
+        for c in range(size + 2):
+            voltage[c] += change[c]
     for r in range(n):
+        for c in range(n):
+            d[r, c] = tick[r, c]
         if held == 0:
-            d[r] += newer[r] * voltage
+            for c in range(size + 2):
+                d[r, c] += tick[r, n + 1] * voltage[c]
         else:
-            d[r, n + held - 1] += newer[r]
-        if part > 0.0:
-            d[r, n + held] += older[r]
+            d[r, n + held - 1] += tick[r, n + 1]
+        if split:
+            d[r, n + held] += tick[r, n]
     for j in range(stored):
-        if j == 0:
-            d[n] += voltage
+        if j > 0:
+            d[n + j, n + j - 1] = 1.0
         else:
-            d[n + j, n + j - 1] += 1.0
+            for c in range(size + 2):
+                d[n, c] = voltage[c]
         d[n + j, n + j] -= 1.0
-    d[integral] += change
+    for c in range(size + 2):
+        d[integral, c] += change[c]
     if trapezoid:
-        d[size - 1] += error
-        d[size - 1, size - 1] -= 1.0
+        d[size - 1, reference] = 1.0
+        d[size - 1, sampled] = -1.0
+        d[size - 1, size - 1] = -1.0
     return d
 
 
@@ -130,76 +134,35 @@ def without(d: NDArray[np.float64], index: int, size: int) -> NDArray[np.float64
 
 @njit(cache=True, nogil=True, error_model="numpy")
 def closed_current(
-    a: NDArray[np.float64],
-    bv: NDArray[np.float64],
-    sampled: int,
-    period: float,
-    held: int,
-    part: float,
-    kp: float,
-    ki_period: float,
-    rule: int,
+    tick: NDArray[np.float64], sampled: int, held: int, split: bool, kp: float, ki_period: float, rule: int
 ) -> NDArray[np.float64]:
     """Closed current loop in delta form, feedforward cut, the free angle left out."""
-    d = closed_tick(a, bv, sampled, period, held, part, kp, ki_period, rule, 0.0)
-    return without(d, a.shape[0] - 1, d.shape[0] - 2)
+    d = closed_tick(tick, sampled, held, split, kp, ki_period, rule, 0.0)
+    return without(d, tick.shape[0] - 1, d.shape[0] - 2)
 
 
 @njit(cache=True, nogil=True, error_model="numpy")
-def speed_plant(
-    a: NDArray[np.float64],
-    bv: NDArray[np.float64],
-    sampled: int,
-    period: float,
-    held: int,
-    part: float,
-    kp: float,
-    ki_period: float,
-    rule: int,
-    back_emf: float,
-    divisor: int,
-    reference_delay: int,
-    window: int,
-    filter_gain: float,
-) -> SampledPlant:
-    """From current reference to measured speed at the speed rate, the current loop closed inside.
+def lifted_tick(d: NDArray[np.float64], angle: int, delay: int, divisor: int) -> NDArray[np.float64]:
+    """``divisor`` ticks of a closed loop, shape (n + 1, n + 3), without the column of the angle.
 
-    ``window`` 0 is the ideal sensor; ``back_emf`` is Ke where it is fed forward, else 0.
+    The leading columns are the states; then come the new reference, the older one, which acts through the first
+    ``delay`` ticks, and the measured speed. The row of the angle stands last: its growth over the period.
     """
-    n = a.shape[0]
-    d = closed_tick(a, bv, sampled, period, held, part, kp, ki_period, rule, back_emf)
     size = d.shape[0] - 2
-    # The old reference acts through the first ticks, the new one through the rest: only it enters the second power.
-    before = power_minus_identity(d, reference_delay)
-    after = power_minus_identity(d, divisor - reference_delay)
-    whole = before + after + matmul(after, before)
-    new = after[:size, size].copy()
-    old = whole[:size, size] - new
-    fed = whole[:size, size + 1].copy()
-    angle = n - 1
-    keep = np.array([r for r in range(size) if r != angle])
-    m = without(whole, angle, size)
-    tw = divisor * period
-    c = np.zeros(size - 1)
-    if window == 0:
-        c[1] = 1.0
-        return SampledPlant(m, c, new[keep], old[keep], fed[keep], 0.0, 0.0, 0.0, tw, 0, 1, 1.0, filter_gain)
-    c[:] = whole[angle, :size][keep]
-    return SampledPlant(
-        m,
-        c,
-        new[keep],
-        old[keep],
-        fed[keep],
-        new[angle],
-        old[angle],
-        fed[angle],
-        tw,
-        1,
-        window,
-        1.0 / (window * tw),
-        filter_gain,
-    )
+    before = power_minus_identity(d, delay)
+    after = power_minus_identity(d, divisor - delay)
+    whole = matmul(after, before)
+    out = np.empty((size, size + 2))
+    for r in range(size):
+        source = r if r < angle else (r + 1 if r < size - 1 else angle)
+        for c in range(size - 1):
+            column = c if c < angle else c + 1
+            out[r, c] = whole[source, column] + before[source, column] + after[source, column]
+        new = after[source, size]
+        out[r, size - 1] = new
+        out[r, size] = whole[source, size] + before[source, size] + after[source, size] - new
+        out[r, size + 1] = whole[source, size + 1] + before[source, size + 1] + after[source, size + 1]
+    return out
 
 
 @njit(cache=True, nogil=True, error_model="numpy")
@@ -215,43 +178,43 @@ def closed_speed(plant: SampledPlant, kp: float, ki_period: float, rule: int) ->
     value = raw + delayed
     integral, previous = value + 1, value + 2
     size = value + 3
-    now = np.zeros(size)
-    for r in range(n):
-        now[r] = plant.c[r]
-    # raw value of this tick, of use only without a shift, where it has no direct part
-    total = np.zeros(size)
-    if plant.shift == 0:
-        total += now
-        for j in range(delayed):
-            total[raw + j] += 1.0
-    else:
-        for j in range(plant.shift - 1, delayed):
-            total[raw + j] += 1.0
-    measured = plant.filter_gain * plant.scale * total
-    measured[value] += 1.0 - plant.filter_gain
-    error = -measured
-    change = ki_period * error
+    # Rows of what follows from the states at the tick: raw value, measured value, reference.
+    now, measured = np.zeros(size), np.zeros(size)
+    share = plant.filter_gain * plant.scale
+    for c in range(n):
+        now[c] = plant.c[c]
+        if plant.shift == 0:
+            measured[c] = share * plant.c[c]
+    for j in range(max(plant.shift - 1, 0), delayed):
+        measured[raw + j] = share
+    measured[value] = 1.0 - plant.filter_gain
+    half = 0.5 if rule == TRAPEZOID else 1.0
+    change, reference = np.zeros(size), np.zeros(size)
+    for c in range(size):
+        change[c] = -half * ki_period * measured[c]
     if rule == TRAPEZOID:
-        change *= 0.5
-        change[previous] += 0.5 * ki_period
-    reference = kp * error
+        change[previous] += half * ki_period
+    for c in range(size):
+        reference[c] = (0.0 if rule == FORWARD else change[c]) - kp * measured[c]
     reference[integral] += 1.0
-    if rule != FORWARD:
-        reference += change
     out = np.zeros((size, size))
     for r in range(n):
-        out[r, :n] = plant.m[r]
-        out[r, older] += plant.b1[r]
-        out[r] += plant.b0[r] * reference + plant.bw[r] * measured
-    out[older] = reference
+        for c in range(n):
+            out[r, c] = plant.m[r, c]
+        out[r, older] = plant.b1[r]
+    for c in range(size):
+        for r in range(n):
+            out[r, c] += plant.b0[r] * reference[c] + plant.bw[r] * measured[c]
+        out[older, c] = reference[c]
+        if delayed > 0:
+            out[raw, c] = now[c] + plant.d0 * reference[c] + plant.dw * measured[c]
+        out[value, c] = measured[c]
+        out[integral, c] = change[c]
+        out[previous, c] = -measured[c]
     if delayed > 0:
-        out[raw] = now + plant.d0 * reference + plant.dw * measured
         out[raw, older] += plant.d1
-        for j in range(1, delayed):
-            out[raw + j, raw + j - 1] = 1.0
-    out[value] = measured
-    out[integral] = change
-    out[previous] = error
+    for j in range(1, delayed):
+        out[raw + j, raw + j - 1] = 1.0
     for r in range(n, size):
         if r != integral:
             out[r, r] -= 1.0

@@ -13,7 +13,7 @@ import numpy as np
 from numba import njit
 from numpy.typing import NDArray
 
-from gainbench.kernels.lifting import FORWARD, TRAPEZOID, held_step
+from gainbench.kernels.lifting import FORWARD, TRAPEZOID
 
 LONGEST = 400_000
 """Ticks after which a step that still moves is taken as it is."""
@@ -33,6 +33,24 @@ class LockedPi(NamedTuple):
     kp: float
     ki_period: float
     rule: int
+
+
+class Winding(NamedTuple):
+    """The locked machine and the sampler's filter, exactly over both parts of a tick: exp - I and input columns."""
+
+    resistance: float
+    """[ohm]."""
+    lag: float
+    """L/R [s]."""
+    filtered: bool
+    early: NDArray[np.float64]
+    """Over the first part of a tick, states current and filtered current, shape (2, 2)."""
+    early_in: NDArray[np.float64]
+    """shape (2,)."""
+    late: NDArray[np.float64]
+    """Over the rest, shape (2, 2)."""
+    late_in: NDArray[np.float64]
+    """shape (2,)."""
 
 
 class StepTimes(NamedTuple):
@@ -65,9 +83,7 @@ def met(start: float, rest: float, level: float, time: float) -> float:
 
 @njit(cache=True, nogil=True, error_model="numpy")
 def run_step(
-    resistance: float,
-    inductance: float,
-    filter_time: float,
+    winding: Winding,
     period: float,
     held: int,
     part: float,
@@ -77,14 +93,9 @@ def run_step(
     per_tick: int,
 ) -> StepTimes:
     """Run the step; ``curve`` takes the current ``per_tick`` times a tick, for as long as it is."""
-    a = np.zeros((2, 2))
-    a[0, 0] = -resistance / inductance
-    if filter_time > 0.0:
-        a[1, 0], a[1, 1] = 1.0 / filter_time, -1.0 / filter_time
-    bv = np.array([1.0 / inductance, 0.0])
-    early, early_in = held_step(a, bv, part * period)
-    late, late_in = held_step(a, bv, (1.0 - part) * period)
-    tau = inductance / resistance
+    resistance, tau = winding.resistance, winding.lag
+    early, early_in = winding.early, winding.early_in
+    late, late_in = winding.late, winding.late_in
     current, filtered = 0.0, 0.0
     integral, previous = 0.0, 0.0
     under_way = np.zeros(4)
@@ -93,7 +104,7 @@ def run_step(
     ended = ticks
     size = 1e-300
     for k in range(ticks):
-        sample = filtered if filter_time > 0.0 else current
+        sample = filtered if winding.filtered else current
         error = 1.0 - sample
         voltage, integral = next_voltage(pi, error, previous, integral)
         previous = error
@@ -146,19 +157,17 @@ def run_step(
 
 @njit(cache=True, nogil=True, error_model="numpy")
 def locked_step(
-    resistance: float,
-    inductance: float,
-    filter_time: float,
+    winding: Winding,
     period: float,
     held: int,
     part: float,
     pi: LockedPi,
 ) -> tuple[StepTimes, NDArray[np.float64], int]:
     """The step until it settles, its curve from the first to where it hardly moves, and points per tick."""
-    none = np.empty(0)
-    times = run_step(resistance, inductance, filter_time, period, held, part, pi, LONGEST, none, 0)
+    # np.int64: numba would compile a copy of the callee for each literal.
+    times = run_step(winding, period, held, part, pi, int(np.int64(LONGEST)), np.empty(0), int(np.int64(0)))
     shown = min(max(times.ticks + times.ticks // 4, 12), LONGEST)
     per_tick = max(1, min(16, POINTS // shown))
     curve = np.zeros(shown * per_tick)
-    run_step(resistance, inductance, filter_time, period, held, part, pi, shown, curve, per_tick)
+    run_step(winding, period, held, part, pi, shown, curve, per_tick)
     return times, curve, per_tick

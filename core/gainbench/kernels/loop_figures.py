@@ -8,8 +8,8 @@ import numpy as np
 from numba import njit
 from numpy.typing import NDArray
 
-from gainbench.kernels.frequency import pi_at, plant_at, workspace
-from gainbench.kernels.loop_curve import loop_curve
+from gainbench.kernels.frequency import hessenberg, pi_at, plant_at, workspace
+from gainbench.kernels.loop_curve import trace_loop
 from gainbench.kernels.loop_records import LoopNumbers, SampledPlant
 
 SIZE = 0
@@ -21,6 +21,7 @@ ACROSS = 2
 SENSITIVITY = 3
 """-\\|1 + L\\|^2."""
 
+# int(np.int64(SIZE)) and the like below: numba would compile a copy of the callee for each literal.
 REAL_NOISE = 1e-5
 """Im L/\\|L\\| below this at both ends of a bracket is rounding, no crossing of the axis.
 
@@ -185,7 +186,10 @@ def crossings(
         out[0, count] = place
         out[1, count] = 1.0 if before < 0.0 else -1.0
         count += 1
-    return out[:, :count].copy()
+    found = np.empty((2, count))
+    for k in range(count):
+        found[0, k], found[1, k] = out[0, k], out[1, k]
+    return found
 
 
 @njit(cache=True, nogil=True, error_model="numpy")
@@ -208,7 +212,7 @@ def numbers_of(
 ) -> LoopNumbers:
     """All figures of a stable loop from its curve; ``plant`` reduced."""
     work = workspace(plant)
-    ones = crossings(plant, kp, ki_period, rule, SIZE, w, loop, work)
+    ones = crossings(plant, kp, ki_period, rule, int(np.int64(SIZE)), w, loop, work)
     phase_margin = math.nan
     delay_margin = math.nan
     for k in range(ones.shape[1]):
@@ -221,7 +225,7 @@ def numbers_of(
             delay_margin = delay
     gain_margin = math.nan
     gain_reduction = math.nan
-    axis = crossings(plant, kp, ki_period, rule, ACROSS, w, loop, work)
+    axis = crossings(plant, kp, ki_period, rule, int(np.int64(ACROSS)), w, loop, work)
     for k in range(axis.shape[1] + 1):
         # The curve ends on the real axis, at the Nyquist frequency.
         point = loop[w.size - 1] if k == axis.shape[1] else loop_at(plant, kp, ki_period, rule, axis[0, k], work)
@@ -233,17 +237,18 @@ def numbers_of(
         if factor < 1.0 and not factor <= gain_reduction:
             gain_reduction = factor
     values = np.empty(w.size)
+    best = -math.inf
     for k in range(w.size):
-        values[k] = measure(SENSITIVITY, loop[k])
-    best = values.max()
+        values[k] = measure(int(np.int64(SENSITIVITY)), loop[k])
+        best = max(best, values[k])
     nearest = best
     for k in range(1, w.size - 1):
         if values[k] >= values[k - 1] and values[k] >= values[k + 1]:
             reach = max(values[k] - values[k - 1], values[k] - values[k + 1])
             if values[k] + 2.0 * reach >= best:
-                value = summit(plant, kp, ki_period, rule, SENSITIVITY, 1.0, w[k - 1], w[k + 1], work)[1]
+                value = summit(plant, kp, ki_period, rule, int(np.int64(SENSITIVITY)), 1.0, w[k - 1], w[k + 1], work)[1]
                 nearest = max(nearest, value)
-    bandwidth = first_fall(crossings(plant, kp, ki_period, rule, CLOSED, w, loop, work))
+    bandwidth = first_fall(crossings(plant, kp, ki_period, rule, int(np.int64(CLOSED)), w, loop, work))
     sensitivity = 1.0 / math.sqrt(-nearest) if nearest < 0.0 else math.inf
     return LoopNumbers(
         first_fall(ones), phase_margin, delay_margin, gain_margin, gain_reduction, sensitivity, bandwidth
@@ -256,9 +261,9 @@ def loop_numbers(
     kp: float,
     ki_period: float,
     rule: int,
-    peaks: NDArray[np.float64],
-    spreads: NDArray[np.float64],
+    grid: NDArray[np.float64],
 ) -> tuple[LoopNumbers, NDArray[np.float64], NDArray[np.complex128]]:
-    """Figures and curve of a loop; figures mean something for a stable one."""
-    reduced, w, loop = loop_curve(plant, kp, ki_period, rule, peaks, spreads)
+    """Figures and curve of a loop over its grid and the points between; figures mean something for a stable one."""
+    reduced = hessenberg(plant)
+    w, loop = trace_loop(reduced, kp, ki_period, rule, grid)
     return numbers_of(reduced, kp, ki_period, rule, w, loop), w, loop

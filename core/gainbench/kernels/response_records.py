@@ -1,4 +1,4 @@
-"""The named tuples that the response kernel takes: plain scalars and arrays, SI, no numba."""
+"""The named tuples that the response kernels share: plain scalars and arrays, SI, no numba."""
 
 from __future__ import annotations
 
@@ -12,7 +12,7 @@ FORWARD = 1
 TRAPEZOID = 2
 
 
-class PiRule(NamedTuple):
+class PiLaw(NamedTuple):
     """A PI controller's parameters."""
 
     kp: float
@@ -38,6 +38,24 @@ class PiState(NamedTuple):
     """The previous tick's error."""
 
 
+class PiInputs(NamedTuple):
+    """What a PI controller reads at its tick."""
+
+    reference: float
+    measured: float
+    addend: float
+    """Added to the sum before the clamp: the feedforward."""
+    limit: float
+    """Of the clamp, >= 0."""
+
+
+class PiOutput(NamedTuple):
+    """What a PI controller puts out."""
+
+    value: float
+    clamped: bool
+
+
 class Sampling(NamedTuple):
     """The sampled law around the two PI controllers."""
 
@@ -51,7 +69,7 @@ class Sampling(NamedTuple):
     held_part: float
     """The rest of the update delay in periods, 0 to below 1."""
     reference_delay: int
-    """Ticks from a speed tick to its current reference."""
+    """Ticks from a speed tick to its current reference, below ``divisor``."""
     counts_per_radian: float
     """Of the encoder; 0 is the ideal sensor."""
     window: int
@@ -69,7 +87,7 @@ class Sampling(NamedTuple):
 
 
 class Script(NamedTuple):
-    """The duty in ticks."""
+    """The duty in ticks; a tick at or beyond the last is never reached."""
 
     reference: float
     """[rad/s], with its sign."""
@@ -79,7 +97,6 @@ class Script(NamedTuple):
     ramp: float
     """[rad/s^2]; 0 is a step."""
     stop_tick: int
-    """Beyond the last tick where the duty has no stop."""
     stop_at: float
     """[s]."""
     stop_ramp: float
@@ -87,7 +104,7 @@ class Script(NamedTuple):
     stop_size: float
     """Size of the reference when the stop begins [rad/s]."""
     load_tick: int
-    """First tick whose interval carries the load step; beyond the last tick without one."""
+    """First tick whose interval carries the load step."""
 
 
 class Start(NamedTuple):
@@ -102,43 +119,168 @@ class Start(NamedTuple):
 
 
 class Layout(NamedTuple):
-    """Where the plant's states are; -1 where there is none."""
+    """Where the states of the plant's state space are; -1 where there is none."""
 
-    speed: int
+    filtered: int
     load_speed: int
     """-1 where rigid."""
     twist: int
-    sampled: int
-    """Of the current that is sampled."""
+    angle: int
+
+
+class PlantState(NamedTuple):
+    """The plant's state; those that a plant lacks stay 0."""
+
+    current: float
+    """[A]."""
+    speed: float
+    """Of the motor [rad/s]."""
+    filtered: float
+    """Current behind the analogue filter [A]."""
+    load_speed: float
+    """[rad/s]."""
+    twist: float
+    """[rad]."""
+    angle: float
+    """Of the motor [rad]."""
+
+
+class Heading(NamedTuple):
+    """Way of each body that something switches for: 1 forwards, -1 backwards, 0 at rest; 1 where nothing does."""
+
+    motor: int
+    load: int
+
+
+class Drag(NamedTuple):
+    """Torque against each body where it moves backwards and forwards: its Coulomb friction and the load it carries.
+
+    Where both are one, nothing switches with the direction.
+    """
+
+    motor_backwards: float
+    """[N m], as the next three; backwards is at most forwards."""
+    motor_forwards: float
+    load_backwards: float
+    load_forwards: float
+
+
+class Inputs(NamedTuple):
+    """What is constant over a piece of the motion."""
+
+    voltage: float
+    """[V]."""
+    motor_drag: float
+    """[N m]."""
+    load_drag: float
+    """[N m]; 0 where rigid."""
+
+
+class Flow(NamedTuple):
+    """The plant's equations: ``ab`` is the rate of a by b, SI.
+
+    i current, w motor speed, f filtered current, l load speed, t twist; v voltage, d the body's own drag.
+    """
+
+    elastic: bool
+    ii: float
+    iw: float
+    iv: float
+    wi: float
+    ww: float
+    wl: float
+    wt: float
+    wd: float
+    fi: float
+    ff: float
+    lw: float
+    ll: float
+    lt: float
+    ld: float
+
+
+class Row(NamedTuple):
+    """Change of one state over a step, by what it comes from."""
+
+    current: float
+    speed: float
+    load_speed: float
+    twist: float
+    voltage: float
+    motor_drag: float
+    load_drag: float
+
+
+class Step(NamedTuple):
+    """Change of the plant over an exact step of constant inputs."""
+
+    width: float
+    """[s]."""
+    current: Row
+    speed: Row
+    filtered: Row
+    filtered_self: float
+    """Change of the filtered current by itself."""
+    load_speed: Row
+    twist: Row
+    angle: Row
+    charge: Row
+    """The integral of the current."""
+
+
+class Segments(NamedTuple):
+    """The steps over the two segments of a tick; the first is without meaning where its length is 0."""
+
+    first: Step
+    second: Step
 
 
 class Motion(NamedTuple):
-    """Exact steps of the plant over the segments of a tick, and over their binary parts around events.
+    """Steps of the plant over the two segments of a tick, and over binary parts of them, computed where needed."""
 
-    ``drag[body, way]`` is the torque against the body where it moves backwards (way 0) or forwards (way 1): its
-    Coulomb friction and the load torque it carries. Where both are one, the body is free: nothing switches.
-    """
-
-    a: NDArray[np.float64]
-    """shape (n, n)."""
-    b: NDArray[np.float64]
-    """shape (n, 3): voltage, torque on the motor body, torque on the load body."""
-    layout: Layout
+    matrix: NDArray[np.float64]
+    """dx/dt by states (in the order of PlantState, then the charge) and inputs, shape (7, 10)."""
     width: NDArray[np.float64]
     """Length of each segment [s], shape (2,)."""
-    steps: NDArray[np.float64]
-    """exp - I over a segment by segment and resting bodies, shape (2, 4, n + 4, n + 4)."""
+    fine: int
+    """A segment is 2^fine pieces that are short against the plant."""
+    terms: int
+    """Of the power series over a piece."""
     ladder: NDArray[np.float64]
-    """The same over binary parts of a segment, built where needed, shape (2, 4, LEVELS, n + 4, n + 4)."""
+    """Change over 1, 2, 4, ... pieces by segment and resting bodies, shape (2, 4, fine + 1, 7, 8)."""
     built: NDArray[np.bool_]
     """Which ladders are built, shape (2, 4)."""
-    drag: NDArray[np.float64]
-    """[N m], shape (2, 2)."""
-    heading: NDArray[np.int64]
-    """Of each body: 1 forwards, -1 backwards, 0 at rest; without meaning where free. Shape (2,)."""
-    state: NDArray[np.float64]
-    """shape (n,)."""
-    trial: NDArray[np.float64]
-    """Scratch, shape (3, n + 1)."""
-    torques: NDArray[np.float64]
-    """Scratch: the inputs in force, shape (3,)."""
+    series: NDArray[np.float64]
+    """Scratch: coefficients of states and charge over a piece, shape (terms + 1, 7)."""
+
+
+class Run(NamedTuple):
+    """All that a run of the duty starts from."""
+
+    plant: tuple[NDArray[np.float64], NDArray[np.float64]]
+    """``dx/dt = a x + b u`` of :func:`gainbench.plant.state_space`, shapes (n, n) and (n, 3)."""
+    layout: Layout
+    sampling: Sampling
+    current_law: PiLaw
+    speed_law: PiLaw
+    script: Script
+    start: Start
+    drags: tuple[Drag, Drag]
+    """Without and with the load step."""
+
+
+class Tally(NamedTuple):
+    """What the tick loop adds up."""
+
+    peak_current: float
+    """[A]."""
+    squares: float
+    """Sum of the squared currents at the ticks [A^2]."""
+    peak_voltage: float
+    """[V]."""
+    current_clamps: int
+    """Speed ticks whose clamp acted."""
+    voltage_clamps: int
+    """Ticks whose clamp acted."""
+    returned: float
+    """Integral of -v i where v i < 0 [J, without the 3/2 of pm-sine]."""

@@ -28,7 +28,7 @@ def miss(
 ) -> float:
     """How far |T| is above 1/sqrt(2) at the bandwidth when the loop crosses over at ``w`` with the margin."""
     kp, ki_period = gains_at(plant_at(plant, w, work), w, plant.period, rule, margin)
-    return measure(CLOSED, at_bandwidth * pi_at(kp, ki_period, rule, bandwidth, plant.period))
+    return measure(int(np.int64(CLOSED)), at_bandwidth * pi_at(kp, ki_period, rule, bandwidth, plant.period))
 
 
 @njit(cache=True, nogil=True, error_model="numpy")

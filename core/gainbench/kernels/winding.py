@@ -19,7 +19,6 @@ from numba import njit
 from numpy.typing import NDArray
 
 from gainbench.kernels.frequency import hessenberg, pi_at, plant_at, workspace
-from gainbench.kernels.loop_curve import grid
 from gainbench.kernels.loop_records import SampledPlant
 
 TURN = 0.7
@@ -72,13 +71,13 @@ def traced(
 
 
 @njit(cache=True, nogil=True, error_model="numpy")
-def half_turns(plant: SampledPlant, kp: float, ki_period: float, rule: int, slow: float) -> float:
-    """Growth of the phase along the upper half circle, over pi."""
+def half_turns(
+    plant: SampledPlant, kp: float, ki_period: float, rule: int, slow: float, w: NDArray[np.float64]
+) -> float:
+    """Growth of the phase along the upper half circle, over pi; ``w`` is the rising grid to look on."""
     reduced = hessenberg(plant)
     fed = fed_part(reduced)
     work = workspace(reduced)
-    nothing = np.empty(0)
-    w = grid(plant.period, plant.window, nothing, nothing)
     places = np.empty(HALVINGS + 2)
     values = np.empty(HALVINGS + 2, dtype=np.complex128)
     depth = np.empty(HALVINGS + 2, dtype=np.int64)

@@ -14,12 +14,12 @@ from gainbench.kernels.lifting import (
     closed_current,
     closed_speed,
     closed_tick,
-    current_plant,
     held_step,
-    speed_plant,
+    lifted_tick,
     tick_step,
     without,
 )
+from gainbench.kernels.loop_records import SampledPlant
 from quantities import assert_quantity
 
 ROUNDING = "rounding of a few products"
@@ -28,6 +28,25 @@ TS = 50e-6
 A = np.array([[-R / L, -KE / L, 0.0], [KE / J, -B / J, 0.0], [0.0, 1.0, 0.0]])
 BV = np.array([1.0 / L, 0.0, 0.0])
 KP, KI_T = 2.66, 0.234
+
+
+def parts_of(tick):
+    """exp - I, column of the older voltage, of the newer one."""
+    return tick[:, :3], tick[:, 3], tick[:, 4]
+
+
+def speed_plant(*, held, part, rule, back_emf, divisor, delay, window, gain):
+    """What the library's sampling makes of the kernels, for this plant."""
+    closed = closed_tick(tick_step(A, BV, TS, part), 0, held, part > 0.0, KP, KI_T, rule, back_emf)
+    whole = lifted_tick(closed, 2, delay, divisor)
+    n = whole.shape[0] - 1
+    growth = whole[n] if window else np.concatenate((np.eye(n)[1], np.zeros(3)))
+    tw = divisor * TS
+    return SampledPlant(
+        whole[:n, :n].copy(), growth[:n].copy(), whole[:n, n].copy(), whole[:n, n + 1].copy(), whole[:n, n + 2].copy(),
+        float(growth[n]), float(growth[n + 1]), float(growth[n + 2]),
+        tw, 1 if window else 0, max(window, 1), 1.0 / (window * tw) if window else 1.0, gain,
+    )  # fmt: skip
 
 
 def test_one_held_step_is_the_zero_order_hold_of_scipy():
@@ -48,7 +67,7 @@ def test_d1_a_sampled_lag_matches_the_table():
 
 @pytest.mark.parametrize("part", [0.0, 0.3, 0.999])
 def test_a_split_period_is_two_held_steps(part):
-    step, older, newer = tick_step(A, BV, TS, part)
+    step, older, newer = parts_of(tick_step(A, BV, TS, part))
     x = np.array([1.0, -2.0, 3.0])
     old, new = 5.0, -7.0
 
@@ -68,7 +87,7 @@ def integrated(rule, s, error, before):
 
 def run_current(rule, held, part, references, speeds, back_emf):
     """Tick-by-tick plain law; returns the plant's state after every tick, shape (n + 1, 3)."""
-    step, older, newer = tick_step(A, BV, TS, part)
+    step, older, newer = parts_of(tick_step(A, BV, TS, part))
     x, s, before = np.zeros(3), 0.0, 0.0
     sent = [0.0] * 6
     out = [x]
@@ -90,7 +109,7 @@ CASES = [(rule, held, part) for rule in (BACKWARD, FORWARD, TRAPEZOID) for held,
 def test_the_closed_tick_is_the_law_of_one_tick(rule, held, part):
     rng = np.random.default_rng(1)
     r, w = rng.standard_normal(12), rng.standard_normal(12)
-    d = closed_tick(A, BV, 0, TS, held, part, KP, KI_T, rule, KE)
+    d = closed_tick(tick_step(A, BV, TS, part), 0, held, part > 0.0, KP, KI_T, rule, KE)
     size = d.shape[0] - 2
     x = np.zeros(size)
     mine = [x[:3]]
@@ -109,7 +128,9 @@ def test_the_lifted_loop_is_the_fast_loop_seen_at_speed_ticks(rule, held, part, 
     n_fast, periods = 5, 9
     rng = np.random.default_rng(2)
     asked = rng.standard_normal(periods)
-    plant = speed_plant(A, BV, 0, TS, held, part, KP, KI_T, rule, 0.0, n_fast, delay, window, 0.6)
+    plant = speed_plant(
+        held=held, part=part, rule=rule, back_emf=0.0, divisor=n_fast, delay=delay, window=window, gain=0.6
+    )
     in_force = [asked[max((k - delay) // n_fast, -1)] if k >= delay else 0.0 for k in range(n_fast * periods)]
     fast = run_current(rule, held, part, in_force, np.zeros(n_fast * periods), 0.0)[::n_fast]
     x, older = np.zeros(plant.m.shape[0]), 0.0
@@ -129,7 +150,7 @@ def test_the_lifted_loop_is_the_fast_loop_seen_at_speed_ticks(rule, held, part, 
 
 
 def test_a_delay_of_no_tick_leaves_no_share_of_the_older_reference():
-    plant = speed_plant(A, BV, 0, TS, 1, 0.0, KP, KI_T, BACKWARD, 0.0, 10, 0, 1, 1.0)
+    plant = speed_plant(held=1, part=0.0, rule=BACKWARD, back_emf=0.0, divisor=10, delay=0, window=1, gain=1.0)
     assert_quantity(plant.b1, np.zeros(plant.m.shape[0]), atol=1e-15, unit="1", why="difference of equal columns")
 
 
@@ -138,7 +159,9 @@ def test_a_delay_of_no_tick_leaves_no_share_of_the_older_reference():
 @pytest.mark.parametrize("back_emf", [0.0, KE])
 def test_the_closed_speed_loop_is_its_parts_closed(rule, delay, window, gain, back_emf):
     kp, ki_t = 0.4, 0.03
-    plant = speed_plant(A, BV, 0, TS, 1, 0.2, KP, KI_T, BACKWARD, back_emf, 6, delay, window, gain)
+    plant = speed_plant(
+        held=1, part=0.2, rule=BACKWARD, back_emf=back_emf, divisor=6, delay=delay, window=window, gain=gain
+    )
     matrix = closed_speed(plant, kp, ki_t, rule)
     size = matrix.shape[0]
     n = plant.m.shape[0]
@@ -163,13 +186,10 @@ def test_the_closed_speed_loop_is_its_parts_closed(rule, delay, window, gain, ba
 
 
 def test_the_current_loop_leaves_the_angle_out():
-    closed = closed_current(A, BV, 0, TS, 1, 0.0, KP, KI_T, BACKWARD)
+    closed = closed_current(tick_step(A, BV, TS, 0.0), 0, 1, False, KP, KI_T, BACKWARD)
     assert closed.shape == (4, 4)
     poles = np.linalg.eigvals(closed) + 1.0
     assert np.all(np.abs(poles) < 1.0)
-    plant = current_plant(A, BV, 0, TS, 1, 0.0)
-    assert plant.m.shape == (2, 2)
-    assert plant.shift == 1
 
 
 def test_without_drops_one_row_and_column():

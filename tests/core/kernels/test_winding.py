@@ -3,25 +3,42 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
 
 from gainbench.kernels.frequency import hessenberg, plant_response
-from gainbench.kernels.lifting import closed_speed, speed_plant
+from gainbench.kernels.lifting import closed_speed
+from gainbench.kernels.loop_grid import loop_grid
 from gainbench.kernels.winding import fed_part, half_turns
+from gainbench.model import Firmware, SpeedSensor
+from gainbench.plant import refer
+from gainbench.results import Gains
+from gainbench.sampling import hardware, speed_loop
 from quantities import assert_quantity
+from rigs import fixed_sheet
 
-R, L, KE, J, B, TS = 0.6, 0.45e-3, 0.052, 7.1e-5, 2e-5, 50e-6
-A = np.array([[-R / L, -KE / L, 0.0], [KE / J, -B / J, 0.0], [0.0, 1.0, 0.0]])
-BV = np.array([1.0 / L, 0.0, 0.0])
+CURRENT = Gains(kp=3.0, ki=2500.0)
+NOTHING = np.empty(0)
+
+
+def plant_of(window, *, feedforward):
+    sheet = fixed_sheet("plain")
+    stage = replace(
+        sheet.rig.stage, speed_sensor=SpeedSensor.ENCODER, encoder_counts=4096, speed_window=window, speed_rate=1e3
+    )
+    plant = refer(sheet.rig)
+    firmware = Firmware(back_emf_feedforward=feedforward)
+    return speed_loop(hardware(plant, stage), plant, stage=stage, firmware=firmware, current=CURRENT).plant
 
 
 @pytest.mark.parametrize("window", [1, 4, 30])
-@pytest.mark.parametrize("back_emf", [0.0, KE])
+@pytest.mark.parametrize("feedforward", [False, True])
 @pytest.mark.parametrize("ki", [0.0, 2.0])
-def test_the_count_of_unstable_poles(window, back_emf, ki):
-    plant = speed_plant(A, BV, 0, TS, 1, 0.0, 2.66, 0.234, 0, back_emf, 10, 0, window, 1.0)
+def test_the_count_of_unstable_poles(window, feedforward, ki):
+    plant = plant_of(window, feedforward=feedforward)
+    grid = loop_grid(plant.period, window, peaks=NOTHING, spreads=NOTHING)
     own = np.linalg.eigvals(plant.m)
     slow = own[np.argmin(np.abs(own))]
     assert slow.imag == 0.0
@@ -29,7 +46,7 @@ def test_the_count_of_unstable_poles(window, back_emf, ki):
     for kp in np.geomspace(0.003, 30.0, 15):
         poles = 1.0 + np.linalg.eigvals(closed_speed(plant, kp, ki * 5e-4, 0))
         expected = int(np.sum(np.abs(poles) > 1.0))
-        turns = half_turns(plant, kp, ki * 5e-4, 0, slow.real)
+        turns = half_turns(plant, kp, ki * 5e-4, 0, slow.real, grid)
         outside = int(np.sum(np.abs(1.0 + np.delete(own, np.argmin(np.abs(own)))) > 1.0)) + 1 + (ki != 0.0) - turns
         assert_quantity(
             outside, expected, atol=1e-3, unit="poles", why="phase is a whole number of half turns at z = -1"
@@ -39,7 +56,7 @@ def test_the_count_of_unstable_poles(window, back_emf, ki):
 
 
 def test_the_part_that_is_fed_forward_is_a_plant_of_its_own():
-    plant = hessenberg(speed_plant(A, BV, 0, TS, 1, 0.0, 2.66, 0.234, 0, KE, 10, 0, 2, 1.0))
+    plant = hessenberg(plant_of(2, feedforward=True))
     part = fed_part(plant)
     w = np.array([100.0, 1000.0])
     got = plant_response(part, w)

@@ -1,0 +1,73 @@
+"""Figures that are read off the speed trace: passes over the ticks of a window."""
+
+from __future__ import annotations
+
+from typing import NamedTuple
+
+import numpy as np
+from numba import njit
+from numpy.typing import NDArray
+
+NEVER = -1
+
+
+class StepTicks(NamedTuple):
+    """The speed after the reference came, by ticks."""
+
+    excess: float
+    """Largest excess over the reference, at least 0 [rad/s]."""
+    tenth: int
+    """First tick at 10 % of the reference, or NEVER."""
+    ninth: int
+    """First tick at 90 % of the reference, or NEVER."""
+    outside: int
+    """Last tick outside the band, or NEVER."""
+
+
+class LoadTicks(NamedTuple):
+    """The speed after the load step came, by ticks."""
+
+    dip: float
+    """Largest distance from the reference in force [rad/s]."""
+    outside: int
+    """Last tick outside the band, or NEVER."""
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def step_ticks(speed: NDArray[np.float64], goal: float, first: int, end: int, band: float) -> StepTicks:
+    """Look at the speed in ticks ``first`` to before ``end``, signed by the goal [rad/s], which is not 0."""
+    sign = 1.0 if goal > 0.0 else -1.0
+    size = abs(goal)
+    tenth = ninth = outside = NEVER
+    excess = 0.0
+    for tick in range(first, end):
+        excess = max(excess, sign * speed[tick] - size)
+    for tick in range(first, end):
+        if sign * speed[tick] >= 0.1 * size:
+            tenth = tick
+            break
+    if tenth != NEVER:
+        for tick in range(tenth, end):
+            if sign * speed[tick] >= 0.9 * size:
+                ninth = tick
+                break
+    for tick in range(end - 1, first - 1, -1):
+        if abs(speed[tick] - goal) > band:
+            outside = tick
+            break
+    return StepTicks(excess, tenth, ninth, outside)
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def load_ticks(
+    speed: NDArray[np.float64], reference: NDArray[np.float64], first: int, end: int, band: float
+) -> LoadTicks:
+    """Look at the speed's distance from the reference in force in ticks ``first`` to before ``end``."""
+    dip = 0.0
+    outside = NEVER
+    for tick in range(first, end):
+        distance = abs(speed[tick] - reference[tick])
+        dip = max(dip, distance)
+        if distance > band:
+            outside = tick
+    return LoadTicks(dip, outside)

@@ -1,0 +1,31 @@
+"""The grid: rising, ending at Nyquist, with points around what it could miss."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+import pytest
+
+from gainbench.kernels.loop_grid import LAST_GAP, POINTS, loop_grid
+from quantities import assert_quantity
+
+PERIOD = 1e-3
+NYQUIST = math.pi / PERIOD
+
+
+@pytest.mark.parametrize("window", [1, 2, 40])
+@pytest.mark.parametrize("peaks", [[], [300.0], [0.4 * NYQUIST, 1.7 * NYQUIST, NYQUIST], [1e9]])
+def test_the_grid_rises_from_far_below_to_the_nyquist_frequency(window, peaks):
+    w = loop_grid(PERIOD, window, peaks=np.array(peaks), spreads=np.full(len(peaks), 2.0))
+    assert np.all(np.diff(w) > 0.0)
+    assert w[-1] == NYQUIST
+    assert_quantity(w[-2], NYQUIST * (1.0 - LAST_GAP), rtol=1e-12, unit="rad/s", why="rounding of one product")
+    assert w[0] < 1e-8 * NYQUIST
+    assert w.size >= POINTS
+
+
+def test_points_gather_around_a_peak_and_its_alias():
+    w = loop_grid(PERIOD, 1, peaks=np.array([2.0 * NYQUIST - 500.0]), spreads=np.array([0.01]))
+    assert_quantity(np.abs(w - 500.0).min(), 0.0, atol=1e-9, unit="rad/s", why="folded in shares of Nyquist")
+    assert np.sum(np.abs(w - 500.0) < 0.1) >= 5
