@@ -23,8 +23,8 @@ STILL_TICKS = 8
 RUNAWAY = 1e9
 POINTS = 480
 """Of the drawn curve, about."""
-MOVING = 3e-4
-"""Change per tick of a current that is still worth drawing."""
+NEAR = 3e-3
+"""Distance from the end value, as a share of it, that is no longer worth drawing."""
 
 
 class LockedPi(NamedTuple):
@@ -62,7 +62,7 @@ class StepTimes(NamedTuple):
     """When 90 % was met [s]."""
     largest: float
     ticks: int
-    """Until the current hardly moved."""
+    """Until the current stayed near its end value."""
 
 
 @njit(cache=True, nogil=True, error_model="numpy")
@@ -99,6 +99,7 @@ def run_step(
     current, filtered = 0.0, 0.0
     integral, previous = 0.0, 0.0
     under_way = np.zeros(4)
+    end = 1.0 if pi.ki_period > 0.0 else pi.kp / (pi.kp + resistance)
     at_low, at_high, largest = math.nan, math.nan, 0.0
     still, outside = 0, 0
     ended = ticks
@@ -143,7 +144,7 @@ def run_step(
         size = max(size, abs(voltage))
         if abs(current) > RUNAWAY:
             return StepTimes(math.nan, math.nan, math.nan, k)
-        if abs(current - first) > MOVING:
+        if abs(current - end) > NEAR * end:
             outside = k + 1
         if abs(current - first) < STILL and change < STILL * size:
             still += 1
