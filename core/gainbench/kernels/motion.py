@@ -27,6 +27,10 @@ NEGLECT = 1e-18
 MOTOR_RESTS = 1
 LOAD_RESTS = 2
 
+FIRST = np.int64(0)
+SECOND = np.int64(1)
+"""Segments of a tick."""
+
 
 @njit(cache=True, nogil=True, error_model="numpy")
 def flow_matrix(a: NDArray[np.float64], b: NDArray[np.float64], layout: Layout) -> NDArray[np.float64]:
@@ -161,8 +165,9 @@ def read_step(motion: Motion, segment: int, resting: int, level: int) -> Step:
 @njit(cache=True, nogil=True, error_model="numpy")
 def read_segments(motion: Motion, resting: int) -> Segments:
     """The steps over both segments of a tick in a mode."""
-    second = read_step(motion, 1, resting, motion.fine)
-    first = read_step(motion, 0, resting, motion.fine) if motion.width[0] > 0.0 else second
+    # A written 0 or 1 is a type of its own to the compiler: everything below would be compiled twice.
+    second = read_step(motion, int(SECOND), resting, motion.fine)
+    first = read_step(motion, int(FIRST), resting, motion.fine) if motion.width[FIRST] > 0.0 else second
     return Segments(first, second)
 
 

@@ -7,7 +7,16 @@ from numba import njit
 from numpy.typing import NDArray
 
 from gainbench.kernels.bodies import depart, eventless, inputs_of, resting_bodies
-from gainbench.kernels.motion import change, flow_matrix, prepare_motion, read_flow, read_segments, stride
+from gainbench.kernels.motion import (
+    FIRST,
+    SECOND,
+    change,
+    flow_matrix,
+    prepare_motion,
+    read_flow,
+    read_segments,
+    stride,
+)
 from gainbench.kernels.pi import pi_step
 from gainbench.kernels.response_records import (
     Drag,
@@ -214,10 +223,10 @@ def respond(
             if came == SURE and not fresh:
                 x = y
             elif came == TURNS and not fresh and motion.fine == 0:
-                back = turning_energy(motion, 0, flow, drag, heading, x, voltage)
+                back = turning_energy(motion, int(FIRST), flow, drag, heading, x, voltage)
                 x = y
             else:
-                heading, x, back = travel(motion, flow, drag, 0, x, voltage)
+                heading, x, back = travel(motion, flow, drag, int(FIRST), x, voltage)
                 fresh = False
                 if resting != resting_bodies(flow, heading):
                     resting = resting_bodies(flow, heading)
@@ -228,10 +237,10 @@ def respond(
         if came == SURE and not fresh:
             x = y
         elif came == TURNS and not fresh and motion.fine == 0:
-            back = turning_energy(motion, 1, flow, drag, heading, x, voltage)
+            back = turning_energy(motion, int(SECOND), flow, drag, heading, x, voltage)
             x = y
         else:
-            heading, x, back = travel(motion, flow, drag, 1, x, voltage)
+            heading, x, back = travel(motion, flow, drag, int(SECOND), x, voltage)
             fresh = False
             if resting != resting_bodies(flow, heading):
                 resting = resting_bodies(flow, heading)

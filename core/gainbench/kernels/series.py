@@ -45,7 +45,7 @@ def value_at(series: NDArray[np.float64], row: int, share: float) -> float:
     value = 0.0
     for term in range(series.shape[0] - 1, 0, -1):
         value = (value + series[term, row]) * share
-    return value + series[0, row]
+    return float(value + series[0, row])
 
 
 @njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
