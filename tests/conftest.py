@@ -9,11 +9,14 @@ from pathlib import Path
 import pytest
 from hypothesis import settings
 
+from gainbench.kernels.code_cache import code_cache
 from qt_presence import qt_is_missing
 
 TREE = Path(__file__).resolve().parents[1]
 OUTSIDE_DATA = TREE.parent / "shared" / "data"
 
+# Kernels that were compiled once are not compiled again for the folders that the tests give themselves.
+os.environ.setdefault("NUMBA_CACHE_DIR", str(code_cache("linalg").parents[1]))
 # Before anything imports Qt: a window that a test opens must never come up on the screen of the one who runs it.
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
 

@@ -7,8 +7,7 @@ found to start again.
 
 from __future__ import annotations
 
-from numba import njit
-
+from gainbench.kernels.compiled import compiled, inlined
 from gainbench.kernels.motion import LOAD_RESTS, MOTOR_RESTS
 from gainbench.kernels.response_records import Drag, Flow, Heading, Inputs, PlantState
 
@@ -18,7 +17,7 @@ STILL = 1e-6
 """Speed below which a body that starts and stops without end is made to rest [rad/s]."""
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def motor_pull(flow: Flow, x: PlantState) -> float:
     """Acceleration of the motor's body by everything but its own drag [rad/s^2]."""
     value = flow.wi * x.current + flow.ww * x.speed
@@ -27,13 +26,13 @@ def motor_pull(flow: Flow, x: PlantState) -> float:
     return value
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def load_pull(flow: Flow, x: PlantState) -> float:
     """Acceleration of the load's body by everything but its own drag [rad/s^2]."""
     return flow.lw * x.speed + flow.ll * x.load_speed + flow.lt * x.twist
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def start_way(pull: float, backwards: float, forwards: float) -> int:
     """Way a resting body would accelerate against the drag of that way, both [rad/s^2]; 0 if it stays."""
     if pull - forwards > SLACK * abs(forwards):
@@ -43,31 +42,31 @@ def start_way(pull: float, backwards: float, forwards: float) -> int:
     return 0
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def motor_start(flow: Flow, drag: Drag, x: PlantState) -> int:
     """Way the resting motor body would start; 0 if it stays."""
     return start_way(motor_pull(flow, x), -flow.wd * drag.motor_backwards, -flow.wd * drag.motor_forwards)
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def load_start(flow: Flow, drag: Drag, x: PlantState) -> int:
     """Way the resting load body would start; 0 if it stays."""
     return start_way(load_pull(flow, x), -flow.ld * drag.load_backwards, -flow.ld * drag.load_forwards)
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def motor_switches(drag: Drag) -> bool:
     """Whether something switches with the direction of the motor's body."""
     return drag.motor_forwards > drag.motor_backwards
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def load_switches(flow: Flow, drag: Drag) -> bool:
     """Whether something switches with the direction of a load body."""
     return flow.elastic and drag.load_forwards > drag.load_backwards
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def in_mode(flow: Flow, drag: Drag, heading: Heading, x: PlantState) -> bool:
     """Whether every body still moves, or rests, the way its heading says."""
     if motor_switches(drag):
@@ -85,7 +84,7 @@ def in_mode(flow: Flow, drag: Drag, heading: Heading, x: PlantState) -> bool:
     return True
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def eventless(flow: Flow, drag: Drag, heading: Heading, x: PlantState, y: PlantState, u: Inputs, time: float) -> bool:
     """Whether no body starts, stops or turns on the way from x to y.
 
@@ -105,7 +104,7 @@ def eventless(flow: Flow, drag: Drag, heading: Heading, x: PlantState, y: PlantS
     return True
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def resting_bodies(flow: Flow, heading: Heading) -> int:
     """Which bodies rest: MOTOR_RESTS, LOAD_RESTS, their sum, or 0."""
     resting = MOTOR_RESTS if heading.motor == 0 else 0
@@ -114,7 +113,7 @@ def resting_bodies(flow: Flow, heading: Heading) -> int:
     return resting
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def inputs_of(drag: Drag, heading: Heading, voltage: float) -> Inputs:
     """Inputs in force; a drag is without meaning where its body rests."""
     return Inputs(
@@ -124,7 +123,7 @@ def inputs_of(drag: Drag, heading: Heading, voltage: float) -> Inputs:
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def depart(flow: Flow, drag: Drag, x: PlantState) -> Heading:
     """Heading of each body: the way it moves, or would start from rest; 0 if it stays, 1 where nothing switches."""
     motor = load = 1
@@ -135,7 +134,7 @@ def depart(flow: Flow, drag: Drag, x: PlantState) -> Heading:
     return Heading(motor, load)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def halt(flow: Flow, drag: Drag, heading: Heading, x: PlantState) -> tuple[Heading, PlantState]:
     """Bodies whose speed went through zero rest, until they are found to start."""
     motor, load = heading.motor, heading.load
@@ -147,7 +146,7 @@ def halt(flow: Flow, drag: Drag, heading: Heading, x: PlantState) -> tuple[Headi
     return Heading(motor, load), PlantState(x.current, speed, x.filtered, load_speed, x.twist, x.angle)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def calm(flow: Flow, drag: Drag, heading: Heading, x: PlantState) -> tuple[Heading, PlantState]:
     """Bodies that all but rest are made to rest."""
     motor, load = heading.motor, heading.load

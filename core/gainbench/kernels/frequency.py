@@ -11,14 +11,14 @@ import cmath
 import math
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from gainbench.kernels.compiled import compiled, inlined
 from gainbench.kernels.lifting import BACKWARD, FORWARD
 from gainbench.kernels.loop_records import SampledPlant
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def hessenberg(plant: SampledPlant) -> SampledPlant:
     """The same plant in other coordinates, by Householder reflections: m is zero below its first subdiagonal.
 
@@ -84,21 +84,21 @@ def hessenberg(plant: SampledPlant) -> SampledPlant:
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def workspace(plant: SampledPlant) -> NDArray[np.complex128]:
     """Room for one elimination, shape (n + 3, n)."""
     n = plant.m.shape[0]
     return np.empty((n + 3, n), dtype=np.complex128)
 
 
-@njit(cache=True, nogil=True, error_model="numpy", inline="always")
+@inlined
 def inverse(value: complex) -> complex:
     """1/value without the scaling of a general division: pivots are far from where it would be needed."""
     size = 1.0 / (value.real * value.real + value.imag * value.imag)
     return complex(value.real * size, -value.imag * size)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def plant_at(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> complex:
     """Measured value over controller output at one frequency; ``plant.m`` is upper Hessenberg."""
     n = plant.m.shape[0]
@@ -167,7 +167,7 @@ def plant_at(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> com
     return ahead * raw
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def integral_at(w: float, period: float, rule: int) -> complex:
     """Integral part over error for Ki T = 1: backward (1 + d)/d, forward 1/d, trapezoid (2 + d)/(2 d), d = z - 1."""
     # 1/(z - 1) = -1/2 - j/2 cot(w T/2), exactly.
@@ -179,13 +179,13 @@ def integral_at(w: float, period: float, rule: int) -> complex:
     return complex(0.0, turn)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def pi_at(kp: float, ki_period: float, rule: int, w: float, period: float) -> complex:
     """The PI controller at one frequency."""
     return kp + ki_period * integral_at(w, period, rule)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def plant_response(plant: SampledPlant, w: NDArray[np.float64]) -> NDArray[np.complex128]:
     """Measured value over controller output, shape of ``w``."""
     reduced = hessenberg(plant)
@@ -196,7 +196,7 @@ def plant_response(plant: SampledPlant, w: NDArray[np.float64]) -> NDArray[np.co
     return out
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def gains_at(response: complex, w: float, period: float, rule: int, margin: float) -> tuple[float, float]:
     """The one kp and Ki T with which L(w) = exp(j (margin - pi)), of any sign."""
     wanted = cmath.exp(complex(0.0, margin - math.pi)) / response
@@ -207,7 +207,7 @@ def gains_at(response: complex, w: float, period: float, rule: int, margin: floa
     return wanted.real - ki_period * shape.real, ki_period
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def gains_over(
     response: NDArray[np.complex128], w: NDArray[np.float64], period: float, rule: int, margin: float
 ) -> NDArray[np.float64]:

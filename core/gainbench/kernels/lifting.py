@@ -7,9 +7,9 @@ the rest that of tick k - q. The closed current loop, as a one-tick map, is rais
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from gainbench.kernels.compiled import compiled
 from gainbench.kernels.linalg import expm_minus_identity, matmul, power_minus_identity
 from gainbench.kernels.loop_records import SampledPlant
 
@@ -18,7 +18,7 @@ FORWARD = 1
 TRAPEZOID = 2
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def held_step(
     a: NDArray[np.float64], bv: NDArray[np.float64], width: float
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
@@ -38,7 +38,7 @@ def held_step(
     return step, column
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def tick_step(a: NDArray[np.float64], bv: NDArray[np.float64], period: float, part: float) -> NDArray[np.float64]:
     """One current period, shape (n, n + 2): exp - I, then the columns of the older and of the newer voltage.
 
@@ -59,7 +59,7 @@ def tick_step(a: NDArray[np.float64], bv: NDArray[np.float64], period: float, pa
     return out
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def closed_tick(
     tick: NDArray[np.float64],
     sampled: int,
@@ -122,7 +122,7 @@ def closed_tick(
     return d
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def without(d: NDArray[np.float64], index: int, size: int) -> NDArray[np.float64]:
     """The leading ``size`` rows and columns without the one at ``index``."""
     out = np.empty((size - 1, size - 1))
@@ -132,7 +132,7 @@ def without(d: NDArray[np.float64], index: int, size: int) -> NDArray[np.float64
     return out
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def closed_current(
     tick: NDArray[np.float64], sampled: int, held: int, split: bool, kp: float, ki_period: float, rule: int
 ) -> NDArray[np.float64]:
@@ -141,7 +141,7 @@ def closed_current(
     return without(d, tick.shape[0] - 1, d.shape[0] - 2)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def lifted_tick(d: NDArray[np.float64], angle: int, delay: int, divisor: int) -> NDArray[np.float64]:
     """``divisor`` ticks of a closed loop, shape (n + 1, n + 3), without the column of the angle.
 
@@ -165,7 +165,7 @@ def lifted_tick(d: NDArray[np.float64], angle: int, delay: int, divisor: int) ->
     return out
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def closed_speed(plant: SampledPlant, kp: float, ki_period: float, rule: int) -> NDArray[np.float64]:
     """Closed speed loop in delta form.
 

@@ -7,14 +7,15 @@ is a hundred times the arithmetic. The tests hold each function against scipy.li
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
+
+from gainbench.kernels.compiled import compiled
 
 _TAYLOR_TERMS = 14
 """With a scaled 1-norm of at most 1/4 the first term left out is below 0.25^14/15! = 3e-21."""
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def matmul(a: NDArray[np.float64], b: NDArray[np.float64]) -> NDArray[np.float64]:
     """The product a b by plain loops."""
     rows, inner, columns = a.shape[0], a.shape[1], b.shape[1]
@@ -28,7 +29,7 @@ def matmul(a: NDArray[np.float64], b: NDArray[np.float64]) -> NDArray[np.float64
     return out
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _balance(a: NDArray[np.float64]) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """Similarity scaling by powers of two that evens row and column norms; inputs' zero rows take any scale."""
     n = a.shape[0]
@@ -59,7 +60,7 @@ def _balance(a: NDArray[np.float64]) -> tuple[NDArray[np.float64], NDArray[np.fl
     return out, scale
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def expm_minus_identity(a: NDArray[np.float64]) -> NDArray[np.float64]:
     """exp(a) - I, accurate where exp(a) is close to one.
 
@@ -111,7 +112,7 @@ def expm_minus_identity(a: NDArray[np.float64]) -> NDArray[np.float64]:
     return out
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def power_minus_identity(d: NDArray[np.float64], count: int) -> NDArray[np.float64]:
     """(I + d)^count - I for a whole count >= 0, by ``D(a + b) = D(a) + D(b) + D(a) D(b)``."""
     n = d.shape[0]

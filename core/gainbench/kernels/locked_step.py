@@ -10,9 +10,9 @@ import math
 from typing import NamedTuple
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from gainbench.kernels.compiled import compiled
 from gainbench.kernels.lifting import FORWARD, TRAPEZOID
 
 LONGEST = 400_000
@@ -65,7 +65,7 @@ class StepTimes(NamedTuple):
     """Until the current stayed near its end value."""
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def next_voltage(pi: LockedPi, error: float, previous: float, integral: float) -> tuple[float, float]:
     """The PI's output and its integral afterwards, without a clamp."""
     if pi.rule == TRAPEZOID:
@@ -75,13 +75,13 @@ def next_voltage(pi: LockedPi, error: float, previous: float, integral: float) -
     return pi.kp * error + (integral if pi.rule == FORWARD else after), after
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def met(start: float, rest: float, level: float, time: float) -> float:
     """When an exponential from ``start`` towards ``rest`` meets a level, with the time constant ``time``."""
     return -time * math.log1p((level - start) / (start - rest))
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def run_step(
     winding: Winding,
     period: float,
@@ -156,7 +156,7 @@ def run_step(
     return StepTimes(at_low, at_high, largest, min(outside, ended))
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def locked_step(
     winding: Winding,
     period: float,

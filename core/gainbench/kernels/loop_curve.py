@@ -5,9 +5,9 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from gainbench.kernels.compiled import compiled
 from gainbench.kernels.frequency import pi_at, plant_at, workspace
 from gainbench.kernels.loop_records import SampledPlant
 
@@ -22,7 +22,7 @@ LOUD = 20.0
 HALVINGS = 14
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def far(first: complex, second: complex) -> bool:
     """Whether the loop turns or steps too much between two frequencies."""
     one = first.real * first.real + first.imag * first.imag
@@ -37,7 +37,7 @@ def far(first: complex, second: complex) -> bool:
     return low < LOUD * LOUD and high > RISE * RISE * low
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def trace_loop(
     plant: SampledPlant, kp: float, ki_period: float, rule: int, w: NDArray[np.float64]
 ) -> tuple[NDArray[np.float64], NDArray[np.complex128]]:

@@ -5,9 +5,9 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from gainbench.kernels.compiled import compiled
 from gainbench.kernels.frequency import hessenberg, pi_at, plant_at, workspace
 from gainbench.kernels.loop_curve import trace_loop
 from gainbench.kernels.loop_records import LoopNumbers, SampledPlant
@@ -32,7 +32,7 @@ NARROW = 1e-14
 """Width of a bracket, as a share of the frequency, at which the search for a root ends."""
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def measure(kind: int, loop: complex) -> float:
     """One of the functions above, of L."""
     square = loop.real * loop.real + loop.imag * loop.imag
@@ -46,7 +46,7 @@ def measure(kind: int, loop: complex) -> float:
     return -distance
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def loop_at(
     plant: SampledPlant, kp: float, ki_period: float, rule: int, w: float, work: NDArray[np.complex128]
 ) -> complex:
@@ -54,7 +54,7 @@ def loop_at(
     return plant_at(plant, w, work) * pi_at(kp, ki_period, rule, w, plant.period)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def root(
     plant: SampledPlant,
     kp: float,
@@ -98,7 +98,7 @@ def root(
     return 0.5 * (low + high)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def summit(
     plant: SampledPlant,
     kp: float,
@@ -131,7 +131,7 @@ def summit(
     return right, sign * at_right
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def crossings(
     plant: SampledPlant,
     kp: float,
@@ -192,7 +192,7 @@ def crossings(
     return found
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def first_fall(found: NDArray[np.float64]) -> float:
     """The first zero through which a measure falls; NaN if none."""
     for k in range(found.shape[1]):
@@ -201,7 +201,7 @@ def first_fall(found: NDArray[np.float64]) -> float:
     return math.nan
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def numbers_of(
     plant: SampledPlant,
     kp: float,
@@ -255,7 +255,7 @@ def numbers_of(
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def loop_numbers(
     plant: SampledPlant,
     kp: float,

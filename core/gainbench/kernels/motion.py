@@ -7,9 +7,9 @@ What a step needs travels as scalars: arrays in the innermost loop would be coun
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from gainbench.kernels.compiled import compiled, inlined
 from gainbench.kernels.linalg import expm_minus_identity
 from gainbench.kernels.response_records import Flow, Inputs, Layout, Motion, PlantState, Row, Segments, Step
 
@@ -32,7 +32,7 @@ SECOND = np.int64(1)
 """Segments of a tick."""
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def flow_matrix(a: NDArray[np.float64], b: NDArray[np.float64], layout: Layout) -> NDArray[np.float64]:
     """The plant's matrices in the order of PlantState, charge and inputs, shape (7, 10)."""
     place = np.array([0, 1, layout.filtered, layout.load_speed, layout.twist, layout.angle])
@@ -48,7 +48,7 @@ def flow_matrix(a: NDArray[np.float64], b: NDArray[np.float64], layout: Layout) 
     return matrix
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def read_flow(matrix: NDArray[np.float64], elastic: bool) -> Flow:
     """The entries of a plant's matrix that are not 0 or 1 by definition."""
     return Flow(
@@ -70,7 +70,7 @@ def read_flow(matrix: NDArray[np.float64], elastic: bool) -> Flow:
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def plant_rate(matrix: NDArray[np.float64]) -> float:
     """Bound on the plant's own rates [1/s]: its largest row sum, scaled so that each pair of states couples alike."""
     rate = 0.0
@@ -83,7 +83,7 @@ def plant_rate(matrix: NDArray[np.float64]) -> float:
     return rate
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def prepare_motion(matrix: NDArray[np.float64], first: float, second: float) -> Motion:
     """The plant over segments of these lengths [s]; ``first`` may be 0. No step is computed yet."""
     span = plant_rate(matrix) * max(first, second)
@@ -109,7 +109,7 @@ def prepare_motion(matrix: NDArray[np.float64], first: float, second: float) -> 
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def build_ladder(motion: Motion, segment: int, resting: int) -> None:
     """Changes over 1, 2, 4, ... pieces of a segment: (I + P)^2 = I + 2 P + P^2 keeps the small ones exact."""
     part = np.zeros((SIZE, SIZE))
@@ -137,13 +137,13 @@ def build_ladder(motion: Motion, segment: int, resting: int) -> None:
     motion.built[segment, resting] = True
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def read_row(step: NDArray[np.float64], row: int) -> Row:
     """One row of a step."""
     return Row(step[row, 0], step[row, 1], step[row, 3], step[row, 4], step[row, 5], step[row, 6], step[row, 7])
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def read_step(motion: Motion, segment: int, resting: int, level: int) -> Step:
     """The step over 2^level pieces of a segment in a mode."""
     if not motion.built[segment, resting]:
@@ -162,7 +162,7 @@ def read_step(motion: Motion, segment: int, resting: int, level: int) -> Step:
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def read_segments(motion: Motion, resting: int) -> Segments:
     """The steps over both segments of a tick in a mode."""
     # A written 0 or 1 is a type of its own to the compiler: everything below would be compiled twice.
@@ -171,7 +171,7 @@ def read_segments(motion: Motion, resting: int) -> Segments:
     return Segments(first, second)
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def change(row: Row, elastic: bool, x: PlantState, u: Inputs) -> float:
     """Change of one state, or the charge, over a step."""
     value = row.current * x.current + row.speed * x.speed + row.voltage * u.voltage + row.motor_drag * u.motor_drag
@@ -180,7 +180,7 @@ def change(row: Row, elastic: bool, x: PlantState, u: Inputs) -> float:
     return value
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def stride(step: Step, flow: Flow, x: PlantState, u: Inputs) -> PlantState:
     """The state after a step."""
     elastic = flow.elastic

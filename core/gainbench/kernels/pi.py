@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-from numba import njit
-
+from gainbench.kernels.compiled import inlined
 from gainbench.kernels.response_records import BACKWARD, FORWARD, PiInputs, PiLaw, PiOutput, PiState
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def pi_step(law: PiLaw, state: PiState, inputs: PiInputs) -> tuple[PiState, PiOutput]:
     """Advance a PI controller by one of its ticks.
 

@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
 from gainbench.kernels.bodies import depart, eventless, inputs_of, resting_bodies
+from gainbench.kernels.compiled import compiled, inlined
 from gainbench.kernels.motion import (
     FIRST,
     SECOND,
@@ -49,7 +49,7 @@ VOLTAGE_CLAMPED = 1
 """Rows of the flags."""
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def reference_at(script: Script, tick: int, time: float) -> float:
     """The speed reference that a speed tick reads [rad/s]."""
     if tick < script.reference_tick:
@@ -65,7 +65,7 @@ def reference_at(script: Script, tick: int, time: float) -> float:
     return size if script.reference >= 0.0 else -size
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def voltage_room(sampling: Sampling, speed: float, current: float) -> float:
     """What the clamp leaves to the voltage: on the q axis what the d axis leaves of it [V]."""
     if sampling.reactance == 0.0:
@@ -80,7 +80,7 @@ TURNS = 1
 UNSURE = 2
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def glide(
     step: Step, flow: Flow, drag: Drag, heading: Heading, x: PlantState, voltage: float
 ) -> tuple[int, PlantState, float]:
@@ -99,7 +99,7 @@ def glide(
     return (SURE if kept < 0 else TURNS), y, -voltage * change(step.charge, flow.elastic, x, u)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def turning_energy(
     motion: Motion, segment: int, flow: Flow, drag: Drag, heading: Heading, x: PlantState, voltage: float
 ) -> float:
@@ -109,7 +109,7 @@ def turning_energy(
     return series_energy(motion.series, voltage, 1.0)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def respond(
     run: Run,
     traces: NDArray[np.float64],

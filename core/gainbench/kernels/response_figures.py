@@ -5,8 +5,9 @@ from __future__ import annotations
 from typing import NamedTuple
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
+
+from gainbench.kernels.compiled import compiled
 
 NEVER = -1
 
@@ -33,7 +34,7 @@ class LoadTicks(NamedTuple):
     """Last tick outside the band, or NEVER."""
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def step_ticks(speed: NDArray[np.float64], goal: float, first: int, end: int, band: float) -> StepTicks:
     """Look at the speed in ticks ``first`` to before ``end``, signed by the goal [rad/s], which is not 0."""
     sign = 1.0 if goal > 0.0 else -1.0
@@ -58,7 +59,7 @@ def step_ticks(speed: NDArray[np.float64], goal: float, first: int, end: int, ba
     return StepTicks(excess, tenth, ninth, outside)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def load_ticks(
     speed: NDArray[np.float64], reference: NDArray[np.float64], first: int, end: int, band: float
 ) -> LoadTicks:

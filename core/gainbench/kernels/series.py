@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from gainbench.kernels.compiled import compiled, inlined
 from gainbench.kernels.motion import CHARGE, LOAD_RESTS, MOTOR_RESTS
 from gainbench.kernels.response_records import Flow, Inputs, PlantState
 
@@ -15,7 +15,7 @@ SAME_INSTANT = 1e-15
 """Share of a piece below which the search for a zero ends."""
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def build_series(series: NDArray[np.float64], flow: Flow, resting: int, x: PlantState, u: Inputs, width: float) -> None:
     """Fill the power series of states and charge in the share of ``width`` [s] that has passed, by terms and states."""
     i, w, f, l, t = x.current, x.speed, x.filtered, x.load_speed, x.twist  # noqa: E741
@@ -39,7 +39,7 @@ def build_series(series: NDArray[np.float64], flow: Flow, resting: int, x: Plant
         pushed = motor_pushed = load_pushed = 0.0
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def value_at(series: NDArray[np.float64], row: int, share: float) -> float:
     """One state, or the charge, at a share of the piece."""
     value = 0.0
@@ -48,7 +48,7 @@ def value_at(series: NDArray[np.float64], row: int, share: float) -> float:
     return float(value + series[0, row])
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def slope_at(series: NDArray[np.float64], row: int, share: float) -> float:
     """Derivative of one state by the share, at a share of the piece."""
     value = 0.0
@@ -57,7 +57,7 @@ def slope_at(series: NDArray[np.float64], row: int, share: float) -> float:
     return value
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def state_at(series: NDArray[np.float64], flow: Flow, share: float) -> PlantState:
     """The state at a share of the piece."""
     filtered = load_speed = twist = 0.0
@@ -75,7 +75,7 @@ def state_at(series: NDArray[np.float64], flow: Flow, share: float) -> PlantStat
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def turning_point(series: NDArray[np.float64], end: float) -> float:
     """Share up to ``end`` where the current's slope changes its sign; ``end`` where it does not."""
     before = series[1, 0]
@@ -91,7 +91,7 @@ def turning_point(series: NDArray[np.float64], end: float) -> float:
     return high
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def zero_between(series: NDArray[np.float64], low: float, high: float) -> float:
     """Share at which the current, monotone from ``low`` to ``high`` and of other sign there, is zero."""
     before, after = value_at(series, 0, low), value_at(series, 0, high)
@@ -111,7 +111,7 @@ def zero_between(series: NDArray[np.float64], low: float, high: float) -> float:
     return share
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def series_energy(series: NDArray[np.float64], voltage: float, end: float) -> float:
     """Integral of -v i where v i < 0 up to a share of the piece, split where the current changes its sign [J]."""
     if voltage == 0.0:
@@ -132,7 +132,7 @@ def series_energy(series: NDArray[np.float64], voltage: float, end: float) -> fl
     return given
 
 
-@njit(cache=True, nogil=True, error_model="numpy", forceinline=True)
+@inlined
 def sign_kept(flow: Flow, x: PlantState, y: PlantState, voltage: float, time: float) -> int:
     """1: v i stays at or above 0 from x to y; -1: at or below 0; 0: it may change its sign."""
     ahead = x.current + (flow.ii * x.current + flow.iw * x.speed + flow.iv * voltage) * time

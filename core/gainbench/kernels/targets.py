@@ -5,9 +5,9 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from gainbench.kernels.compiled import compiled
 from gainbench.kernels.frequency import gains_at, hessenberg, pi_at, plant_at, workspace
 from gainbench.kernels.loop_figures import CLOSED, measure
 from gainbench.kernels.loop_records import SampledPlant
@@ -16,7 +16,7 @@ HALVINGS = 70
 """From neighbours on the grid down to rounding."""
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def miss(
     plant: SampledPlant,
     rule: int,
@@ -31,7 +31,7 @@ def miss(
     return measure(int(np.int64(CLOSED)), at_bandwidth * pi_at(kp, ki_period, rule, bandwidth, plant.period))
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def crossovers_for_bandwidth(
     plant: SampledPlant, rule: int, margin: float, bandwidth: float, w: NDArray[np.float64]
 ) -> NDArray[np.float64]:

@@ -7,10 +7,10 @@ series of the motion over its piece, and the rest of the segment runs in the new
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
 from gainbench.kernels.bodies import calm, depart, eventless, halt, in_mode, inputs_of, resting_bodies
+from gainbench.kernels.compiled import compiled
 from gainbench.kernels.motion import change, read_step, stride
 from gainbench.kernels.response_records import Drag, Flow, Heading, Inputs, Motion, PlantState
 from gainbench.kernels.series import HALVINGS, build_series, series_energy, sign_kept, state_at
@@ -22,7 +22,7 @@ PARTS = 8
 NEVER = 2.0
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def event_share(
     series: NDArray[np.float64], flow: Flow, drag: Drag, heading: Heading, x: PlantState, u: Inputs, width: float
 ) -> float:
@@ -45,7 +45,7 @@ def event_share(
     return high
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def travel(
     motion: Motion, flow: Flow, drag: Drag, segment: int, x: PlantState, voltage: float
 ) -> tuple[Heading, PlantState, float]:

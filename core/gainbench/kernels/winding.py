@@ -15,9 +15,9 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from gainbench.kernels.compiled import compiled
 from gainbench.kernels.frequency import hessenberg, pi_at, plant_at, workspace
 from gainbench.kernels.loop_records import SampledPlant
 
@@ -26,7 +26,7 @@ TURN = 0.7
 HALVINGS = 40
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def fed_part(plant: SampledPlant) -> SampledPlant:
     """The path from the measured value back to itself, as a plant."""
     none = np.zeros(plant.m.shape[0])
@@ -47,7 +47,7 @@ def fed_part(plant: SampledPlant) -> SampledPlant:
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def traced(
     plant: SampledPlant,
     fed: SampledPlant,
@@ -70,7 +70,7 @@ def traced(
     return value
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def half_turns(
     plant: SampledPlant, kp: float, ki_period: float, rule: int, slow: float, w: NDArray[np.float64]
 ) -> float:
