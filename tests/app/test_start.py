@@ -53,7 +53,6 @@ def test_a_command_does_not_open_the_window(opened, capfd):
     [
         (["none.bench.toml"], "no such file"),
         (["."], "folder"),
-        (["contrast", "drive.bench.toml"], "no such command"),
         (["identify"], "no such command"),
         (["drive.bench.toml", "drive.bench.toml"], "one sheet at a time"),
         (["--contrast"], "--contrast"),

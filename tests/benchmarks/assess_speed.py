@@ -32,21 +32,66 @@ ASSESSMENTS_PER_TURN = 30
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Scripted:
-    """What the script found, to show that it did the same work."""
+class Margins:
+    """Figures of one loop, read off 400 frequencies by straight lines."""
 
-    current_kp: float
-    current_ki: float
-    speed_kp: float
-    speed_ki: float
-    current_margin: float
+    stable: bool
+    crossover: float
+    """[rad/s]."""
+    phase_margin: float
     """[deg]."""
-    speed_margin: float
-    """[deg]."""
+    delay_margin: float
+    """[s]."""
+    gain_margin: float
+    """[dB]."""
+    peak_sensitivity: float
+    bandwidth: float
+    """[rad/s]."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Step:
+    """The current step with the rotor locked."""
+
+    rise: float
+    """[s]."""
     overshoot: float
     """[%]."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Run:
+    """Traces and figures of the duty."""
+
+    traces: tuple[list[float], ...]
+    overshoot: float
+    """[%]."""
+    rise: float
+    """[s]."""
+    settling: float
+    """[s]."""
+    dip: float
+    """[rad/s]."""
+    recovery: float
+    """[s]."""
     peak_current: float
-    """[A]."""
+    rms_current: float
+    peak_voltage: float
+    current_limited: float
+    voltage_limited: float
+    returned_energy: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Scripted:
+    """What the script found."""
+
+    current: tuple[float, float]
+    speed: tuple[float, float]
+    current_margins: Margins
+    speed_margins: Margins
+    step: Step
+    run: Run
 
 
 def pi_gains(response: complex, w: float, period: float, margin: float) -> tuple[float, float]:
@@ -58,21 +103,161 @@ def pi_gains(response: complex, w: float, period: float, margin: float) -> tuple
     return wanted.real - ki * shape.real, ki
 
 
-def phase_margin(frequency: np.ndarray, loop: np.ndarray) -> float:
-    """Smallest distance of the phase to -180 degrees over all crossings of one, by straight lines [deg]."""
-    size = np.log(np.abs(loop))
-    found = []
-    for k in np.flatnonzero(np.sign(size[:-1]) != np.sign(size[1:])):
-        share = size[k] / (size[k] - size[k + 1])
-        first = np.angle(-loop[k])
-        step = np.angle(loop[k + 1] / loop[k])
-        found.append(abs(math.degrees(first + share * step)))
-    return min(found)
+def falls(w: np.ndarray, value: np.ndarray) -> list[float]:
+    """Where a real curve changes its sign, by straight lines."""
+    return [
+        float(w[k] + (w[k + 1] - w[k]) * value[k] / (value[k] - value[k + 1]))
+        for k in np.flatnonzero(np.sign(value[:-1]) != np.sign(value[1:]))
+    ]
+
+
+def margins(w: np.ndarray, loop: np.ndarray, poles: np.ndarray) -> Margins:
+    """All figures of a loop."""
+    phase = np.unwrap(np.angle(-loop))
+    crossings = falls(w, np.log(np.abs(loop)))
+    above = [float(np.interp(one, w, phase)) for one in crossings]
+    turns = [one for one in falls(w, loop.imag) if np.interp(one, w, loop.real) < 0.0]
+    factors = [-1.0 / float(np.interp(one, w, loop.real)) for one in turns] + [-1.0 / float(loop[-1].real)]
+    closed = np.abs(loop / (1.0 + loop))
+    return Margins(
+        stable=bool(np.all(np.abs(poles) < 1.0 + 1e-9)),
+        crossover=crossings[0],
+        phase_margin=min(abs(math.degrees(one)) for one in above),
+        delay_margin=min((one % math.tau) / at for one, at in zip(above, crossings, strict=True)),
+        gain_margin=20.0 * math.log10(min(one for one in factors if one > 1.0)),
+        peak_sensitivity=float(np.max(1.0 / np.abs(1.0 + loop))),
+        bandwidth=falls(w, closed - math.sqrt(0.5))[0],
+    )
+
+
+def locked(plant: Plant, *, kp: float, ki: float, ts: float) -> Step:
+    """The current step with the rotor locked, its levels met between ticks, until it has settled."""
+    keep = math.exp(-plant.resistance / plant.inductance * ts)
+    tau = plant.inductance / plant.resistance
+    i = s = voltage = top = 0.0
+    levels = {0.1: 0.0, 0.9: 0.0}
+    quiet = k = 0
+    while quiet < 8:
+        error = 1.0 - i
+        s += ki * ts * error
+        applied, voltage = voltage, kp * error + s
+        rest = applied / plant.resistance
+        after = rest + (i - rest) * keep
+        for level, met in levels.items():
+            if met == 0.0 and after >= level:
+                levels[level] = k * ts - tau * math.log1p((level - i) / (i - rest))
+        quiet = quiet + 1 if abs(after - i) < 1e-10 else 0
+        i = after
+        top = max(top, i)
+        k += 1
+    return Step(rise=levels[0.9] - levels[0.1], overshoot=100.0 * max(top - 1.0, 0.0))
+
+
+def respond(
+    sheet: Sheet,
+    plant: Plant,
+    ad: np.ndarray,
+    bd: np.ndarray,
+    *,
+    current: tuple[float, float],
+    speed: tuple[float, float],
+) -> Run:
+    """The duty in plain floats: two rates, encoder counts, clamps with hold, friction that sticks."""
+    stage, duty = sheet.rig.stage, sheet.duty
+    ts, n = stage.current_period, stage.speed_divisor
+    tw = n * ts
+    (a11, a12, _), (a21, a22, _), (a31, a32, _) = ad.tolist()
+    (b1, d1), (b2, d2), (b3, d3) = bd.tolist()
+    keep, push = math.exp(-plant.resistance / plant.inductance * ts), 0.0
+    push = (1.0 - keep) / plant.resistance
+    limit_i, limit_v, coulomb, kt = plant.current_limit, plant.voltage_limit, plant.coulomb, plant.torque
+    counts = stage.encoder_counts / math.tau
+    step = duty.load_step / sheet.rig.train.ratio
+    k_ref, k_load = round(duty.reference_at / ts), round(duty.load_time / ts)
+    (kp, ki), (kp_w, ki_w) = current, speed
+    ki_ts, ki_tw = ki * ts, ki_w * tw
+    i = w = theta = s = s_w = wanted = voltage = energy = squares = 0.0
+    peak_i = peak_v = 0.0
+    limited_i = limited_v = 0
+    seen_before = 0
+    times, references, speeds, currents, currents_wanted, voltages, flags_i, flags_v = ([] for _ in range(8))
+    clamped_i = False
+    for k in range(TICKS):
+        reference = duty.reference_speed if k >= k_ref else 0.0
+        if k % n == 0:
+            seen = math.floor(theta * counts + 0.5)
+            measured = (seen - seen_before) / counts / tw
+            seen_before = seen
+            in_force = reference
+            error = reference - measured
+            integral = s_w + ki_tw * error
+            u = kp_w * error + integral
+            wanted = limit_i if u > limit_i else (-limit_i if u < -limit_i else u)
+            clamped_i = wanted != u
+            limited_i += clamped_i
+            if not (clamped_i and error * u > 0.0):
+                s_w = integral
+        error = wanted - i
+        integral = s + ki_ts * error
+        u = kp * error + integral
+        applied = voltage
+        voltage = limit_v if u > limit_v else (-limit_v if u < -limit_v else u)
+        clamped_v = voltage != u
+        limited_v += clamped_v
+        if not (clamped_v and error * u > 0.0):
+            s = integral
+        times.append(k * ts)
+        references.append(in_force)
+        speeds.append(w)
+        currents.append(i)
+        currents_wanted.append(wanted)
+        voltages.append(voltage)
+        flags_i.append(clamped_i)
+        flags_v.append(clamped_v)
+        squares += i * i
+        peak_i = max(peak_i, abs(i))
+        peak_v = max(peak_v, abs(voltage))
+        load = step if k >= k_load else 0.0
+        before = i
+        pull = kt * i - load
+        if w == 0.0 and -coulomb <= pull <= coulomb:
+            i = keep * i + push * applied
+        else:
+            drag = load + (coulomb if w > 0.0 or (w == 0.0 and pull > 0.0) else -coulomb)
+            turning = w
+            i, w, theta = (
+                a11 * i + a12 * w + b1 * applied + d1 * drag,
+                a21 * i + a22 * w + b2 * applied + d2 * drag,
+                theta + a31 * i + a32 * w + b3 * applied + d3 * drag,
+            )
+            if turning * w < 0.0:
+                w = 0.0
+        given = -applied * 0.5 * (before + i) * ts
+        if given > 0.0:
+            energy += given
+    size = abs(duty.reference_speed)
+    stepped, loaded = np.array(speeds[k_ref:k_load]), np.array(speeds[k_load:])
+    off = np.flatnonzero(np.abs(stepped - duty.reference_speed) > 0.02 * size)
+    off_load = np.flatnonzero(np.abs(loaded - duty.reference_speed) > 0.02 * size)
+    return Run(
+        traces=(times, references, speeds, currents, currents_wanted, voltages, flags_i, flags_v),
+        overshoot=100.0 * max(float(stepped.max()) / size - 1.0, 0.0),
+        rise=float(np.argmax(stepped >= 0.9 * size) - np.argmax(stepped >= 0.1 * size)) * ts,
+        settling=float(off[-1]) * ts if off.size else 0.0,
+        dip=float(np.max(np.abs(loaded - duty.reference_speed))),
+        recovery=float(off_load[-1]) * ts if off_load.size else 0.0,
+        peak_current=peak_i,
+        rms_current=math.sqrt(squares / TICKS),
+        peak_voltage=peak_v,
+        current_limited=limited_i * tw,
+        voltage_limited=limited_v * ts,
+        returned_energy=energy,
+    )
 
 
 def scripted(sheet: Sheet, plant: Plant) -> Scripted:
     """The careful user's script."""
-    stage, aims, duty = sheet.rig.stage, sheet.aims, sheet.duty
+    stage, aims = sheet.rig.stage, sheet.aims
     ts, n = stage.current_period, stage.speed_divisor
     tw = n * ts
     # The winding and the shaft, sampled; one period from sample to voltage.
@@ -89,12 +274,12 @@ def scripted(sheet: Sheet, plant: Plant) -> Scripted:
     held = np.zeros((3, 3))
     held[:2, :2], held[:2, 2] = ad[:2, :2], bd[:2, 0]
     current_plant = control.ss(held, np.array([[0.0], [0.0], [1.0]]), np.array([[1.0, 0.0, 0.0]]), 0.0, ts)
-    w1 = np.geomspace(1e-4, 1.0, POINTS) * math.pi / ts
-    response = np.asarray(control.frequency_response(current_plant, w1).complex)
+    w = np.geomspace(1e-4, 1.0, POINTS) * math.pi / ts
+    response = np.asarray(control.frequency_response(current_plant, w).complex)
     there = complex(current_plant(cmath.exp(1j * aims.current.crossover * ts)))
     kp, ki = pi_gains(there, aims.current.crossover, ts, aims.current.phase_margin)
-    z = np.exp(1j * w1 * ts)
-    current_margin = phase_margin(w1, response * (kp + ki * ts * z / (z - 1.0)))
+    z = np.exp(1j * w * ts)
+    loop = response * (kp + ki * ts * z / (z - 1.0))
 
     # The closed current loop over one speed period, then the encoder's difference of one period.
     fast = np.zeros((6, 6))  # i, w, theta, voltage under way, integrator, reference
@@ -102,101 +287,69 @@ def scripted(sheet: Sheet, plant: Plant) -> Scripted:
     fast[3, 0], fast[3, 4], fast[3, 5] = -(kp + ki * ts), 1.0, kp + ki * ts
     fast[4, 0], fast[4, 4], fast[4, 5] = -ki * ts, 1.0, ki * ts
     fast[5, 5] = 1.0
+    poles = np.linalg.eigvals(np.delete(np.delete(fast[:5, :5], 2, axis=0), 2, axis=1))
+    current_margins = margins(w, loop, poles)
     slow = np.linalg.matrix_power(fast, n)
     a_slow = np.zeros((6, 6))
     a_slow[:5, :5] = slow[:5, :5]
     a_slow[5, 2] = 1.0
     b_slow = np.append(slow[:5, 5], 0.0)[:, None]
-    speed_plant = control.ss(a_slow, b_slow, np.array([[0.0, 0.0, 1.0, 0.0, 0.0, -1.0]]) / tw, 0.0, tw)
-    w2 = np.geomspace(1e-4, 1.0, POINTS) * math.pi / tw
-    response = np.asarray(control.frequency_response(speed_plant, w2).complex)
+    seen = np.array([[0.0, 0.0, 1.0, 0.0, 0.0, -1.0]]) / tw
+    speed_plant = control.ss(a_slow, b_slow, seen, 0.0, tw)
+    w = np.geomspace(1e-4, 1.0, POINTS) * math.pi / tw
+    response = np.asarray(control.frequency_response(speed_plant, w).complex)
     there = complex(speed_plant(cmath.exp(1j * aims.speed.crossover * tw)))
     kp_w, ki_w = pi_gains(there, aims.speed.crossover, tw, aims.speed.phase_margin)
-    z = np.exp(1j * w2 * tw)
-    speed_margin = phase_margin(w2, response * (kp_w + ki_w * tw * z / (z - 1.0)))
-
-    # The response, in plain floats.
-    (a11, a12, _), (a21, a22, _), (a31, a32, _) = ad.tolist()
-    (b1, d1), (b2, d2), (b3, d3) = bd.tolist()
-    limit_i, limit_v, coulomb = plant.current_limit, plant.voltage_limit, plant.coulomb
-    counts = stage.encoder_counts / math.tau
-    step = duty.load_step / sheet.rig.train.ratio
-    k_ref, k_load = round(duty.reference_at / ts), round(duty.load_time / ts)
-    i = w = theta = s = s_w = reference = voltage = 0.0
-    seen_before = math.floor(0.5)
-    ki_ts, ki_tw = ki * ts, ki_w * tw
-    speeds, currents = [0.0] * TICKS, [0.0] * TICKS
-    for k in range(TICKS):
-        speeds[k], currents[k] = w, i
-        if k % n == 0:
-            seen = math.floor(theta * counts + 0.5)
-            measured = (seen - seen_before) / counts / tw
-            seen_before = seen
-            error = (duty.reference_speed if k >= k_ref else 0.0) - measured
-            integral = s_w + ki_tw * error
-            u = kp_w * error + integral
-            reference = min(max(u, -limit_i), limit_i)
-            if reference == u or error * u <= 0.0:
-                s_w = integral
-        error = reference - i
-        integral = s + ki_ts * error
-        u = kp * error + integral
-        applied, voltage = voltage, min(max(u, -limit_v), limit_v)
-        if voltage == u or error * u <= 0.0:
-            s = integral
-        load = step if k >= k_load else 0.0
-        if w == 0.0 and abs(plant.torque * i - load) <= coulomb:
-            i = a11 * i + b1 * applied
-            continue
-        drag = load + (coulomb if w > 0.0 or (w == 0.0 and plant.torque * i > load) else -coulomb)
-        before = w
-        i, w, theta = (
-            a11 * i + a12 * w + b1 * applied + d1 * drag,
-            a21 * i + a22 * w + b2 * applied + d2 * drag,
-            theta + a31 * i + a32 * w + b3 * applied + d3 * drag,
-        )
-        if before * w < 0.0:
-            w = 0.0
-    top = max(speeds[k_ref:k_load])
+    z = np.exp(1j * w * tw)
+    loop = response * (kp_w + ki_w * tw * z / (z - 1.0))
+    closed = np.zeros((7, 7))
+    closed[:6, :6] = a_slow - (kp_w + ki_w * tw) * b_slow @ seen
+    closed[:6, 6:] = b_slow
+    closed[6, :6], closed[6, 6] = -ki_w * tw * seen[0], 1.0
+    # The angle itself is free: its pole at one is the one that does not count.
+    poles = np.sort(np.abs(np.linalg.eigvals(closed)))[:-1]
     return Scripted(
-        current_kp=kp,
-        current_ki=ki,
-        speed_kp=kp_w,
-        speed_ki=ki_w,
-        current_margin=current_margin,
-        speed_margin=speed_margin,
-        overshoot=100.0 * max(top / duty.reference_speed - 1.0, 0.0),
-        peak_current=max(map(abs, currents)),
+        current=(kp, ki),
+        speed=(kp_w, ki_w),
+        current_margins=current_margins,
+        speed_margins=margins(w, loop, poles),
+        step=locked(plant, kp=kp, ki=ki, ts=ts),
+        run=respond(sheet, plant, ad, bd, current=(kp, ki), speed=(kp_w, ki_w)),
     )
 
 
 def same_work(found: Scripted, sheet: Sheet) -> None:
     """Refuse to compare two different jobs."""
     result = assess(sheet)
-    mine, theirs = (
-        (
-            result.current.gains.kp,
-            result.current.gains.ki,
-            result.speed.gains.kp,
-            result.speed.gains.ki,
-            result.current.figures.phase_margin_deg,
-            result.speed.figures.phase_margin_deg,
-            result.response.figures.peak_current_a,
-        ),
-        (
-            found.current_kp,
-            found.current_ki,
-            found.speed_kp,
-            found.speed_ki,
-            found.current_margin,
-            found.speed_margin,
-            found.peak_current,
-        ),
-    )
-    if not np.allclose(mine, theirs, rtol=1e-3):
-        raise SystemExit(f"the two do not agree: {mine} {theirs}")
-    if abs(result.response.figures.overshoot_percent - found.overshoot) > 0.5:
-        raise SystemExit(f"overshoots differ: {result.response.figures.overshoot_percent} {found.overshoot}")
+    run, figures = found.run, result.response.figures
+    pairs = [
+        (found.current, (result.current.gains.kp, result.current.gains.ki), 1e-6),
+        (found.speed, (result.speed.gains.kp, result.speed.gains.ki), 1e-6),
+        (found.step.rise, result.locked_step.rise_s, 1e-6),
+        (found.step.overshoot, result.locked_step.overshoot_percent, 1e-6),
+        (run.rise, figures.rise_time_s, 0.01),
+        (run.settling, figures.settling_time_s, 0.05),
+        (run.dip, figures.load_dip_rad_s, 0.05),
+        (run.peak_current, figures.peak_current_a, 0.01),
+        (run.rms_current, figures.rms_current_a, 0.01),
+        (run.peak_voltage, figures.peak_voltage_v, 0.01),
+        (run.current_limited, figures.current_limited_s, 0.1),
+        (run.returned_energy, figures.returned_energy_j, 0.1),
+    ]
+    for mine, theirs in ((found.current_margins, result.current), (found.speed_margins, result.speed)):
+        own = theirs.figures
+        pairs += [
+            (mine.stable, own.stable, 0.0),
+            (mine.crossover, math.tau * own.crossover_hz, 1e-3),
+            (mine.phase_margin, own.phase_margin_deg, 1e-3),
+            (mine.delay_margin, own.delay_margin_s, 1e-3),
+            (mine.gain_margin, own.gain_margin_db, 1e-3),
+            (mine.peak_sensitivity, own.peak_sensitivity, 1e-3),
+            (mine.bandwidth, math.tau * own.bandwidth_hz, 1e-3),
+        ]
+    for mine, theirs, share in pairs:
+        if not np.allclose(mine, theirs, rtol=share, atol=0.0):
+            raise SystemExit(f"the script and the library do not agree: {mine} and {theirs}")
 
 
 def measure() -> dict[str, float]:

@@ -1,0 +1,77 @@
+"""When to compute: at most once a frame, in place, and the kernels' compilation off the window's thread."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from enum import IntEnum
+
+from PySide6.QtCore import QElapsedTimer, QObject, Qt, QThread, QTimer, Signal
+
+FRAME_MS = 16
+
+
+class FrameTimer(QObject):
+    """Runs a function soon, but not twice within a frame; many requests make one run, which sees the newest state."""
+
+    def __init__(self, run: Callable[[], None], parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._run = run
+        self._timer = QTimer(self)
+        self._timer.setSingleShot(True)
+        self._timer.setTimerType(Qt.TimerType.PreciseTimer)
+        self._timer.timeout.connect(self._fire)
+        self._since = QElapsedTimer()
+
+    def request(self) -> None:
+        """Ask for a run."""
+        if not self._timer.isActive():
+            elapsed = self._since.elapsed() if self._since.isValid() else FRAME_MS
+            self._timer.start(max(0, FRAME_MS - elapsed))
+
+    def flush(self) -> None:
+        """Run now if a run is asked for."""
+        if self._timer.isActive():
+            self._timer.stop()
+            self._fire()
+
+    def stop(self) -> None:
+        """Forget what was asked for."""
+        self._timer.stop()
+
+    def _fire(self) -> None:
+        self._since.start()
+        self._run()
+
+
+class Readiness(IntEnum):
+    """What can be computed without waiting for a compiler."""
+
+    NOTHING = 0
+    LOOPS = 1
+    """Gains and margins."""
+    ALL = 2
+    """The time response as well."""
+
+
+class WarmUp(QThread):
+    """Compiles the kernels, the loops' first; connect its signals to objects of the window's thread."""
+
+    reached = Signal(Readiness)
+    failed = Signal(str)
+
+    def __init__(
+        self, compile_loops: Callable[[], None], compile_all: Callable[[], None], parent: QObject | None = None
+    ) -> None:
+        super().__init__(parent)
+        self._steps = ((Readiness.LOOPS, compile_loops), (Readiness.ALL, compile_all))
+
+    def run(self) -> None:
+        """The thread's work."""
+        try:
+            for readiness, step in self._steps:
+                if self.isInterruptionRequested():
+                    return
+                step()
+                self.reached.emit(readiness)
+        except Exception as error:  # noqa: BLE001  (whatever it is, the window has to hear of it)
+            self.failed.emit(f"{type(error).__name__}: {error}")

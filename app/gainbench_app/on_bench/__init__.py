@@ -1,0 +1,1 @@
+"""The left column: what is on the bench."""

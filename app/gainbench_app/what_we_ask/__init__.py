@@ -1,0 +1,1 @@
+"""The right column: what is asked of each loop, and what the findings say."""

@@ -1,0 +1,1 @@
+"""Small parts that the columns share; none of them knows a sheet."""

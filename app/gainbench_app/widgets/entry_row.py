@@ -1,0 +1,100 @@
+"""One entry of the sheet as a row: its name, its box, its tolerance, and why it is refused where it is."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from PySide6.QtCore import QSize, Qt, Signal
+from PySide6.QtWidgets import QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
+
+from gainbench_app.widgets.appearance import Appearance
+from gainbench_app.widgets.choice_box import ChoiceBox
+from gainbench_app.widgets.value_box import ValueBox
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Entry:
+    """One entry, in the words of people."""
+
+    path: str
+    name: str
+    words: tuple[tuple[str, str], ...] = ()
+    """Of a choice: the sheet's word and ours."""
+    default: str = ""
+    """What holds where the sheet is silent, shown grey."""
+    optional: bool = True
+    """Whether an empty box takes the entry out of the sheet."""
+
+
+class _Name(QLabel):
+    """A name that gives way: it is cut with dots before the box is, and says itself whole when pointed at."""
+
+    def minimumSizeHint(self) -> QSize:  # noqa: N802
+        return QSize(40, super().minimumSizeHint().height())
+
+
+class EntryRow(QWidget):
+    """A row of a card."""
+
+    edited = Signal(str, object)
+    """Path, and the text; None where the entry is taken out."""
+
+    def __init__(
+        self, entry: Entry, appearance: Appearance, *, box_width: int = 114, parent: QWidget | None = None
+    ) -> None:
+        super().__init__(parent)
+        self.entry = entry
+        outer = QVBoxLayout(self)
+        outer.setContentsMargins(0, 0, 0, 0)
+        outer.setSpacing(0)
+        line = QHBoxLayout()
+        line.setContentsMargins(0, 0, 0, 0)
+        line.setSpacing(4)
+        name = _Name(entry.name)
+        name.setProperty("role", "muted")
+        name.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
+        name.setToolTip(f"{entry.name}: {entry.path}")
+        line.addWidget(name, 1)
+        self.box: ValueBox | ChoiceBox
+        if entry.words:
+            choice = ChoiceBox(entry.name, entry.words, appearance, quiet=True)
+            choice.chosen.connect(lambda word: self.edited.emit(self.entry.path, word))
+            self.box = choice
+        else:
+            box = ValueBox(entry.name)
+            box.setPlaceholderText(entry.default)
+            box.committed.connect(self._committed)
+            self.box = box
+        self.box.setFixedWidth(box_width)
+        name.setBuddy(self.box)
+        line.addWidget(self.box)
+        self.tolerance = QLabel()
+        self.tolerance.setProperty("role", "small")
+        self.tolerance.setFixedWidth(38)
+        self.tolerance.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
+        line.addWidget(self.tolerance)
+        outer.addLayout(line)
+        self.reason = QLabel()
+        self.reason.setProperty("role", "problem")
+        self.reason.setWordWrap(True)
+        self.reason.setVisible(False)
+        self.reason.setContentsMargins(0, 1, 0, 4)
+        outer.addWidget(self.reason)
+
+    def show_entry(self, text: str | None, problem: str | None, tolerance: str | None) -> None:
+        """Show what the sheet holds, why it is refused, and its plus or minus."""
+        if isinstance(self.box, ChoiceBox):
+            self.box.show_word(text if text is not None else self.entry.default or None)
+        else:
+            self.box.show_text(text or "")
+        self.box.mark(problem or "")
+        if self.reason.text() != (problem or ""):
+            self.reason.setText(problem or "")
+        self.reason.setVisible(bool(problem))
+        shown = f"±{tolerance}" if tolerance else ""
+        if self.tolerance.text() != shown:
+            self.tolerance.setText(shown)
+            self.tolerance.setToolTip(f"tolerance {shown}" if shown else "")
+
+    def _committed(self, text: str) -> None:
+        self.edited.emit(self.entry.path, text if text else None)

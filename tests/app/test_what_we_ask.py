@@ -1,0 +1,202 @@
+import math
+
+import pytest
+from PySide6.QtCore import QPoint, Qt
+
+from gainbench.model import CURRENT_METHODS, SPEED_METHODS, DesignMethod, IntegratorRule
+from gainbench.plant import refer
+from gainbench.results import Level
+from gainbench.sheetfile import parse_sheet
+from gainbench_app.what_we_ask.column import WhatWeAsk
+from gainbench_app.what_we_ask.targets import METHOD_NAMES, targets
+
+RETURN = Qt.Key.Key_Return
+LEFT_BUTTON = Qt.MouseButton.LeftButton
+
+
+@pytest.fixture
+def column(qtbot, desk, appearance):
+    found = WhatWeAsk(desk, appearance)
+    qtbot.addWidget(found)
+    found.resize(280, 900)
+    found.grab()
+    return found
+
+
+def plain(text):
+    return text.replace("\N{NO-BREAK SPACE}", " ")
+
+
+def choose(card, method):
+    card.method.setCurrentIndex(card.method.findData(method.value))
+    card.method.activated.emit(card.method.currentIndex())
+
+
+def test_the_figures_are_those_of_the_assessment(column):
+    assert plain(column.speed.figures.text) == "60.0 Hz 60.0°"
+    assert plain(column.current.figures.text) == "1.00 kHz 60.0°"
+    assert plain(column.speed.others.text) == "gain 17.2 dB sensitivity 1.24"
+    assert plain(column.speed.gains.text) == "Kp 0.4814 A·s/rad Ki 57.63 A/rad"
+
+
+def test_gains_are_in_the_firmwares_form(column, desk):
+    desk.set_values({"aims.firmware.gain_form": "kp-ti", "aims.firmware.speed_unit": "rpm"})
+    desk.compute_now()
+    gains = desk.assessment.speed.gains
+    kp = gains.kp * math.tau / 60.0
+    assert plain(column.speed.gains.text) == f"Kp {kp:.4g} A/rpm Ti {1e3 * gains.kp / gains.ki:.4g} ms"
+
+
+@pytest.mark.parametrize("method", CURRENT_METHODS)
+def test_every_method_of_the_current_loop_can_be_chosen(column, desk, method):
+    choose(column.current, method)
+    desk.compute_now()
+    assert desk.valid
+    assert desk.sheet.aims.current.method is method
+    assert column.current.method.currentText() == METHOD_NAMES[method]
+    assert all(column.current.row(key).box.text() for key in column.current.target_keys)
+
+
+@pytest.mark.parametrize("method", SPEED_METHODS)
+def test_every_method_of_the_speed_loop_can_be_chosen(column, desk, method):
+    choose(column.speed, method)
+    desk.compute_now()
+    assert desk.valid
+    assert desk.sheet.aims.speed.method is method
+    assert column.speed.target_keys[-1] == "reference_weight"
+    for key in column.speed.target_keys:
+        assert column.speed.row(key).slider.isEnabled()
+
+
+def test_a_slider_drag_is_live_and_one_step_of_undo(column, desk, qtbot):
+    row = column.speed.row("crossover")
+    at = QPoint(row.slider.width() // 2, row.slider.height() // 2)
+    qtbot.mousePress(row.slider, LEFT_BUTTON, pos=at)
+    seen = set()
+    for step in range(5):
+        qtbot.mouseMove(row.slider, at - QPoint(6 * step, 0))
+        desk.compute_now()
+        seen.add(desk.assessment.speed.figures.crossover_hz)
+    qtbot.mouseRelease(row.slider, LEFT_BUTTON, pos=at - QPoint(24, 0))
+    assert len(seen) == 5
+    assert row.box.text().endswith(" Hz")
+    assert row.box.text() != "60 Hz"
+    desk.undo()
+    assert row.box.text() == "60 Hz"
+    assert not desk.can_undo
+
+
+def test_the_users_unit_stays(column, desk, qtbot):
+    row = column.current.row("crossover")
+    row.box.setFocus()
+    row.box.selectAll()
+    qtbot.keyClicks(row.box, "6000 rad/s")
+    qtbot.keyClick(row.box, RETURN)
+    assert desk.sheet.aims.current.crossover == pytest.approx(6000.0)
+    row.slider.setFocus()
+    qtbot.keyClick(row.slider, Qt.Key.Key_Right)
+    assert row.box.text() == "6060 rad/s"
+    qtbot.keyClick(row.slider, Qt.Key.Key_Left, Qt.KeyboardModifier.ShiftModifier)
+    assert row.box.text() == "6054 rad/s"
+    qtbot.waitUntil(lambda: desk.can_undo and desk._gesture is None)
+    desk.undo()
+    assert row.box.text() == "6000 rad/s"
+
+
+def test_escape_takes_a_drag_back(column, desk, qtbot):
+    slider = column.speed.row("phase_margin").slider
+    slider.setFocus()
+    qtbot.mousePress(slider, LEFT_BUTTON, pos=QPoint(60, 9))
+    assert column.speed.row("phase_margin").box.text() != "60 deg"
+    qtbot.keyClick(slider, Qt.Key.Key_Escape)
+    assert column.speed.row("phase_margin").box.text() == "60 deg"
+
+
+def test_a_slider_stops_where_no_gains_meet_the_target(column, desk, qtbot):
+    slider = column.speed.row("crossover").slider
+    qtbot.mousePress(slider, LEFT_BUTTON, pos=QPoint(slider.width() - 1, 9))
+    desk.compute_now()
+    qtbot.mouseRelease(slider, LEFT_BUTTON, pos=QPoint(slider.width() - 1, 9))
+    assert desk.assessment.speed.refusal is None
+    assert slider.number == desk.sheet.aims.speed.crossover
+    assert slider.value() < slider.maximum()
+
+
+def test_a_refused_target_is_told(column, desk):
+    desk.set_values({"aims.speed.crossover": "900 Hz"})
+    desk.compute_now()
+    assert column.speed.state.text() == "cannot be met"
+    assert column.speed.mark.level is Level.BREAKS
+    assert column.speed.figures.text == "no gains"
+    assert column.findings.shown[0].level is Level.BREAKS
+
+
+def test_a_wrong_target_is_marked(column, desk, qtbot):
+    row = column.speed.row("phase_margin")
+    row.box.setFocus()
+    row.box.selectAll()
+    qtbot.keyClicks(row.box, "120 deg")
+    qtbot.keyClick(row.box, RETURN)
+    assert row.box.property("wrong") is True
+    assert not row.reason.isHidden()
+    assert "90 deg" in row.reason.text()
+
+
+def test_the_findings_are_those_of_the_assessment(column, desk):
+    assert column.findings.shown == desk.assessment.findings
+    desk.set_values({"duty.reference_ramp": "20000 rpm/s"})
+    desk.compute_now()
+    assert column.findings.shown == desk.assessment.findings
+
+
+def test_the_firmware_can_be_changed(column, desk):
+    box = column.firmware.row("integrator").box
+    box.setCurrentIndex(box.findData("trapezoid"))
+    box.activated.emit(box.currentIndex())
+    assert desk.sheet.aims.firmware.integrator is IntegratorRule.TRAPEZOID
+    assert "trapezoid" in column.firmware.follows.text()
+    feedforward = column.firmware.row("back_emf_feedforward").box
+    feedforward.setCurrentIndex(feedforward.findData("true"))
+    feedforward.activated.emit(feedforward.currentIndex())
+    assert desk.sheet.aims.firmware.back_emf_feedforward is True
+
+
+def test_a_unit_is_no_mark_up(column, desk):
+    desk.set_values({"aims.firmware.speed_unit": "<b>"})
+    assert not desk.valid
+    assert not column.firmware.body.isHidden()
+
+
+@pytest.mark.parametrize(
+    ("loop", "kp", "ki", "factors"),
+    [
+        ("current", "2.66 V/A", "0.234 V/A", (1.0, 5e-5)),
+        ("current", "2.66", "0.234", (1.0, 5e-5)),
+        ("speed", "25 mN*m*s/rad", "57.6 A/rad", (0.052, 1.0)),
+        ("speed", "0.48 A*s/rad", "1.5 mN*m*s/rad", (1.0, 0.052 * 5e-4)),
+    ],
+)
+def test_the_ends_of_a_slider_are_in_what_was_typed(demo_texts, loop, kp, ki, factors):
+    def ends(kp, ki):
+        values = {"aims.firmware.ki_includes_period": True, f"aims.{loop}.method": "by-hand"}
+        text = demo_texts["label-unwinder"]
+        sheet = (
+            parse_sheet(text, "x.bench.toml")
+            .with_values({**values, f"aims.{loop}.kp": kp, f"aims.{loop}.ki": ki})
+            .sheet
+        )
+        return {one.path.rpartition(".")[2]: one for one in targets(loop, sheet, plant=refer(sheet.rig))}
+
+    plain = ends("2 V/A", "4000 V/(A*s)") if loop == "current" else ends("0.4 A*s/rad", "50 A/rad")
+    typed = ends(kp, ki)
+    for key, factor in zip(("kp", "ki"), factors, strict=True):
+        assert typed[key].low == pytest.approx(plain[key].low * factor)
+        assert typed[key].high == pytest.approx(plain[key].high * factor)
+        assert typed[key].low < typed[key].high
+
+
+def test_a_method_without_targets_has_none(demo_texts):
+    document = parse_sheet(demo_texts["label-unwinder"], "x.bench.toml").with_value(
+        "aims.current.method", DesignMethod.MAGNITUDE_OPTIMUM.value
+    )
+    assert targets("current", document.sheet, plant=refer(document.sheet.rig)) == ()
