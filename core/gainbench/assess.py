@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from gainbench.findings import Case, judge
+from gainbench.kernels.code_cache import code_cache
 from gainbench.margins import locked_step, read_loop
 from gainbench.model import (
     Aims,
@@ -26,6 +27,9 @@ from gainbench.results import Finding, LockedStep, LoopAssessment, Response
 from gainbench.sampling import Loop, current_loop, hardware, speed_loop
 from gainbench.simulate import simulate, start_breaks
 from gainbench.tuning import Design, design_current, design_speed
+
+_SLOWEST = ("loop_figures", "response")
+"""The kernels that take longest to compile, and are compiled last."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -127,6 +131,16 @@ def _loop_assessment(design: Design, loop: Loop | None) -> LoopAssessment:
 
 def _stable(loop: LoopAssessment) -> bool:
     return loop.figures is not None and loop.figures.stable
+
+
+def is_compiled() -> bool:
+    """Whether the machine code of the kernels is on disk, so that the first assessment takes no minute.
+
+    Returns
+    -------
+    bool
+    """
+    return all(code_cache(name).is_dir() for name in _SLOWEST)
 
 
 def warm_up(*, simulated: bool = True) -> None:

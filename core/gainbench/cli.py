@@ -1,4 +1,4 @@
-"""The commands: ``assess``, ``handover`` and ``origin``.
+"""The commands: ``assess``, ``contrast``, ``handover`` and ``origin``.
 
 Exit status: 0 done and nothing breaks; 1 done, something breaks; 2 refused, with one message on standard error and
 nothing written.
@@ -15,6 +15,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
+from gainbench.contrast_report import contrast_json, print_contrast
 from gainbench.errors import GainbenchError, HandoverError
 from gainbench.handover import (
     Header,
@@ -34,7 +35,7 @@ if TYPE_CHECKING:
     from rich.console import Console
 
 FLOAT = "float"
-COMMANDS = ("assess", "handover", "origin")
+COMMANDS = ("assess", "contrast", "handover", "origin")
 DONE, BREAKS, REFUSED, INTERRUPTED = 0, 1, 2, 130
 _PLAIN_WIDTH = 100
 """Of text that goes to a file or another program."""
@@ -96,6 +97,40 @@ def assess_command(
     loops. Findings say what holds, what is thin and what breaks, why, and what to try next.
     """
     return show_sheet(read_sheet(sheet), as_json=as_json)
+
+
+@app.command("contrast")
+def contrast_command(
+    sheets: Annotated[list[str], typer.Argument(metavar="SHEET...", help="Bench sheets.", show_default=False)],
+    as_json: Annotated[
+        bool,
+        typer.Option("--json", help="Print JSON for scripts: each tuning's assessment, and its differences."),
+    ] = False,
+) -> int:
+    """Lay tunings side by side: what each sheet's aims give, and what lies on its shelf.
+
+    Every kept tuning is assessed as gains by hand on its own sheet. All figures are held against the first tuning, the
+    one that the first sheet's aims give. Exit status: 1 where something breaks with any of them.
+    """
+    documents = [read_sheet(one) for one in sheets]
+    from gainbench.contrast import contrast, sheet_tunings
+
+    names = [one.name for one in documents]
+    found = contrast(
+        [
+            tuning
+            for path, document in zip(sheets, documents, strict=True)
+            # Sheets of one name in two folders are told apart by their paths.
+            for tuning in sheet_tunings(
+                document.sheet, document.name if names.count(document.name) == 1 else _printable(path)
+            )
+        ]
+    )
+    if as_json:
+        sys.stdout.write(json.dumps(contrast_json(found), indent=2, allow_nan=False) + "\n")
+    else:
+        print_contrast(found, _console())
+    return BREAKS if found.breaks else DONE
 
 
 @app.command("handover")
@@ -253,6 +288,7 @@ def run(arguments: Sequence[str]) -> int:
         reconfigure = getattr(stream, "reconfigure", None)
         if reconfigure is not None:
             reconfigure(errors="backslashreplace")
+    _say_if_slow(arguments)
     try:
         status = typer.main.get_command(app).main(list(arguments), prog_name="gainbench", standalone_mode=False)
         sys.stdout.flush()
@@ -268,6 +304,14 @@ def run(arguments: Sequence[str]) -> int:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return BREAKS
     return status if isinstance(status, int) else DONE
+
+
+def _say_if_slow(arguments: Sequence[str]) -> None:
+    """Tell someone who waits at a terminal what for, once per installation."""
+    from gainbench.assess import is_compiled
+
+    if sys.stderr.isatty() and not {"-h", "--help", "--version"} & set(arguments) and not is_compiled():
+        sys.stderr.write("gainbench: compiling for this machine, once: about a minute\n")
 
 
 def _console() -> Console:

@@ -20,7 +20,7 @@ import control
 import numpy as np
 
 from gainbench.assess import assess, warm_up
-from gainbench.model import Sheet
+from gainbench.model import Duty, Sheet
 from gainbench.plant import Plant, refer
 from gainbench.sheetfile import parse_sheet
 from gainbench_resources import demo_sheet
@@ -153,6 +153,40 @@ def locked(plant: Plant, *, kp: float, ki: float, ts: float) -> Step:
     return Step(rise=levels[0.9] - levels[0.1], overshoot=100.0 * max(top - 1.0, 0.0))
 
 
+def clamp(value: float, limit: float) -> float:
+    """Between minus and plus the limit."""
+    return min(max(value, -limit), limit)
+
+
+def pi_step(kp: float, ki_period: float, integral: float, error: float, limit: float) -> tuple[float, float, bool]:
+    """One step of a backward PI that holds its integral at the clamp: output, integral, whether the clamp acted."""
+    grown = integral + ki_period * error
+    wanted = kp * error + grown
+    output = clamp(wanted, limit)
+    clamped = output != wanted
+    if clamped and error * wanted > 0.0:
+        grown = integral
+    return output, grown, clamped
+
+
+def reference_at(duty: Duty, t: float) -> float:
+    """The speed reference of a duty with a step or a ramp and no stop [rad/s]."""
+    if t < duty.reference_at:
+        return 0.0
+    if duty.reference_ramp == 0.0:
+        return duty.reference_speed
+    return math.copysign(
+        min(abs(duty.reference_speed), duty.reference_ramp * (t - duty.reference_at)), duty.reference_speed
+    )
+
+
+def friction(plant: Plant, speed: float, pull: float) -> float | None:
+    """Coulomb friction against the motion or the motion to come; None where the shaft sticks [N m]."""
+    if speed != 0.0:
+        return math.copysign(plant.coulomb, speed)
+    return None if abs(pull) <= plant.coulomb else math.copysign(plant.coulomb, pull)
+
+
 def respond(
     sheet: Sheet,
     plant: Plant,
@@ -168,62 +202,40 @@ def respond(
     tw = n * ts
     (a11, a12, _), (a21, a22, _), (a31, a32, _) = ad.tolist()
     (b1, d1), (b2, d2), (b3, d3) = bd.tolist()
-    keep, push = math.exp(-plant.resistance / plant.inductance * ts), 0.0
+    keep = math.exp(-plant.resistance / plant.inductance * ts)
     push = (1.0 - keep) / plant.resistance
-    limit_i, limit_v, coulomb, kt = plant.current_limit, plant.voltage_limit, plant.coulomb, plant.torque
-    counts = stage.encoder_counts / math.tau
-    step = duty.load_step / sheet.rig.train.ratio
+    count = math.tau / stage.encoder_counts
     k_ref, k_load = round(duty.reference_at / ts), round(duty.load_time / ts)
     (kp, ki), (kp_w, ki_w) = current, speed
-    ki_ts, ki_tw = ki * ts, ki_w * tw
-    i = w = theta = s = s_w = wanted = voltage = energy = squares = 0.0
-    peak_i = peak_v = 0.0
-    limited_i = limited_v = 0
+    i = w = theta = s = s_w = wanted = voltage = energy = 0.0
     seen_before = 0
-    times, references, speeds, currents, currents_wanted, voltages, flags_i, flags_v = ([] for _ in range(8))
     clamped_i = False
+    times, references, speeds, currents, currents_wanted, voltages, flags_i, flags_v = ([] for _ in range(8))
     for k in range(TICKS):
-        reference = duty.reference_speed if k >= k_ref else 0.0
+        t = k * ts
         if k % n == 0:
-            seen = math.floor(theta * counts + 0.5)
-            measured = (seen - seen_before) / counts / tw
+            reference = reference_at(duty, t + 1e-6 * ts)
+            seen = math.floor(theta / count + 0.5)
+            measured = (seen - seen_before) * count / tw
             seen_before = seen
-            in_force = reference
-            error = reference - measured
-            integral = s_w + ki_tw * error
-            u = kp_w * error + integral
-            wanted = limit_i if u > limit_i else (-limit_i if u < -limit_i else u)
-            clamped_i = wanted != u
-            limited_i += clamped_i
-            if not (clamped_i and error * u > 0.0):
-                s_w = integral
-        error = wanted - i
-        integral = s + ki_ts * error
-        u = kp * error + integral
+            wanted, s_w, clamped_i = pi_step(kp_w, ki_w * tw, s_w, reference - measured, plant.current_limit)
         applied = voltage
-        voltage = limit_v if u > limit_v else (-limit_v if u < -limit_v else u)
-        clamped_v = voltage != u
-        limited_v += clamped_v
-        if not (clamped_v and error * u > 0.0):
-            s = integral
-        times.append(k * ts)
-        references.append(in_force)
+        voltage, s, clamped_v = pi_step(kp, ki * ts, s, wanted - i, plant.voltage_limit)
+        times.append(t)
+        references.append(reference)
         speeds.append(w)
         currents.append(i)
         currents_wanted.append(wanted)
         voltages.append(voltage)
         flags_i.append(clamped_i)
         flags_v.append(clamped_v)
-        squares += i * i
-        peak_i = max(peak_i, abs(i))
-        peak_v = max(peak_v, abs(voltage))
-        load = step if k >= k_load else 0.0
+        load = duty.load_step / sheet.rig.train.ratio if k >= k_load else 0.0
         before = i
-        pull = kt * i - load
-        if w == 0.0 and -coulomb <= pull <= coulomb:
+        drag = friction(plant, w, plant.torque * i - load)
+        if drag is None:
             i = keep * i + push * applied
         else:
-            drag = load + (coulomb if w > 0.0 or (w == 0.0 and pull > 0.0) else -coulomb)
+            drag += load
             turning = w
             i, w, theta = (
                 a11 * i + a12 * w + b1 * applied + d1 * drag,
@@ -232,9 +244,7 @@ def respond(
             )
             if turning * w < 0.0:
                 w = 0.0
-        given = -applied * 0.5 * (before + i) * ts
-        if given > 0.0:
-            energy += given
+        energy += max(-applied * 0.5 * (before + i) * ts, 0.0)
     size = abs(duty.reference_speed)
     stepped, loaded = np.array(speeds[k_ref:k_load]), np.array(speeds[k_load:])
     off = np.flatnonzero(np.abs(stepped - duty.reference_speed) > 0.02 * size)
@@ -246,11 +256,11 @@ def respond(
         settling=float(off[-1]) * ts if off.size else 0.0,
         dip=float(np.max(np.abs(loaded - duty.reference_speed))),
         recovery=float(off_load[-1]) * ts if off_load.size else 0.0,
-        peak_current=peak_i,
-        rms_current=math.sqrt(squares / TICKS),
-        peak_voltage=peak_v,
-        current_limited=limited_i * tw,
-        voltage_limited=limited_v * ts,
+        peak_current=max(map(abs, currents)),
+        rms_current=math.sqrt(sum(one * one for one in currents) / TICKS),
+        peak_voltage=max(map(abs, voltages)),
+        current_limited=sum(flags_i[::n]) * tw,
+        voltage_limited=sum(flags_v) * ts,
         returned_energy=energy,
     )
 

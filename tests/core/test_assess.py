@@ -9,7 +9,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from gainbench.assess import assess, warm_up
+from gainbench.assess import assess, is_compiled, warm_up
 from gainbench.model import DesignMethod, HandGains, LoopAims, SpeedAims
 from gainbench.results import Level
 from gainbench.sheetfile import parse_sheet
@@ -120,5 +120,8 @@ def test_a_load_beyond_the_limits_breaks_without_a_response():
     assert any(one.level is Level.BREAKS for one in result.findings)
 
 
-def test_warm_up_compiles_everything():
+def test_warm_up_leaves_its_code_on_disk(monkeypatch, tmp_path):
     warm_up()
+    assert is_compiled()
+    monkeypatch.setenv("NUMBA_CACHE_DIR", str(tmp_path))
+    assert not is_compiled()

@@ -98,14 +98,12 @@ def inverse(value: complex) -> complex:
     return complex(value.real * size, -value.imag * size)
 
 
-@compiled
-def plant_at(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> complex:
-    """Measured value over controller output at one frequency; ``plant.m`` is upper Hessenberg."""
+@inlined
+def plant_turned(plant: SampledPlant, half: float, level: float, work: NDArray[np.complex128]) -> complex:
+    """Measured value over controller output, ``plant.m`` upper Hessenberg; sine and cosine of w T/2 tell where."""
     n = plant.m.shape[0]
-    angle = w * plant.period
-    half = math.sin(0.5 * angle)
-    delta = complex(-2.0 * half * half, math.sin(angle))
-    back = complex(math.cos(angle), -math.sin(angle))
+    delta = complex(-2.0 * half * half, 2.0 * half * level)
+    back = complex(1.0 + delta.real, -delta.imag)
     fed = plant.dw != 0.0
     for r in range(n):
         if plant.bw[r] != 0.0:
@@ -154,12 +152,12 @@ def plant_at(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> com
     ahead = complex(plant.scale, 0.0)
     if plant.window > 1:
         # Sum of z^-i over the window: a ratio of sines with half the window's delay.
-        ratio = math.sin(0.5 * angle * plant.window) / half
-        lag = -0.5 * angle * (plant.window - 1)
+        turn = math.atan2(half, level)
+        ratio = math.sin(turn * plant.window) / half
+        lag = -turn * (plant.window - 1)
         ahead *= ratio * complex(math.cos(lag), math.sin(lag))
-    if plant.shift > 0:
-        lag = -angle * plant.shift
-        ahead *= complex(math.cos(lag), math.sin(lag))
+    for _ in range(plant.shift):
+        ahead *= back
     if plant.filter_gain != 1.0:
         ahead *= plant.filter_gain * inverse(1.0 - (1.0 - plant.filter_gain) * back)
     if fed:
@@ -168,21 +166,41 @@ def plant_at(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> com
 
 
 @compiled
-def integral_at(w: float, period: float, rule: int) -> complex:
+def plant_at(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> complex:
+    """Measured value over controller output at one frequency; ``plant.m`` is upper Hessenberg."""
+    turn = 0.5 * w * plant.period
+    return plant_turned(plant, math.sin(turn), math.cos(turn), work)
+
+
+@inlined
+def integral_turned(half: float, level: float, rule: int) -> complex:
     """Integral part over error for Ki T = 1: backward (1 + d)/d, forward 1/d, trapezoid (2 + d)/(2 d), d = z - 1."""
     # 1/(z - 1) = -1/2 - j/2 cot(w T/2), exactly.
-    turn = -0.5 / math.tan(0.5 * w * period)
-    if rule == BACKWARD:
-        return complex(0.5, turn)
-    if rule == FORWARD:
-        return complex(-0.5, turn)
-    return complex(0.0, turn)
+    share = 0.5 if rule == BACKWARD else (-0.5 if rule == FORWARD else 0.0)
+    return complex(share, -0.5 * level / half)
+
+
+@compiled
+def integral_at(w: float, period: float, rule: int) -> complex:
+    """Integral part over error for Ki T = 1 at one frequency."""
+    turn = 0.5 * w * period
+    return integral_turned(math.sin(turn), math.cos(turn), rule)
 
 
 @compiled
 def pi_at(kp: float, ki_period: float, rule: int, w: float, period: float) -> complex:
     """The PI controller at one frequency."""
     return kp + ki_period * integral_at(w, period, rule)
+
+
+@compiled
+def loop_at(
+    plant: SampledPlant, kp: float, ki_period: float, rule: int, w: float, work: NDArray[np.complex128]
+) -> complex:
+    """The open loop at one frequency; ``plant.m`` is upper Hessenberg."""
+    turn = 0.5 * w * plant.period
+    half, level = math.sin(turn), math.cos(turn)
+    return plant_turned(plant, half, level, work) * (kp + ki_period * integral_turned(half, level, rule))
 
 
 @compiled

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gainbench.kernels.compiled import compiled
-from gainbench.kernels.frequency import pi_at, plant_at, workspace
+from gainbench.kernels.frequency import loop_at, workspace
 from gainbench.kernels.loop_records import SampledPlant
 
 TURN = 0.3
@@ -46,7 +46,6 @@ def trace_loop(
     ``plant`` as :func:`gainbench.kernels.frequency.hessenberg` leaves it.
     """
     work = workspace(plant)
-    period = plant.period
     room = 4 * w.size
     frequency = np.empty(room)
     loop = np.empty(room, dtype=np.complex128)
@@ -55,11 +54,11 @@ def trace_loop(
     waiting_l = np.empty(HALVINGS + 2, dtype=np.complex128)
     depth = np.empty(HALVINGS + 2, dtype=np.int64)
     frequency[0] = w[0]
-    loop[0] = plant_at(plant, w[0], work) * pi_at(kp, ki_period, rule, w[0], period)
+    loop[0] = loop_at(plant, kp, ki_period, rule, w[0], work)
     count = 1
     for k in range(1, w.size):
         waiting_w[0] = w[k]
-        waiting_l[0] = plant_at(plant, w[k], work) * pi_at(kp, ki_period, rule, w[k], period)
+        waiting_l[0] = loop_at(plant, kp, ki_period, rule, w[k], work)
         depth[0] = 0
         top = 0
         while top >= 0:
@@ -70,7 +69,7 @@ def trace_loop(
                 depth[top] += 1
                 depth[top + 1] = depth[top]
                 waiting_w[top + 1] = middle
-                waiting_l[top + 1] = plant_at(plant, middle, work) * pi_at(kp, ki_period, rule, middle, period)
+                waiting_l[top + 1] = loop_at(plant, kp, ki_period, rule, middle, work)
                 top += 1
             else:
                 frequency[count] = waiting_w[top]

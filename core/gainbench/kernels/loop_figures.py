@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gainbench.kernels.compiled import compiled
-from gainbench.kernels.frequency import hessenberg, pi_at, plant_at, workspace
+from gainbench.kernels.frequency import hessenberg, loop_at, workspace
 from gainbench.kernels.loop_curve import trace_loop
 from gainbench.kernels.loop_records import LoopNumbers, SampledPlant
 
@@ -44,14 +44,6 @@ def measure(kind: int, loop: complex) -> float:
     if kind == CLOSED:
         return (2.0 * square - distance) / (2.0 * square + distance)
     return -distance
-
-
-@compiled
-def loop_at(
-    plant: SampledPlant, kp: float, ki_period: float, rule: int, w: float, work: NDArray[np.complex128]
-) -> complex:
-    """L at one frequency."""
-    return plant_at(plant, w, work) * pi_at(kp, ki_period, rule, w, plant.period)
 
 
 @compiled

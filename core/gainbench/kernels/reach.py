@@ -27,6 +27,9 @@ BESIDE = 1e-6
 WIDE = 0.25
 """Crossings this far outside the margins looked at are not refined [rad]."""
 NARROW = 1e-13
+CLEAR = 0.3
+"""Points of the edge are clear of the ellipse where they are this share of its square inside or outside."""
+HALVINGS = 40
 LARGEST = 0.5 * math.pi
 """Margins are looked at from 0 to this [rad]."""
 
@@ -193,16 +196,10 @@ def seen_from(plant: SampledPlant, edge: Edge, ellipse: Ellipse, work: NDArray[n
 
 @compiled
 def may_matter(ellipse: Ellipse, walk: Walk, k: int, low: float, high: float) -> bool:
-    """Whether a crossing before point ``k`` may lie in the span; the straight line tells where it is far from it."""
-    if k in (walk.crossover, walk.crossover + 2):
-        return True
-    share = walk.gap[k - 1] / (walk.gap[k - 1] - walk.gap[k])
-    guess = margin_at(
-        ellipse,
-        walk.x[k - 1] + share * (walk.x[k] - walk.x[k - 1]),
-        walk.y[k - 1] + share * (walk.y[k] - walk.y[k - 1]),
-    )
-    return low - WIDE < guess < high + WIDE
+    """Whether a crossing before point ``k`` may lie in the span: not where both points are well to one side of it."""
+    one = margin_at(ellipse, walk.x[k - 1], walk.y[k - 1])
+    two = margin_at(ellipse, walk.x[k], walk.y[k])
+    return abs(one - two) > LARGEST or (max(one, two) > low - WIDE and min(one, two) < high + WIDE)
 
 
 @compiled
@@ -287,9 +284,11 @@ def outside_at(plant: SampledPlant, edge: Edge, ellipse: Ellipse, margin: float,
             first = beyond(ellipse, edge.x[k - 1], edge.y[k - 1])
             second = beyond(ellipse, edge.x[k], edge.y[k])
             between = beyond(ellipse, at_x, at_y)
-            if not (first < 0.0 and second < 0.0) and between < 0.3 * ellipse.square:
+            inside = max(first, second) < -CLEAR * ellipse.square
+            clear = min(first, second, between) > CLEAR * ellipse.square
+            if not (inside or clear):
                 low, high = edge.w[k - 1], edge.w[k]
-                for _ in range(50):
+                for _ in range(HALVINGS):
                     middle = 0.5 * (low + high)
                     at_x, at_y = edge_point(plant, middle, work)
                     if (at_x * y - at_y * x > 0.0) == (before > 0.0):

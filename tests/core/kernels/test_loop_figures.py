@@ -7,14 +7,13 @@ import math
 import numpy as np
 import pytest
 
-from gainbench.kernels.frequency import hessenberg, workspace
+from gainbench.kernels.frequency import hessenberg, loop_at, workspace
 from gainbench.kernels.loop_figures import (
     ACROSS,
     CLOSED,
     SENSITIVITY,
     SIZE,
     first_fall,
-    loop_at,
     loop_numbers,
     measure,
     root,
