@@ -105,6 +105,45 @@ def test_refused_targets_are_assessed_and_not_handed_over(call, bench):
     assert not (bench / "out").exists()
 
 
+def test_contrast_lays_sheets_and_shelves_side_by_side(bench):
+    names = ("label-unwinder.bench.toml", "sieve-drum.bench.toml")
+    done = run_program("contrast", *names, folder=bench)
+    assert (done.returncode, done.stderr) == (0, "")
+    lines = done.stdout.splitlines()
+    assert not [line for line in lines if line != line.rstrip() or len(line) > 100]
+    for name in ("label-unwinder.bench.toml, as designed", 'label-unwinder.bench.toml, kept "first light"'):
+        assert name in done.stdout
+    assert re.search(r"^  phase margin +60\.00 deg +59\.99 deg +60\.00 deg$", done.stdout, re.MULTILINE)
+    done = run_program("contrast", *names, "--json", folder=bench)
+    assert (done.returncode, done.stderr) == (0, "")
+    told = json.loads(done.stdout)
+    assert (told["format"], told["reference"]) == (1, 0)
+    assert [(one["sheet"], one["tuning"]) for one in told["tunings"]] == [
+        (names[0], None),
+        (names[0], "first light"),
+        (names[1], None),
+    ]
+    assert told["tunings"][1]["speed"]["kp"] == 0.481
+    assert told["tunings"][0]["difference"]["speed"]["kp"] == 0.0
+
+
+def test_contrast_is_status_one_where_any_tuning_breaks(call, bench):
+    name = edited(bench, "wild.bench.toml", 'kp = "0.481 A*s/rad"', 'kp = "48.1 A*s/rad"')
+    status, out, err = call("contrast", "label-unwinder.bench.toml", name)
+    assert (status, err) == (1, "")
+    assert 'x breaks  wild.bench.toml, kept "first light"' in out
+    assert call("contrast", "label-unwinder.bench.toml")[0] == 0
+
+
+def test_contrast_tells_sheets_of_one_name_apart(call, bench):
+    (bench / "old").mkdir()
+    name = "label-unwinder.bench.toml"
+    (bench / "old" / name).write_text((bench / name).read_text(encoding="utf-8"), encoding="utf-8")
+    status, out, _ = call("contrast", name, f"old/{name}", "--json")
+    assert status == 0
+    assert [one["sheet"] for one in json.loads(out)["tunings"]] == [name, name, f"old/{name}", f"old/{name}"]
+
+
 def test_handover_writes_one_header(bench):
     done = run_program("handover", "label-unwinder.bench.toml", "--to", "out", "--arithmetic", "float", folder=bench)
     assert (done.returncode, done.stderr) == (0, "")
@@ -214,7 +253,13 @@ def test_origin_of_a_tuning_that_is_gone(call, bench):
 def test_wrong_sheets_are_refused_by_every_command(call, bench, old, new, says):
     name = edited(bench, "wrong.bench.toml", old, new)
     before = sorted(os.listdir(bench))
-    for words in (("assess", name), ("assess", name, "--json"), ("handover", name, "--to", "out")):
+    good = "label-unwinder.bench.toml"
+    for words in (
+        ("assess", name),
+        ("assess", name, "--json"),
+        ("contrast", good, name),
+        ("handover", name, "--to", "out"),
+    ):
         status, out, err = call(*words)
         assert (status, out) == (2, "")
         assert err.startswith("gainbench: wrong.bench.toml: ")
@@ -251,6 +296,9 @@ def test_files_that_are_no_sheets_are_refused(call, bench, content, says):
         (("assess",), "SHEET"),
         (("assess", "a", "b"), "b"),
         (("assess", "label-unwinder.bench.toml", "--xml"), "--xml"),
+        (("contrast",), "SHEET"),
+        (("contrast", "label-unwinder.bench.toml", "none.bench.toml"), "no such file"),
+        (("contrast", "label-unwinder.bench.toml", "--xml"), "--xml"),
         (("handover", "label-unwinder.bench.toml"), "--to"),
         (("handover", "label-unwinder.bench.toml", "--to", "no/such"), "no folder"),
         (("handover", "label-unwinder.bench.toml", "--to", ""), "folder"),
@@ -286,9 +334,9 @@ def test_a_title_of_other_letters_is_printed_where_it_cannot_be_shown(bench):
 def test_help_teaches_the_commands(call):
     status, out, _ = call("--help")
     assert status == 0
-    for word in ("assess", "handover", "origin", "NAME.bench.toml", "Exit status"):
+    for word in ("assess", "contrast", "handover", "origin", "NAME.bench.toml", "Exit status"):
         assert word in out
-    for word in ("contrast", "identify", "fixed"):
+    for word in ("identify", "fixed"):
         assert word not in out
     assert "bench procedure" in " ".join(call("handover", "--help")[1].split())
 

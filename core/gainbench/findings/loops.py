@@ -8,6 +8,7 @@ from collections.abc import Iterator
 from gainbench.findings import thresholds
 from gainbench.findings.case import Case, LoopName
 from gainbench.findings.crossings import crossings
+from gainbench.findings.ledger import costliest, costliest_lag
 from gainbench.findings.numbers import amount, decibels, degrees, digits, hertz
 from gainbench.model import DesignMethod, LoopAims
 from gainbench.results import Finding, Level, LoopAssessment, LoopCurve, LoopFigures, Refusal
@@ -63,8 +64,16 @@ def _refused(case: Case, name: LoopName, refusal: Refusal | None) -> Finding:
         subject=name,
         title=f"The {name} loop cannot be had with {_asked(aims)}",
         reason=refusal.reason if refusal is not None and refusal.reason else "no positive gains give a stable loop",
-        advice=_nearest(aims, refusal),
+        advice=_nearest(aims, refusal) + _less_lag(case, name, aims),
     )
+
+
+def _less_lag(case: Case, name: LoopName, aims: LoopAims) -> str:
+    """What would leave more phase to a target that lag stands in the way of; empty where it is something else."""
+    if aims.method is not DesignMethod.CROSSOVER_MARGIN or aims.phase_margin is None:
+        return ""
+    cost = costliest_lag(case, name, margin=aims.phase_margin)
+    return "" if cost is None else f"; {cost.reason}: {cost.advice}"
 
 
 def _asked(aims: LoopAims) -> str:
@@ -137,13 +146,15 @@ def _thin_margins(case: Case, name: LoopName, figures: LoopFigures) -> Iterator[
     margin, gain, reduction = figures.phase_margin_deg, figures.gain_margin_db, figures.gain_reduction_db
     thin_phase = margin is not None and margin < thresholds.PHASE_MARGIN_DEG
     if margin is not None and thin_phase:
+        cost = costliest(case, name)
         yield _thin(
             name,
             "phase-margin",
             title=f"The {name} loop's phase margin is {degrees(margin)}",
             reason=f"below {degrees(thresholds.PHASE_MARGIN_DEG)} it rings, and parts that differ from the sheet "
-            f"can take what is left{_sensitivity(figures)}",
-            advice=f"Ask for more margin or a lower crossover{than}",
+            f"can take what is left{_sensitivity(figures)}" + (f"; {cost.reason}" if cost is not None else ""),
+            advice=f"Ask for more margin or a lower crossover{than}"
+            + (f"; {cost.advice}" if cost is not None and cost.advice else ""),
         )
     thin_gain = gain is not None and gain < thresholds.GAIN_MARGIN_DB
     if gain is not None and thin_gain:

@@ -1,11 +1,10 @@
-"""The sheet that a kept tuning is assessed on: its gains by hand, all else as it is."""
+"""The kept tuning of a name, on its sheet."""
 
 from __future__ import annotations
 
-from dataclasses import replace
-
 from gainbench.errors import HandoverError
-from gainbench.model import DesignMethod, Sheet
+from gainbench.kept import with_kept
+from gainbench.model import Sheet
 
 
 def kept_sheet(sheet: Sheet, name: str) -> Sheet:
@@ -33,9 +32,4 @@ def kept_sheet(sheet: Sheet, name: str) -> Sheet:
         names = ", ".join(f'"{one.name}"' for one in sheet.kept)
         held = f"it holds {names}" if names else "it is empty"
         raise HandoverError(f'the shelf holds no tuning "{name}"; {held}')
-    aims = replace(
-        sheet.aims,
-        current=replace(sheet.aims.current, method=DesignMethod.BY_HAND, hand=kept.current),
-        speed=replace(sheet.aims.speed, method=DesignMethod.BY_HAND, hand=kept.speed),
-    )
-    return replace(sheet, aims=aims)
+    return with_kept(sheet, kept)

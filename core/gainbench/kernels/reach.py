@@ -20,7 +20,7 @@ from gainbench.kernels.lifting import BACKWARD, FORWARD
 from gainbench.kernels.loop_records import SampledPlant
 from gainbench.kernels.stability_edge import Edge, needed, slope
 
-PIECES = 16
+PIECES = 24
 """Most pieces of one crossover; of more the widest are kept."""
 BESIDE = 1e-6
 """How near the crossover itself, as a share, the edge is left alone: it crosses there by definition, at margin 0."""
@@ -182,14 +182,14 @@ def seen_from(plant: SampledPlant, edge: Edge, ellipse: Ellipse, work: NDArray[n
     while above < size and edge.w[above] <= last:
         above += 1
     shift = below + 2 - above
-    w, x, y = np.empty(size + shift), np.empty(size + shift), np.empty(size + shift)
-    w[:below], x[:below], y[:below] = edge.w[:below], edge.x[:below], edge.y[:below]
-    w[below + 2 :], x[below + 2 :], y[below + 2 :] = edge.w[above:], edge.x[above:], edge.y[above:]
-    w[below], w[below + 1] = first, last
-    x[below], y[below] = edge_point(plant, first, work)
-    x[below + 1], y[below + 1] = edge_point(plant, last, work)
-    gaps = np.empty(w.size)
+    w, x, y, gaps = (np.empty(size + shift), np.empty(size + shift), np.empty(size + shift), np.empty(size + shift))
     for k in range(w.size):
+        if k < below or k > below + 1:
+            source = k if k < below else k - shift
+            w[k], x[k], y[k] = edge.w[source], edge.x[source], edge.y[source]
+        else:
+            w[k] = first if k == below else last
+            x[k], y[k] = edge_point(plant, w[k], work)
         gaps[k] = beyond(ellipse, x[k], y[k]) / (w[k] - ellipse.w)
     return Walk(w, x, y, gaps, below)
 
@@ -213,10 +213,21 @@ def hides_pair(walk: Walk, k: int) -> bool:
 
 
 @compiled
+def put_in(margin: NDArray[np.float64], change: NDArray[np.int64], count: int, place: float, by: int) -> int:
+    """Put a crossing in its place among the first ``count``, and say how many there are now."""
+    k = count
+    while k > 0 and margin[k - 1] > place:
+        margin[k], change[k] = margin[k - 1], change[k - 1]
+        k -= 1
+    margin[k], change[k] = place, by
+    return count + 1
+
+
+@compiled
 def crossings_of(
     plant: SampledPlant, edge: Edge, ellipse: Ellipse, low: float, high: float, work: NDArray[np.complex128]
 ) -> Crossings:
-    """Where the edge crosses the ellipse between two margins, in the order found."""
+    """Where the edge crosses the ellipse between two margins, in rising order."""
     walk = seen_from(plant, edge, ellipse, work)
     size = walk.w.size
     margin = np.empty(2 * size + 1)
@@ -254,14 +265,12 @@ def crossings_of(
             place = margin_at(ellipse, x, y)
             if low < place < high:
                 # Below the crossover the gap's sign is turned round.
-                margin[count], change[count] = place, -2 if rises == (found > ellipse.w) else 2
-                count += 1
+                count = put_in(margin, change, count, place, -2 if rises == (found > ellipse.w) else 2)
     if abs(edge.last) < math.sqrt(ellipse.square):
         y = -math.sqrt(ellipse.square - edge.last * edge.last) / ellipse.slope
         place = margin_at(ellipse, edge.last, y)
         if low < place < high:
-            margin[count], change[count] = place, 1 if y < edge.y[edge.w.size - 1] else -1
-            count += 1
+            count = put_in(margin, change, count, place, 1 if y < edge.y[edge.w.size - 1] else -1)
     return Crossings(margin[:count].copy(), change[:count].copy())
 
 
@@ -328,12 +337,11 @@ def reach(
         if not low < high:
             continue
         found = crossings_of(plant, edge, ellipse, low, high, work)
-        order = np.argsort(found.margin)
-        count = order.size + 1
+        count = found.margin.size + 1
         ends = np.empty(count + 1)
         ends[0], ends[count] = low, high
-        for k in range(order.size):
-            ends[k + 1] = found.margin[order[k]]
+        for k in range(1, count):
+            ends[k] = found.margin[k - 1]
         widest = 0
         for k in range(count):
             if ends[k + 1] - ends[k] > ends[widest + 1] - ends[widest]:
@@ -341,15 +349,20 @@ def reach(
         poles = np.empty(count, dtype=np.int64)
         poles[widest] = outside_at(plant, edge, ellipse, 0.5 * (ends[widest] + ends[widest + 1]), work)
         for k in range(widest + 1, count):
-            poles[k] = poles[k - 1] + found.change[order[k - 1]]
+            poles[k] = poles[k - 1] + found.change[k - 1]
         for k in range(widest - 1, -1, -1):
-            poles[k] = poles[k + 1] - found.change[order[k]]
-        width = ends[1:] - ends[:-1]
-        least = np.sort(width)[max(count - PIECES, 0)]
-        kept = 0
+            poles[k] = poles[k + 1] - found.change[k]
+        kept = np.ones(count, dtype=np.bool_)
+        for _ in range(count - PIECES):
+            narrowest = -1
+            for k in range(count):
+                if kept[k] and (narrowest < 0 or ends[k + 1] - ends[k] < ends[narrowest + 1] - ends[narrowest]):
+                    narrowest = k
+            kept[narrowest] = False
+        place = 0
         for k in range(count):
-            if width[k] >= least and kept < PIECES:
-                span[column, kept, 0], span[column, kept, 1] = ends[k], ends[k + 1]
-                outside[column, kept] = poles[k]
-                kept += 1
+            if kept[k]:
+                span[column, place, 0], span[column, place, 1] = ends[k], ends[k + 1]
+                outside[column, place] = poles[k]
+                place += 1
     return span, outside
