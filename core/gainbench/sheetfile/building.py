@@ -4,12 +4,27 @@ from __future__ import annotations
 
 from typing import Any
 
-from gainbench.model import Aims, Duty, Firmware, HandGains, KeptTuning, LoopAims, Machine, SpeedAims, Stage, Train
+from gainbench.model import (
+    Aims,
+    Duty,
+    EvidenceLog,
+    Firmware,
+    HandGains,
+    KeptTuning,
+    LogColumn,
+    LoopAims,
+    Machine,
+    SignalName,
+    SpeedAims,
+    Stage,
+    Train,
+)
 from gainbench.sheetfile.rules import gain_has_period
 from gainbench.sheetfile.tables import (
     CurrentGainsTable,
     CurrentLoopTable,
     DutyTable,
+    EvidenceTable,
     FirmwareTable,
     KeptTable,
     MachineTable,
@@ -93,3 +108,14 @@ def kept(table: KeptTable, firmware: FirmwareTable) -> KeptTuning | None:
     if current is None or speed is None:
         return None
     return KeptTuning(name=table.name, current=current, speed=speed, note=table.note)
+
+
+def evidence(table: EvidenceTable) -> EvidenceLog:
+    """One log of the sheet, its columns in the order of the format."""
+    given = ((signal, getattr(table.columns, signal)) for signal in SignalName)
+    columns = (
+        LogColumn(signal=signal, column=one.column, unit=one.unit, scale=one.scale)
+        for signal, one in given
+        if one is not None
+    )
+    return EvidenceLog(log=table.log, experiment=table.experiment, columns=tuple(columns), note=table.note)

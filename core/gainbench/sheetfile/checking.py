@@ -8,7 +8,7 @@ from typing import TypeVar
 from pydantic import ValidationError
 
 from gainbench.errors import SheetProblem
-from gainbench.model import DesignMethod, Rig, Sheet, Tolerance
+from gainbench.model import DesignMethod, EvidenceLog, Rig, Sheet, Tolerance
 from gainbench.sheetfile import building, rules
 from gainbench.sheetfile.entries import EntryError, shown
 from gainbench.sheetfile.problems import (
@@ -94,7 +94,7 @@ def check(data: Raw, *, default_title: str) -> tuple[Sheet | None, list[SheetPro
             used = loop.method is DesignMethod.BY_HAND
             problems += rules.gain_values(path, loop, firmware, raw[path], used=used)
     kept = _kept(data, firmware, problems)
-    _evidence(data, problems)
+    evidence = _evidence(data, problems)
     rig = None
     if machine is not None and train is not None and stage is not None:
         rig = Rig(machine=building.machine(machine), train=building.train(train), stage=building.stage(stage))
@@ -110,6 +110,7 @@ def check(data: Raw, *, default_title: str) -> tuple[Sheet | None, list[SheetPro
             duty=building.duty(duty),
             tolerances=tolerances,
             kept=tuple(one for one in tunings if one is not None),
+            evidence=evidence,
         ),
         [],
     )
@@ -244,13 +245,16 @@ def _kept(data: Raw, firmware: FirmwareTable | None, problems: list[SheetProblem
     return found
 
 
-def _evidence(data: Raw, problems: list[SheetProblem]) -> None:
+def _evidence(data: Raw, problems: list[SheetProblem]) -> tuple[EvidenceLog, ...]:
+    found: list[EvidenceLog] = []
     for index, raw in enumerate(_list(data, "evidence", problems)):
         if len(problems) > MOST_OF_A_KIND:
             break
         table = _validated(EvidenceTable, f"evidence[{index}]", raw, problems)
         if table is not None:
             problems += rules.evidence_values(index, table)
+            found.append(building.evidence(table))
+    return tuple(found)
 
 
 def _tolerances(data: Raw, rig: Rig | None, problems: list[SheetProblem]) -> tuple[Tolerance, ...]:

@@ -32,7 +32,7 @@ def digest(content: Sheet | SheetDocument | str) -> str:
     SheetError
         If a text is no sheet.
     """
-    return _hashed({key: value for key, value in _content(content).items() if key != "title"})
+    return _hashed({key: value for key, value in _content(content).items() if key not in {"title", "evidence"}})
 
 
 def assessed_digest(content: Sheet | SheetDocument | str) -> str:

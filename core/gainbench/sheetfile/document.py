@@ -11,7 +11,7 @@ from collections.abc import Mapping, Sequence
 from pathlib import Path
 
 from gainbench.errors import SheetError, SheetProblem
-from gainbench.model import Sheet
+from gainbench.model import EvidenceLog, LogColumn, Sheet
 from gainbench.results import Gains
 from gainbench.sheetfile import editing
 from gainbench.sheetfile.checking import check
@@ -44,12 +44,6 @@ class SheetDocument:
     def name(self) -> str:
         """The file's name, for messages."""
         return self._name
-
-    @property
-    def evidence(self) -> tuple[Mapping[str, object], ...]:
-        """The [[evidence]] tables as plain values; their shape was checked."""
-        found = self._data.get("evidence", [])
-        return tuple(found) if isinstance(found, list) else ()
 
     def text(self) -> str:
         """The whole sheet as TOML, comments included."""
@@ -205,7 +199,8 @@ def add_kept(document: SheetDocument, name: str, *, current: Gains, speed: Gains
     }
     if note:
         entry["note"] = note
-    return parse_sheet(editing.with_kept(document.text(), entry, name=document.name), document.name)
+    text = editing.with_listed(document.text(), "kept", entry=entry, name=document.name)
+    return parse_sheet(text, document.name)
 
 
 def remove_kept(document: SheetDocument, name: str) -> SheetDocument:
@@ -231,5 +226,98 @@ def remove_kept(document: SheetDocument, name: str) -> SheetDocument:
     names = [kept.name for kept in document.sheet.kept]
     if name not in names:
         raise SheetError(f'{document.name}: the shelf holds no tuning "{name}"')
-    text = editing.without_kept(document.text(), names.index(name), name=document.name)
+    text = editing.without_listed(document.text(), "kept", index=names.index(name), name=document.name)
+    return parse_sheet(text, document.name)
+
+
+def move_kept(document: SheetDocument, name: str, *, to: int) -> SheetDocument:
+    """Put a tuning at another place on the shelf.
+
+    Parameters
+    ----------
+    document : SheetDocument
+        The sheet.
+    name : str
+        The kept tuning's name.
+    to : int
+        Its new place, from 0.
+
+    Returns
+    -------
+    SheetDocument
+        A new document; every tuning keeps its spelling and comments.
+
+    Raises
+    ------
+    SheetError
+        If the shelf holds no tuning of that name, or has no such place.
+    """
+    names = [kept.name for kept in document.sheet.kept]
+    if name not in names:
+        raise SheetError(f'{document.name}: the shelf holds no tuning "{name}"')
+    if not 0 <= to < len(names):
+        raise SheetError(f"{document.name}: the shelf has no place {to + 1}; it has {len(names)}")
+    text = editing.with_moved(document.text(), "kept", index=names.index(name), to=to, name=document.name)
+    return parse_sheet(text, document.name)
+
+
+def add_evidence(document: SheetDocument, evidence: EvidenceLog) -> SheetDocument:
+    """Put a log with its mapping of columns into the sheet, behind those that are there.
+
+    Parameters
+    ----------
+    document : SheetDocument
+        The sheet.
+    evidence : EvidenceLog
+        The log's path relative to the sheet, its experiment and its columns.
+
+    Returns
+    -------
+    SheetDocument
+        A new document with one more log.
+
+    Raises
+    ------
+    SheetError
+        If the log is refused: no columns, or a unit that is not one of the signal.
+    """
+    if len({one.signal for one in evidence.columns}) < len(evidence.columns):
+        raise SheetError(f"{document.name}: {evidence.log}: a signal is mapped to more than one column")
+    entry: dict[str, object] = {"log": evidence.log, "experiment": evidence.experiment.value}
+    if evidence.note:
+        entry["note"] = evidence.note
+    entry["columns"] = {one.signal.value: _column(one) for one in evidence.columns}
+    text = editing.with_listed(document.text(), "evidence", entry=entry, inner=True, name=document.name)
+    return parse_sheet(text, document.name)
+
+
+def _column(one: LogColumn) -> dict[str, object]:
+    scale: dict[str, object] = {} if one.scale == 1.0 else {"scale": one.scale}
+    return {"column": one.column, "unit": one.unit} | scale
+
+
+def remove_evidence(document: SheetDocument, index: int) -> SheetDocument:
+    """Take a log out of the sheet; its file stays where it is.
+
+    Parameters
+    ----------
+    document : SheetDocument
+        The sheet.
+    index : int
+        Place of the log in ``document.sheet.evidence``, from 0.
+
+    Returns
+    -------
+    SheetDocument
+        A new document without it.
+
+    Raises
+    ------
+    SheetError
+        If the sheet holds no log at that place.
+    """
+    count = len(document.sheet.evidence)
+    if not 0 <= index < count:
+        raise SheetError(f"{document.name}: the sheet holds no log {index + 1}; it holds {count}")
+    text = editing.without_listed(document.text(), "evidence", index=index, name=document.name)
     return parse_sheet(text, document.name)

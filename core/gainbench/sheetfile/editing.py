@@ -16,6 +16,8 @@ from gainbench.units import Dimension
 
 _PART = re.compile(r'\.?(?:"(?P<quoted>[^"]*)"|(?P<bare>[^.\[\]"]+))|\[(?P<index>\d{1,6})\]')
 
+_LIST_WORDS = {"kept": "the shelf", "evidence": "the list of logs"}
+
 Key = str | int
 
 
@@ -94,49 +96,87 @@ def with_values(text: str, values: Mapping[str, str | int | float | bool | None]
     return result
 
 
-def with_kept(text: str, entry: Mapping[str, object], *, name: str) -> str:
-    """The text with one more [[kept]] at the end of the shelf."""
+def with_listed(text: str, key: str, *, entry: Mapping[str, object], inner: bool = False, name: str) -> str:
+    """The text with one more table in the list of a key, [[kept]] or [[evidence]], at its end.
+
+    Mappings in the entry become inline tables; with ``inner`` tables of their own, whose mappings are inline.
+    """
     import tomlkit
 
     document = _parsed(text, name)
     try:
         table = tomlkit.table()
-        for key, value in entry.items():
-            if isinstance(value, Mapping):
-                pairs = ", ".join(f"{inner} = {tomlkit.item(own).as_string()}" for inner, own in value.items())
-                table.add(key, tomlkit.value(f"{{ {pairs} }}"))
+        for own, value in entry.items():
+            if isinstance(value, Mapping) and inner:
+                holder = tomlkit.table()
+                for signal, pairs in value.items():
+                    holder.add(signal, _inline(pairs))
+                table.add(own, holder)
             else:
-                table.add(key, tomlkit.item(value))
+                table.add(own, _inline(value) if isinstance(value, Mapping) else tomlkit.item(value))
         table.trivia.indent = ""
-        if "kept" in document:
-            shelf = document["kept"]
-            if isinstance(shelf, tomlkit.items.AoT) and len(shelf):
-                _end_with_blank_line(shelf[-1])
-            shelf.append(table)
+        if key in document:
+            found = document[key]
+            if isinstance(found, tomlkit.items.AoT) and len(found):
+                _end_with_blank_line(found[-1])
+            if list(document)[-1] != key:
+                _end_with_blank_line(table)
+            found.append(table)
         else:
             _end_with_blank_line(document)
-            shelf = tomlkit.aot()
-            shelf.append(table)
-            document.add("kept", shelf)
+            found = tomlkit.aot()
+            found.append(table)
+            document.add(key, found)
     except _EDIT_FAULTS:
-        raise SheetError(f"{name}: the shelf cannot be written to as it stands in the file") from None
+        raise SheetError(f"{name}: {_LIST_WORDS[key]} cannot be written to as it stands in the file") from None
     result = _written(document, text)
-    _same_but(text, result, "kept", name)
+    _same_but(text, result, key, name)
     return result
 
 
-def without_kept(text: str, index: int, *, name: str) -> str:
-    """The text without one of its [[kept]]."""
+def _inline(pairs: Mapping[str, object]) -> Any:
+    """Pairs as one inline table, with blanks inside its braces."""
+    import tomlkit
+
+    told = ", ".join(f"{key} = {tomlkit.item(value).as_string()}" for key, value in pairs.items())
+    return tomlkit.value(f"{{ {told} }}")
+
+
+def without_listed(text: str, key: str, *, index: int, name: str) -> str:
+    """The text without one of the tables in the list of a key."""
     document = _parsed(text, name)
     try:
-        shelf: Any = document["kept"]
-        del shelf[index]
-        if not len(shelf):
-            del document["kept"]
+        found: Any = document[key]
+        del found[index]
+        if not len(found):
+            del document[key]
     except _EDIT_FAULTS:
-        raise SheetError(f"{name}: the shelf cannot be written to as it stands in the file") from None
+        raise SheetError(f"{name}: {_LIST_WORDS[key]} cannot be written to as it stands in the file") from None
     result = _written(document, text)
-    _same_but(text, result, "kept", name)
+    _same_but(text, result, key, name)
+    return result
+
+
+def with_moved(text: str, key: str, *, index: int, to: int, name: str) -> str:
+    """The text with one of the tables in the list of a key at another place in it."""
+    document = _parsed(text, name)
+    wanted = tomllib.loads(text)
+    try:
+        found: Any = document[key]
+        tables = list(found)
+        for table in tables:
+            _end_with_blank_line(table)
+        tables.insert(to, tables.pop(index))
+        wanted[key].insert(to, wanted[key].pop(index))
+        while len(found):
+            del found[0]
+        for table in tables:
+            found.append(table)
+    except _EDIT_FAULTS:
+        raise SheetError(f"{name}: {_LIST_WORDS[key]} cannot be written to as it stands in the file") from None
+    result = _written(document, text).rstrip() + text[len(text.rstrip()) :]
+    if _plain(result) != wanted:
+        raise SheetError(f"{name}: {key} cannot be changed as it stands in the file; edit the file itself")
     return result
 
 

@@ -7,8 +7,9 @@ from collections.abc import Iterator, Mapping, Sequence
 from difflib import get_close_matches
 
 from gainbench.errors import SheetProblem
+from gainbench.model import SIGNAL_DIMENSIONS, SignalName
 from gainbench.sheetfile.entries import EntryError, shown
-from gainbench.sheetfile.tables import ENTRIES, LISTS, SIGNALS, entry_at
+from gainbench.sheetfile.tables import ENTRIES, LISTS, entry_at
 
 TOLERANCE_EXAMPLE = '"machine.resistance" = "10 %"'
 MOST_OF_A_KIND = 100
@@ -33,8 +34,8 @@ def example_line(path: str) -> str:
     if bare in LISTS:
         return f"[[{bare}]]"
     parts = bare.split(".")
-    if parts[:2] == ["evidence", "columns"] and parts[2] in SIGNALS:
-        unit = SIGNALS[parts[2]].unit
+    if parts[:2] == ["evidence", "columns"] and parts[2] in list(SignalName):
+        unit = SIGNAL_DIMENSIONS[SignalName(parts[2])].unit
         if len(parts) == 3:
             return f'{parts[2]} = {{ column = "t", unit = "{unit}" }}'
         if parts[3] == "unit":

@@ -9,11 +9,10 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 
 from gainbench.errors import SheetProblem, UnitError
-from gainbench.model import MAX_TICKS, DesignMethod, MachineKind, SpeedSensor, TrainKind, WindupRule
+from gainbench.model import MAX_TICKS, SIGNAL_DIMENSIONS, DesignMethod, MachineKind, SpeedSensor, TrainKind, WindupRule
 from gainbench.sheetfile.entries import GainValue, shown
 from gainbench.sheetfile.problems import example_line, example_of, missing
 from gainbench.sheetfile.tables import (
-    SIGNALS,
     CurrentGainsTable,
     CurrentLoopTable,
     DutyTable,
@@ -252,7 +251,7 @@ def evidence_values(index: int, evidence: EvidenceTable) -> Iterator[SheetProble
             reason="names no signal",
             example=example_line(f"evidence[{index}].columns.time"),
         )
-    for signal, dimension in SIGNALS.items():
+    for signal, dimension in SIGNAL_DIMENSIONS.items():
         column = getattr(evidence.columns, signal)
         if column is None:
             continue

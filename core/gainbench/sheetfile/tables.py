@@ -8,7 +8,6 @@ from __future__ import annotations
 import math
 import re
 from collections.abc import Iterator
-from enum import StrEnum
 from typing import Annotated, Any, get_args, get_type_hints
 
 from pydantic import BaseModel, ConfigDict
@@ -19,6 +18,7 @@ from gainbench.model import (
     BackEmfValues,
     CurrentValues,
     DesignMethod,
+    Experiment,
     GainForm,
     IntegratorRule,
     MachineKind,
@@ -78,30 +78,6 @@ _SPEED_KI = Gain(
 )
 _TI = Quantity(dimension=Dimension.TIME, limits=Limits(low=1e-9, high=1e6), sample="0.5 ms")
 _WI = Quantity(dimension=Dimension.FREQUENCY, limits=Limits(low=1e-9, high=1e9, zero=True), sample="1700 rad/s")
-
-
-class Experiment(StrEnum):
-    """What was done on the bench while a log was recorded."""
-
-    LOCKED_ROTOR = "locked-rotor"
-    NO_LOAD = "no-load"
-    COAST_DOWN = "coast-down"
-    DRIVEN = "driven"
-    STEP_CHECK = "step-check"
-    FREQUENCY_RESPONSE = "frequency-response"
-
-
-SIGNALS: dict[str, Dimension] = {
-    "time": Dimension.TIME,
-    "voltage": Dimension.VOLTAGE,
-    "current": Dimension.CURRENT,
-    "torque": Dimension.TORQUE,
-    "speed": Dimension.SPEED,
-    "angle": Dimension.ANGLE,
-    "speed_reference": Dimension.SPEED,
-    "current_reference": Dimension.CURRENT,
-}
-"""The signals of a log, and what each of them is."""
 
 
 class Table(BaseModel):

@@ -90,6 +90,14 @@ def test_shelf_and_tolerance_enter_one_digest_only(demo, altered):
     assert assessed_digest(demo) != assessed_digest(altered(demo, "duty.length", '"400 ms"'))
 
 
+def test_evidence_enters_no_digest(demo):
+    log = '[[evidence]]\nlog = "a.csv"\nexperiment = "driven"\n[evidence.columns]\n'
+    text = f'{demo}\n{log}time = {{ column = "t", unit = "s" }}\n'
+    assert parse_sheet(text, "x").sheet.evidence
+    assert digest(text) == digest(demo)
+    assert assessed_digest(text) == assessed_digest(demo)
+
+
 def test_text_document_and_sheet_have_one_digest(demo):
     document = parse_sheet(demo, "x")
     assert digest(demo) == digest(document) == digest(document.sheet)

@@ -7,8 +7,9 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 from gainbench.errors import SheetError
+from gainbench.model import EvidenceLog, Experiment, LogColumn, SignalName
 from gainbench.results import Gains
-from gainbench.sheetfile import add_kept, digest, parse_sheet, remove_kept
+from gainbench.sheetfile import add_evidence, add_kept, digest, parse_sheet, remove_evidence, remove_kept
 
 FIRST = Gains(kp=1.0 / 3.0, ki=1e4 / 7.0)
 SECOND = Gains(kp=0.1, ki=2e2 / 3.0)
@@ -164,3 +165,72 @@ def test_taking_one_off_leaves_the_others(demo):
     left = remove_kept(document, "first light")
     assert [one.name for one in left.sheet.kept] == ["second"]
     assert left.text().startswith(demo[: demo.index("[[kept]]")])
+
+
+TIME = LogColumn(signal=SignalName.TIME, column='t "raw" [s]', unit="ms")
+FIRST_LOG = EvidenceLog(log="run-07.csv", experiment=Experiment.DRIVEN, columns=(TIME,))
+SECOND_LOG = EvidenceLog(
+    log="logs/läuft aus.parquet",
+    experiment=Experiment.COAST_DOWN,
+    columns=(TIME, LogColumn(signal=SignalName.ANGLE, column="#3", unit="turn", scale=-1.0 / 4096.0)),
+    note="second day",
+)
+
+
+def test_logs_are_added_behind_those_that_are_there(demo_texts):
+    for name, text in demo_texts.items():
+        document = parse_sheet(text, name)
+        one = add_evidence(document, FIRST_LOG)
+        both = add_evidence(one, SECOND_LOG)
+        assert both.sheet.evidence == (FIRST_LOG, SECOND_LOG)
+        assert both.text().startswith(one.text())
+        assert one.text().startswith(text)
+        assert "\n\n[[evidence]]\n" in one.text()
+        assert both.typed("evidence[1].columns.angle.unit") == "turn"
+        assert digest(both) == digest(document)
+
+
+def test_a_mapping_is_corrected_and_a_log_taken_out(demo):
+    both = add_evidence(add_evidence(parse_sheet(demo, "x"), FIRST_LOG), SECOND_LOG)
+    corrected = both.with_values({"evidence[1].columns.angle.column": "qm", "evidence[1].columns.angle.scale": 0.5})
+    assert corrected.sheet.evidence[1].columns[1] == LogColumn(
+        signal=SignalName.ANGLE, column="qm", unit="turn", scale=0.5
+    )
+    assert remove_evidence(both, 0).sheet.evidence == (SECOND_LOG,)
+    bare = remove_evidence(remove_evidence(both, 1), 0)
+    assert bare.sheet == parse_sheet(demo, "x").sheet
+    assert bare.text().rstrip("\n") == demo.rstrip("\n")
+
+
+def test_a_tuning_is_kept_above_the_logs(demo):
+    kept = add_kept(add_evidence(parse_sheet(demo, "x"), FIRST_LOG), "second", current=FIRST, speed=SECOND)
+    assert kept.sheet.evidence == (FIRST_LOG,)
+    assert kept.text().index('name = "second"') < kept.text().index("\n\n[[evidence]]")
+
+
+@pytest.mark.parametrize(
+    ("log", "reason"),
+    [
+        (EvidenceLog(log="a.csv", experiment=Experiment.DRIVEN, columns=()), "names no signal"),
+        (EvidenceLog(log="", experiment=Experiment.DRIVEN, columns=(TIME,)), "must not be empty"),
+        (EvidenceLog(log="a.csv", experiment=Experiment.DRIVEN, columns=(TIME, TIME)), "more than one column"),
+        (
+            EvidenceLog(
+                log="a.csv",
+                experiment=Experiment.DRIVEN,
+                columns=(LogColumn(signal=SignalName.SPEED, column="w", unit="V"),),
+            ),
+            "a speed of rotation is meant",
+        ),
+    ],
+)
+def test_a_log_is_refused(demo, log, reason):
+    with pytest.raises(SheetError, match=reason):
+        add_evidence(parse_sheet(demo, "x"), log)
+
+
+@pytest.mark.parametrize("index", [-1, 1, 7])
+def test_a_log_that_is_not_there(demo, index):
+    document = add_evidence(parse_sheet(demo, "x"), FIRST_LOG)
+    with pytest.raises(SheetError, match=f"holds no log {index + 1}; it holds 1"):
+        remove_evidence(document, index)

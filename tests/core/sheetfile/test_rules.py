@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import pytest
 
+from gainbench.model import EvidenceLog, Experiment, LogColumn, SignalName
 from gainbench.sheetfile import parse_sheet
 
 WRONG = [
@@ -183,9 +184,17 @@ torque = { column = "vir", unit = "N*m", scale = -35.15 }
 
 
 def test_evidence_is_taken(demo):
-    (evidence,) = parse_sheet(demo + EVIDENCE, "bench").evidence
-    assert evidence["log"] == "run-07.csv"
-    assert parse_sheet(demo, "bench").evidence == ()
+    (evidence,) = parse_sheet(demo + EVIDENCE, "bench").sheet.evidence
+    assert evidence == EvidenceLog(
+        log="run-07.csv",
+        experiment=Experiment.DRIVEN,
+        columns=(
+            LogColumn(signal=SignalName.TIME, column="t", unit="s"),
+            LogColumn(signal=SignalName.TORQUE, column="vir", unit="N*m", scale=-35.15),
+            LogColumn(signal=SignalName.ANGLE, column="qm", unit="rad"),
+        ),
+    )
+    assert parse_sheet(demo, "bench").sheet.evidence == ()
 
 
 @pytest.mark.parametrize(
