@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from gainbench.kernels.loop_grid import loop_grid
+from gainbench.kernels.loop_grid import half_turns, loop_grid
 from gainbench.plant import Plant
 from gainbench.results import Gains, LockedStep, LoopCurve, LoopFigures
 from gainbench.sampling import Hardware, Loop
@@ -72,7 +72,7 @@ def _inside(poles: NDArray[np.complex128]) -> NDArray[np.bool_]:
 
 
 def _winds_inside(loop: Loop, gains: Gains) -> bool:
-    from gainbench.kernels.winding import half_turns
+    from gainbench.kernels.winding import growth
 
     poles = _poles(loop.plant.m)
     slowest = int(np.argmin(np.abs(poles)))
@@ -81,7 +81,7 @@ def _winds_inside(loop: Loop, gains: Gains) -> bool:
     others = np.delete(poles, slowest) if taken_out else poles
     nothing = np.empty(0)
     grid = loop_grid(loop.plant.period, loop.plant.window, peaks=nothing, spreads=nothing)
-    turns = half_turns(loop.plant, gains.kp, gains.ki * loop.plant.period, loop.rule, slow, grid)
+    turns = growth(loop.plant, gains.kp, gains.ki * loop.plant.period, loop.rule, slow, grid)
     # Zeros within less poles within, of what is left: poles that were taken out leave a zero more.
     outside = int(np.sum(~_inside(others))) + int(taken_out) + int(gains.ki != 0.0) - round(turns)
     return outside == 0
@@ -163,7 +163,9 @@ def read_loop(loop: Loop, gains: Gains, *, stable: bool | None = None) -> LoopRe
     period = loop.plant.period
     peaks, spreads = sharp_modes(loop)
     grid = loop_grid(period, loop.plant.window, peaks=peaks, spreads=spreads)
-    numbers, frequency, response = loop_figures.loop_numbers(loop.plant, gains.kp, gains.ki * period, loop.rule, grid)
+    numbers, frequency, response = loop_figures.loop_numbers(
+        loop.plant, gains.kp, gains.ki * period, loop.rule, grid, half_turns(grid, period)
+    )
     frequency_hz = frequency / math.tau
     frequency_hz.setflags(write=False)
     response.setflags(write=False)
@@ -245,13 +247,13 @@ def locked_step(own: Hardware, plant: Plant, *, gains: Gains, rule: int) -> Lock
     )
     pi = kernel.LockedPi(gains.kp, gains.ki * own.period, rule)
     times, curve, per_tick = kernel.locked_step(winding, own.period, own.delay.held, part, pi)
-    time = np.linspace(0.0, curve.size * own.period / per_tick, curve.size + 1)
-    current = np.concatenate(([0.0], curve))
+    time = np.arange(curve.size, dtype=np.float64)
+    time *= own.period / per_tick
     time.setflags(write=False)
-    current.setflags(write=False)
+    curve.setflags(write=False)
     return LockedStep(
         rise_s=_known(times.at_high - times.at_low),
         overshoot_percent=_known(max(100.0 * (times.largest - 1.0), 0.0 * times.largest)),
         time=time,
-        current=current,
+        current=curve,
     )

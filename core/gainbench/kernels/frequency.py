@@ -194,13 +194,26 @@ def pi_at(kp: float, ki_period: float, rule: int, w: float, period: float) -> co
 
 
 @compiled
+def loop_turned(
+    plant: SampledPlant,
+    kp: float,
+    ki_period: float,
+    rule: int,
+    half: float,
+    level: float,
+    work: NDArray[np.complex128],
+) -> complex:
+    """The open loop, ``plant.m`` upper Hessenberg; sine and cosine of w T/2 tell where."""
+    return plant_turned(plant, half, level, work) * (kp + ki_period * integral_turned(half, level, rule))
+
+
+@compiled
 def loop_at(
     plant: SampledPlant, kp: float, ki_period: float, rule: int, w: float, work: NDArray[np.complex128]
 ) -> complex:
     """The open loop at one frequency; ``plant.m`` is upper Hessenberg."""
     turn = 0.5 * w * plant.period
-    half, level = math.sin(turn), math.cos(turn)
-    return plant_turned(plant, half, level, work) * (kp + ki_period * integral_turned(half, level, rule))
+    return loop_turned(plant, kp, ki_period, rule, math.sin(turn), math.cos(turn), work)
 
 
 @compiled
@@ -223,6 +236,13 @@ def gains_at(response: complex, w: float, period: float, rule: int, margin: floa
         return math.nan, math.nan
     ki_period = wanted.imag / shape.imag
     return wanted.real - ki_period * shape.real, ki_period
+
+
+@compiled
+def gains_for_margin(plant: SampledPlant, w: float, rule: int, margin: float) -> tuple[float, float]:
+    """The one kp and Ki T with ``|L| = 1`` and the margin at ``w``, of any sign."""
+    reduced = hessenberg(plant)
+    return gains_at(plant_at(reduced, w, workspace(reduced)), w, plant.period, rule, margin)
 
 
 @compiled

@@ -134,7 +134,7 @@ def run_step(
             if per_tick > 0:
                 # Points of this stretch, at even parts of the tick.
                 for j in range(per_tick):
-                    place = k * per_tick + j
+                    place = k * per_tick + j + 1
                     moment = (j + 1.0) / per_tick * period
                     low = 0.0 if stretch == 0 else part * period
                     if place < curve.size and low < moment + 1e-12 * period and moment <= low + width * (1.0 + 1e-9):
@@ -169,6 +169,7 @@ def locked_step(
     times = run_step(winding, period, held, part, pi, int(np.int64(LONGEST)), np.empty(0), int(np.int64(0)))
     shown = min(max(times.ticks + times.ticks // 4, 12), LONGEST)
     per_tick = max(1, min(16, POINTS // shown))
-    curve = np.zeros(shown * per_tick)
+    # The first point is the start, at rest.
+    curve = np.zeros(shown * per_tick + 1)
     run_step(winding, period, held, part, pi, shown, curve, per_tick)
     return times, curve, per_tick

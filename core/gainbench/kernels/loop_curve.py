@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gainbench.kernels.compiled import compiled
-from gainbench.kernels.frequency import loop_at, workspace
+from gainbench.kernels.frequency import loop_at, loop_turned, workspace
 from gainbench.kernels.loop_records import SampledPlant
 
 TURN = 0.3
@@ -39,11 +39,17 @@ def far(first: complex, second: complex) -> bool:
 
 @compiled
 def trace_loop(
-    plant: SampledPlant, kp: float, ki_period: float, rule: int, w: NDArray[np.float64]
+    plant: SampledPlant,
+    kp: float,
+    ki_period: float,
+    rule: int,
+    w: NDArray[np.float64],
+    turned: NDArray[np.float64],
 ) -> tuple[NDArray[np.float64], NDArray[np.complex128]]:
     """The open loop on the grid, with points put in where neighbours are far apart.
 
-    ``plant`` as :func:`gainbench.kernels.frequency.hessenberg` leaves it.
+    ``plant`` as :func:`gainbench.kernels.frequency.hessenberg` leaves it; ``turned`` as
+    :func:`gainbench.kernels.loop_grid.half_turns` gives it for the grid ``w``.
     """
     work = workspace(plant)
     room = 4 * w.size
@@ -54,11 +60,11 @@ def trace_loop(
     waiting_l = np.empty(HALVINGS + 2, dtype=np.complex128)
     depth = np.empty(HALVINGS + 2, dtype=np.int64)
     frequency[0] = w[0]
-    loop[0] = loop_at(plant, kp, ki_period, rule, w[0], work)
+    loop[0] = loop_turned(plant, kp, ki_period, rule, turned[0, 0], turned[1, 0], work)
     count = 1
     for k in range(1, w.size):
         waiting_w[0] = w[k]
-        waiting_l[0] = loop_at(plant, kp, ki_period, rule, w[k], work)
+        waiting_l[0] = loop_turned(plant, kp, ki_period, rule, turned[0, k], turned[1, k], work)
         depth[0] = 0
         top = 0
         while top >= 0:

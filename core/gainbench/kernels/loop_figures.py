@@ -254,8 +254,12 @@ def loop_numbers(
     ki_period: float,
     rule: int,
     grid: NDArray[np.float64],
+    turned: NDArray[np.float64],
 ) -> tuple[LoopNumbers, NDArray[np.float64], NDArray[np.complex128]]:
-    """Figures and curve of a loop over its grid and the points between; figures mean something for a stable one."""
+    """Figures and curve of a loop over its grid and the points between; figures mean something for a stable one.
+
+    ``turned`` as :func:`gainbench.kernels.loop_grid.half_turns` gives it for the grid.
+    """
     reduced = hessenberg(plant)
-    w, loop = trace_loop(reduced, kp, ki_period, rule, grid)
+    w, loop = trace_loop(reduced, kp, ki_period, rule, grid, turned)
     return numbers_of(reduced, kp, ki_period, rule, w, loop), w, loop

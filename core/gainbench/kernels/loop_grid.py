@@ -27,6 +27,27 @@ _SHARES = np.concatenate((10.0 ** np.concatenate((_TAIL, _EVEN)), [1.0 - LAST_GA
 _SHARES.setflags(write=False)
 
 
+def half_turns(grid: NDArray[np.float64], period: float) -> NDArray[np.float64]:
+    """Sine and cosine of w T/2 on a grid, by numpy at once: half the cost of a frequency is in them.
+
+    Parameters
+    ----------
+    grid : ndarray, shape (n,)
+        Frequencies [rad/s].
+    period : float
+        Of the loop [s].
+
+    Returns
+    -------
+    ndarray, shape (2, n)
+    """
+    turn = grid * (0.5 * period)
+    out = np.empty((2, grid.size))
+    np.sin(turn, out=out[0])
+    np.cos(turn, out=out[1])
+    return out
+
+
 def loop_grid(
     period: float, window: int, *, peaks: NDArray[np.float64], spreads: NDArray[np.float64]
 ) -> NDArray[np.float64]:

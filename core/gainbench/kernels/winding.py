@@ -71,7 +71,7 @@ def traced(
 
 
 @compiled
-def half_turns(
+def growth(
     plant: SampledPlant, kp: float, ki_period: float, rule: int, slow: float, w: NDArray[np.float64]
 ) -> float:
     """Growth of the phase along the upper half circle, over pi; ``w`` is the rising grid to look on."""

@@ -45,10 +45,9 @@ def gains_for(loop: Loop, crossover: float, *, margin: float) -> Gains | None:
     period = loop.plant.period
     if not crossover * period < math.pi:
         return None
-    from gainbench.kernels.frequency import gains_at
+    from gainbench.kernels.frequency import gains_for_margin
 
-    response = plant_response(loop, np.array([crossover]))[0]
-    kp, ki_period = gains_at(response, crossover, period, loop.rule, margin)
+    kp, ki_period = gains_for_margin(loop.plant, crossover, loop.rule, margin)
     return Gains(kp=kp, ki=ki_period / period)
 
 

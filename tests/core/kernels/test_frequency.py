@@ -9,6 +9,7 @@ import pytest
 
 from gainbench.kernels.frequency import (
     gains_at,
+    gains_for_margin,
     gains_over,
     hessenberg,
     integral_at,
@@ -103,5 +104,9 @@ def test_gains_put_the_loop_on_the_unit_circle_with_the_margin(rule):
     loop = response * pi_at(kp, ki_period, rule, w, period)
     assert_quantity(abs(loop), 1.0, rtol=1e-14, unit="1", why=ROUNDING)
     assert_quantity(np.angle(-loop), margin, rtol=1e-13, unit="rad", why=ROUNDING)
+    plant = some_plant(3, fed=True, window=2, shift=1, gain=0.5)
+    found = gains_for_margin(plant, w, rule, margin)
+    expected = gains_at(plant_response(plant, np.array([w]))[0], w, period, rule, margin)
+    assert_quantity(found, expected, rtol=1e-12, unit="1", why="the same elimination")
     over = gains_over(np.array([response]), np.array([w]), period, rule, margin)
     assert_quantity(over[:, 0], [kp, ki_period], unit="1", why="the same arithmetic")

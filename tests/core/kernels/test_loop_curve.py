@@ -8,7 +8,7 @@ import numpy as np
 
 from gainbench.kernels.frequency import hessenberg
 from gainbench.kernels.loop_curve import far, trace_loop
-from gainbench.kernels.loop_grid import loop_grid
+from gainbench.kernels.loop_grid import half_turns, loop_grid
 from gainbench.kernels.loop_records import SampledPlant
 from quantities import assert_quantity
 
@@ -34,7 +34,7 @@ def test_a_sharp_resonance_is_followed_through_its_turn():
         0.5, 0.0, 0.0, PERIOD, 0, 1, 1.0, 1.0,
     )  # fmt: skip
     grid = loop_grid(PERIOD, 1, peaks=np.array([turn / PERIOD]), spreads=np.array([decay / PERIOD]))
-    w, loop = trace_loop(hessenberg(plant), 1.0, 0.0, 0, grid)
+    w, loop = trace_loop(hessenberg(plant), 1.0, 0.0, 0, grid, half_turns(grid, PERIOD))
     assert w.size > grid.size
     assert np.all(np.diff(w) > 0.0)
     close = np.abs(w - turn / PERIOD) < 3.0 * decay / PERIOD

@@ -7,6 +7,7 @@ import math
 import numpy as np
 import pytest
 
+from gainbench.kernels import loop_figures
 from gainbench.kernels.frequency import hessenberg, loop_at, workspace
 from gainbench.kernels.loop_figures import (
     ACROSS,
@@ -14,17 +15,20 @@ from gainbench.kernels.loop_figures import (
     SENSITIVITY,
     SIZE,
     first_fall,
-    loop_numbers,
     measure,
     root,
     summit,
 )
-from gainbench.kernels.loop_grid import loop_grid
+from gainbench.kernels.loop_grid import half_turns, loop_grid
 from gainbench.kernels.loop_records import SampledPlant
 from quantities import assert_quantity
 
 GRID = loop_grid(1.0, 1, peaks=np.empty(0), spreads=np.empty(0))
 ROUNDING = "roots refined to rounding"
+
+
+def figures_of(plant, kp, ki_period, grid):
+    return loop_figures.loop_numbers(plant, kp, ki_period, 0, grid, half_turns(grid, plant.period))
 
 
 def integrator(gain_period: float, *, period: float = 1.0, shift: int = 1) -> SampledPlant:
@@ -40,7 +44,7 @@ def integrator(gain_period: float, *, period: float = 1.0, shift: int = 1) -> Sa
 def test_d5_integrator_with_a_sample_of_delay(kh):
     # D5: w_c h = 2 asin(K h/2), PM = 90 deg - 3 asin(K h/2) exactly; on the axis at z = exp(j pi/3), so GM = 1/(K h).
     # Derived identity, it needs no source.
-    numbers, _, _ = loop_numbers(integrator(kh), 1.0, 0.0, 0, GRID)
+    numbers, _, _ = figures_of(integrator(kh), 1.0, 0.0, GRID)
     half = math.asin(kh / 2.0)
     assert_quantity(numbers.crossover, 2.0 * half, rtol=1e-12, unit="rad", why=ROUNDING)
     assert_quantity(numbers.phase_margin, math.pi / 2.0 - 3.0 * half, rtol=1e-12, unit="rad", why=ROUNDING)
@@ -53,14 +57,14 @@ def test_d5_integrator_with_a_sample_of_delay(kh):
 
 def test_d6_a_third_has_a_margin_of_61_degrees_and_a_gain_margin_of_three():
     # D6: K h = 1/3: PM 61.218 deg, GM 3.000. Derived.
-    numbers, _, _ = loop_numbers(integrator(1.0 / 3.0), 1.0, 0.0, 0, GRID)
+    numbers, _, _ = figures_of(integrator(1.0 / 3.0), 1.0, 0.0, GRID)
     assert_quantity(math.degrees(numbers.phase_margin), 61.218, atol=5e-4, unit="deg", why="digits printed")
     assert_quantity(numbers.gain_margin, 3.0, rtol=1e-12, unit="1", why=ROUNDING)
 
 
 @pytest.mark.parametrize("kh", [0.15, 0.5])
 def test_peak_and_bandwidth_by_brute_force(kh):
-    numbers, w, loop = loop_numbers(integrator(kh), 1.0, 0.0, 0, GRID)
+    numbers, w, loop = figures_of(integrator(kh), 1.0, 0.0, GRID)
     dense = np.linspace(1e-6, math.pi, 400_001)
     z = np.exp(1j * dense)
     expected = kh / (z * (z - 1.0))
@@ -81,7 +85,7 @@ def test_peak_and_bandwidth_by_brute_force(kh):
 def test_r5_margins_are_bounded_by_the_peak_of_the_sensitivity():
     # R5: GM >= Ms/(Ms - 1), PM >= 2 asin(1/(2 Ms)). Astrom & Hagglund, Advanced PID Control, 2006 (from memory).
     for kh in (0.1, 0.3, 0.5, 0.7):
-        numbers, _, _ = loop_numbers(integrator(kh), 1.0, 0.0, 0, GRID)
+        numbers, _, _ = figures_of(integrator(kh), 1.0, 0.0, GRID)
         peak = numbers.peak_sensitivity
         assert numbers.gain_margin >= peak / (peak - 1.0) * (1.0 - 1e-12)
         assert numbers.phase_margin >= 2.0 * math.asin(0.5 / peak) - 1e-12
@@ -98,7 +102,7 @@ def test_r5_printed_pairs():
 
 def test_the_nyquist_frequency_counts_as_on_the_axis():
     # K h/(z - 1) without delay: L(-1) = -K h/2, its only point on the negative axis, so the gain margin is 2/(K h).
-    numbers, _, _ = loop_numbers(integrator(0.5, shift=0), 1.0, 0.0, 0, GRID)
+    numbers, _, _ = figures_of(integrator(0.5, shift=0), 1.0, 0.0, GRID)
     assert_quantity(numbers.gain_margin, 4.0, rtol=1e-12, unit="1", why=ROUNDING)
 
 
@@ -112,7 +116,7 @@ def test_gain_reduction_of_a_conditionally_stable_loop():
     a = 20.0
     plant = SampledPlant(m, np.array([1.0, 2.0 * a, a * a]), b, nothing, nothing, 0.0, 0.0, 0.0, period, 0, 1, 1.0, 1.0)
     gain = 1e-3
-    numbers, _, _ = loop_numbers(plant, gain, 0.0, 0, GRID / period)
+    numbers, _, _ = figures_of(plant, gain, 0.0, GRID / period)
     w = np.geomspace(1e-3, math.pi / period, 2_000_001)
     d = np.exp(1j * w * period) - 1.0
     loop = gain * (1.0 + a * d) ** 2 / d**3
@@ -131,7 +135,7 @@ def test_a_loop_below_one_has_no_crossover_and_no_bandwidth():
     plant = SampledPlant(
         np.array([[-0.5]]), np.ones(1), np.array([0.1]), nothing, nothing, 0.0, 0.0, 0.0, 1.0, 1, 1, 1.0, 1.0
     )
-    numbers, _, _ = loop_numbers(plant, 1.0, 0.0, 0, GRID)
+    numbers, _, _ = figures_of(plant, 1.0, 0.0, GRID)
     assert math.isnan(numbers.crossover)
     assert math.isnan(numbers.phase_margin)
     assert math.isnan(numbers.bandwidth)
@@ -146,9 +150,7 @@ def test_a_peak_through_one_between_two_points_is_found():
         z - np.eye(2), np.array([1.0, 0.0]), np.array([0.0, 2.002 * decay]), nothing, nothing,
         0.0, 0.0, 0.0, 1.0, 0, 1, 1.0, 1.0,
     )  # fmt: skip
-    numbers, _, _ = loop_numbers(
-        plant, 1.0, 0.0, 0, loop_grid(1.0, 1, peaks=np.array([turn]), spreads=np.array([decay]))
-    )
+    numbers, _, _ = figures_of(plant, 1.0, 0.0, loop_grid(1.0, 1, peaks=np.array([turn]), spreads=np.array([decay])))
     assert_quantity(numbers.crossover, turn, rtol=1e-4, unit="rad", why="within the peak's width")
 
 

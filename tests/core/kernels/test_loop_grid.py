@@ -7,7 +7,7 @@ import math
 import numpy as np
 import pytest
 
-from gainbench.kernels.loop_grid import LAST_GAP, POINTS, loop_grid
+from gainbench.kernels.loop_grid import LAST_GAP, POINTS, half_turns, loop_grid
 from quantities import assert_quantity
 
 PERIOD = 1e-3
@@ -29,3 +29,11 @@ def test_points_gather_around_a_peak_and_its_alias():
     w = loop_grid(PERIOD, 1, peaks=np.array([2.0 * NYQUIST - 500.0]), spreads=np.array([0.01]))
     assert_quantity(np.abs(w - 500.0).min(), 0.0, atol=1e-9, unit="rad/s", why="folded in shares of Nyquist")
     assert np.sum(np.abs(w - 500.0) < 0.1) >= 5
+
+
+def test_half_turns_are_sines_and_cosines():
+    w = loop_grid(PERIOD, 1, peaks=np.empty(0), spreads=np.empty(0))
+    turned = half_turns(w, PERIOD)
+    assert_quantity(turned[0], np.sin(0.5 * w * PERIOD), rtol=1e-15, unit="1", why="the same function")
+    assert_quantity(turned[0, -1], 1.0, rtol=1e-15, unit="1", why="half the Nyquist turn is a right angle")
+    assert_quantity(np.hypot(turned[0], turned[1]), 1.0, rtol=1e-14, unit="1", why="a point on the circle")

@@ -11,7 +11,7 @@ import pytest
 from gainbench.kernels.frequency import hessenberg, plant_response
 from gainbench.kernels.lifting import closed_speed
 from gainbench.kernels.loop_grid import loop_grid
-from gainbench.kernels.winding import fed_part, half_turns
+from gainbench.kernels.winding import fed_part, growth
 from gainbench.model import Firmware, SpeedSensor
 from gainbench.plant import refer
 from gainbench.results import Gains
@@ -46,7 +46,7 @@ def test_the_count_of_unstable_poles(window, feedforward, ki):
     for kp in np.geomspace(0.003, 30.0, 15):
         poles = 1.0 + np.linalg.eigvals(closed_speed(plant, kp, ki * 5e-4, 0))
         expected = int(np.sum(np.abs(poles) > 1.0))
-        turns = half_turns(plant, kp, ki * 5e-4, 0, slow.real, grid)
+        turns = growth(plant, kp, ki * 5e-4, 0, slow.real, grid)
         outside = int(np.sum(np.abs(1.0 + np.delete(own, np.argmin(np.abs(own)))) > 1.0)) + 1 + (ki != 0.0) - turns
         assert_quantity(
             outside, expected, atol=1e-3, unit="poles", why="phase is a whole number of half turns at z = -1"
