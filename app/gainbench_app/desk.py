@@ -15,19 +15,22 @@ from PySide6.QtCore import QObject, QTimer, Signal, Slot
 
 from gainbench.assess import Assessment, assess
 from gainbench.errors import SheetError
-from gainbench.model import DesignMethod, Sheet
+from gainbench.model import DesignMethod, HandGains, Sheet
 from gainbench.results import LoopAssessment
 from gainbench.sheetfile import EntryValue, SheetDocument, parse_sheet, read_sheet, write_sheet
 from gainbench_app.desk_state import State, as_text, moved, settled, typed
 from gainbench_app.live import FrameTimer, Readiness
 from gainbench_app.sheet_edits import value_at
-from gainbench_app.starting_values import starting_values
+from gainbench_app.shown_tuning import ShownTuning
+from gainbench_app.starting_values import gains_by_hand, starting_values
 
 IDLE_MS = 400
 """After the last move the text follows."""
 _MOST_UNDO = 500
 _INSIDE = 1e-3
 """Share by which a slider stays inside the edge of what can be met."""
+_OF_A_MAP = ("phase_margin", "crossover")
+"""What a drag in a reach map moves, in the order in which it gives way at an edge."""
 
 
 @dataclass(slots=True, kw_only=True)
@@ -49,6 +52,8 @@ class Desk(QObject):
     """Another sheet is open."""
     trouble = Signal(str)
     """A message for the user."""
+    kept_shown = Signal()
+    """``shown_kept`` is new."""
 
     def __init__(
         self,
@@ -78,6 +83,7 @@ class Desk(QObject):
         self._computed: State | None = None
         """The state that ``assessment`` is of."""
         self._assessment: Assessment | None = None
+        self._shown_kept: tuple[ShownTuning, ...] = ()
         self._open(document, path)
 
     @property
@@ -94,6 +100,17 @@ class Desk(QObject):
     def assessment(self) -> Assessment | None:
         """Of a sheet in force, the newest that was computed; None before the first."""
         return self._assessment
+
+    @property
+    def shown_kept(self) -> tuple[ShownTuning, ...]:
+        """The tunings of the shelf that are drawn over the live curves."""
+        return self._shown_kept
+
+    def show_kept(self, tunings: tuple[ShownTuning, ...]) -> None:
+        """Draw other tunings of the shelf."""
+        if len(tunings) != len(self._shown_kept) or any(a != b for a, b in zip(tunings, self._shown_kept, strict=True)):
+            self._shown_kept = tunings
+            self.kept_shown.emit()
 
     @property
     def path(self) -> Path | None:
@@ -162,6 +179,18 @@ class Desk(QObject):
         """
         self._open(parse_sheet(text, name), None)
 
+    def restore(self, text: str, name: str, *, path: Path | None, since: float) -> None:
+        """Open a sheet that was not saved when the program ended; it is unsaved until it is saved.
+
+        Raises
+        ------
+        SheetError
+            If the text is no sheet; what was open stays.
+        """
+        self._open(parse_sheet(text, name), path)
+        self._saved, self._unsaved_since = "", since
+        self.changed.emit()
+
     def save(self, path: Path | None = None) -> None:
         """Write the sheet to its file, or to another one, which is its file from then on.
 
@@ -216,6 +245,9 @@ class Desk(QObject):
 
     def set_values(self, values: Mapping[str, EntryValue]) -> None:
         """Set entries as typed: taken where the sheet stays valid, kept and marked where not. One step of undo."""
+        self._set(values, held=self._state.held)
+
+    def _set(self, values: Mapping[str, EntryValue], *, held: Mapping[str, HandGains]) -> None:
         self.end_gesture()
         before = self._state
         try:
@@ -224,7 +256,26 @@ class Desk(QObject):
             self.trouble.emit(str(error))
             return
         self._push(before)
-        self._put(after.state, written=after.taken)
+        self._put(replace(after.state, held=held), written=after.taken)
+
+    def recall(self, values: Mapping[str, EntryValue]) -> None:
+        """Set the gains of both loops by hand; none is held any more. One step of undo."""
+        self._set(values, held={})
+
+    def edit(self, change: Callable[[SheetDocument], SheetDocument]) -> None:
+        """Edit the text as a whole, such as its shelf. One step of undo.
+
+        Raises
+        ------
+        SheetError
+            If the edit is refused; nothing has changed.
+        """
+        self.end_gesture()
+        before = self._state
+        base = settled(before)
+        document = change(base.document)
+        self._push(before)
+        self._put(replace(base, document=document, sheet=document.sheet))
 
     def choose_method(self, loop: str, method: DesignMethod) -> None:
         """Design a loop by another method, from where it is; keys of the other methods stay in the sheet."""
@@ -234,7 +285,33 @@ class Desk(QObject):
         if assessment is not None:
             assessed = assessment.current if loop == "current" else assessment.speed
             values |= starting_values(self.sheet, loop, plant=assessment.plant, assessed=assessed, method=method)
-        self.set_values(values)
+        self._set(values, held=self._held_but(loop))
+
+    def held(self, loop: str) -> bool:
+        """Whether a loop keeps its gains while the plant is edited."""
+        return loop in self._state.held
+
+    def hold(self, loop: str, on: bool) -> None:
+        """Keep a loop's gains as they are, or let its method design them again. One step of undo."""
+        self.end_gesture()
+        held = self._held_but(loop)
+        gains = _loop(self._assessment, loop).gains if self._assessment is not None else None
+        if on and gains is not None:
+            held = {**held, loop: HandGains(kp=gains.kp, ki=gains.ki)}
+        if held.keys() != self._state.held.keys():
+            self._push(self._state)
+            self._put(replace(self._state, held=held))
+
+    def take_over(self, loop: str) -> None:
+        """Make the gains in force, designed or held, the loop's gains by hand. One step of undo."""
+        self.end_gesture()
+        gains = _loop(self._assessment, loop).gains if self._assessment is not None else None
+        if gains is not None:
+            values = {f"aims.{loop}.method": DesignMethod.BY_HAND.value, **gains_by_hand(loop, gains)}
+            self._set(values, held=self._held_but(loop))
+
+    def _held_but(self, loop: str) -> Mapping[str, HandGains]:
+        return {name: hand for name, hand in self._state.held.items() if name != loop}
 
     def begin_gesture(self, path: str) -> None:
         """A drag begins: all its moves are one step of undo."""
@@ -252,9 +329,23 @@ class Desk(QObject):
         value : float
             In the model's unit; what is in force is the value as it would be saved, in the user's unit.
         """
+        self.move_all(path, {path: value})
+
+    def move_all(self, name: str, values: Mapping[str, float]) -> None:
+        """Move numbers together along the live path.
+
+        Parameters
+        ----------
+        name : str
+            Of the drag: the path of its one number, or ``aims.current`` for a point of that loop's reach map.
+        values : mapping
+            By their paths, as in :meth:`move`.
+        """
         alone = self._gesture is None
-        self.begin_gesture(path)
-        state = moved(self._state, path, value)
+        self.begin_gesture(name)
+        state = self._state
+        for path, value in values.items():
+            state = moved(state, path, value)
         if state is not self._state:
             self._put(state)
         if alone:
@@ -297,7 +388,7 @@ class Desk(QObject):
         """Make a state the present one; ``written`` is what its document holds other than the last one."""
         if state.document is not self._state.document:
             self._remember(written)
-        anew = state.sheet != self._state.sheet
+        anew = state.sheet != self._state.sheet or state.held != self._state.held
         self._state = state
         self._mark_saved()
         if state.live:
@@ -352,7 +443,7 @@ class Desk(QObject):
     def _compute(self) -> None:
         if self._readiness is Readiness.NOTHING:
             return
-        assessment = self._assess(self._state.sheet)
+        assessment = self._assess(self._state.assessed_sheet)
         gesture = self._gesture
         if gesture is not None and self._computed is not None and gesture.path.startswith("aims."):
             loop = gesture.path.split(".")[1]
@@ -369,24 +460,26 @@ class Desk(QObject):
 
     def _stopped_at_edge(self, path: str, refused: Assessment) -> Assessment:
         """The nearest state that can be met, else the last one that was."""
-        loop, key = path.split(".")[1:]
+        loop, *keys = path.split(".")[1:]
         refusal = _loop(refused, loop).refusal
         good = self._computed
         assert refusal is not None
         assert good is not None
-        nearest = {
-            "crossover": refusal.nearest_crossover,
-            "bandwidth": refusal.nearest_bandwidth,
-            "phase_margin": refusal.largest_margin,
-        }.get(key)
-        candidates = [good]
-        if nearest is not None:
-            # A hair inside the edge, so that rounding to the digits shown does not step over it.
-            asked = value_at(self._state.sheet, path) or 0.0
-            inside = nearest * (1.0 - _INSIDE if nearest < asked else 1.0 + _INSIDE)
-            candidates.insert(0, moved(self._state, path, inside, differs=False))
+        candidates = []
+        for key in keys or _OF_A_MAP:
+            nearest = {
+                "crossover": refusal.nearest_crossover,
+                "bandwidth": refusal.nearest_bandwidth,
+                "phase_margin": refusal.largest_margin,
+            }.get(key)
+            if nearest is not None:
+                # A hair inside the edge, so that rounding to the digits shown does not step over it.
+                asked = value_at(self._state.sheet, f"aims.{loop}.{key}") or 0.0
+                inside = nearest * (1.0 - _INSIDE if nearest < asked else 1.0 + _INSIDE)
+                candidates.append(moved(self._state, f"aims.{loop}.{key}", inside, differs=False))
+        candidates.append(good)
         for state in candidates:
-            assessment = self._assess(state.sheet)
+            assessment = self._assess(state.assessed_sheet)
             if _loop(assessment, loop).refusal is None:
                 self._state = state
                 self._mark_saved()

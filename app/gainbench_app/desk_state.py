@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 
 from gainbench.errors import SheetError
-from gainbench.model import Sheet
+from gainbench.model import DesignMethod, HandGains, Sheet
 from gainbench.sheetfile import EntryValue, SheetDocument, quantity_paths, read_entry
 from gainbench_app.sheet_edits import gain_dimension, with_number, written
 
@@ -27,11 +27,25 @@ class State:
     """Wanted and refused: texts as typed, None for an entry taken out."""
     problems: Mapping[str, str] = field(default_factory=dict)
     """Why, by path."""
+    held: Mapping[str, HandGains] = field(default_factory=dict)
+    """Gains that stay while the plant is edited, by loop; not part of the sheet."""
 
     @property
     def valid(self) -> bool:
         """Whether every entry is taken."""
         return not self.wrong and not self.problems
+
+    @property
+    def assessed_sheet(self) -> Sheet:
+        """What is assessed: the sheet in force, with gains that are held as gains by hand."""
+        aims = self.sheet.aims
+        for loop, hand in self.held.items():
+            by_hand = {"method": DesignMethod.BY_HAND, "hand": hand}
+            if loop == "current":
+                aims = replace(aims, current=replace(aims.current, **by_hand))
+            else:
+                aims = replace(aims, speed=replace(aims.speed, **by_hand))
+        return self.sheet if aims is self.sheet.aims else replace(self.sheet, aims=aims)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -74,15 +88,16 @@ def typed(state: State, values: Mapping[str, EntryValue]) -> Typed:
     wanted = {**state.wrong, **values}
     document, problems = _tried(base.document, wanted)
     if document is not None:
-        return Typed(state=State(document=document, sheet=document.sheet), taken={**state.live, **wanted})
+        after = State(document=document, sheet=document.sheet, held=state.held)
+        return Typed(state=after, taken={**state.live, **wanted})
     if state.wrong:
         kept = {path: value for path, value in state.wrong.items() if path not in values}
         alone = _tried(base.document, values)[0]
         if alone is not None:
             problems = _tried(alone, kept)[1]
-            after = State(document=alone, sheet=alone.sheet, wrong=kept, problems=problems)
+            after = State(document=alone, sheet=alone.sheet, wrong=kept, problems=problems, held=state.held)
             return Typed(state=after, taken={**state.live, **values})
-    after = State(document=base.document, sheet=base.sheet, wrong=wanted, problems=problems)
+    after = State(document=base.document, sheet=base.sheet, wrong=wanted, problems=problems, held=state.held)
     return Typed(state=after, taken=state.live)
 
 

@@ -2,15 +2,25 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from enum import StrEnum
 from pathlib import Path
+from typing import TYPE_CHECKING
 
-from PySide6.QtWidgets import QFileDialog, QMessageBox, QWidget
+from PySide6.QtGui import QGuiApplication
+from PySide6.QtWidgets import QDialog, QFileDialog, QInputDialog, QMessageBox, QWidget
 
-from gainbench.sheetfile import SUFFIX
+from gainbench.sheetfile import SUFFIX, EntryValue
+from gainbench_app.desk import Desk
 from gainbench_app.handover_dialog import HandoverChoice, HandoverDialog, HandoverRequest
+from gainbench_app.keep_dialog import KeepDialog, NamedTuning
+from gainbench_app.paste_dialog import PasteDialog
+
+if TYPE_CHECKING:
+    from PySide6.QtPrintSupport import QPrinter
 
 _FILTER = f"bench sheets (*{SUFFIX} *.toml);;all files (*)"
+_PICTURES = "pixels (*.png);;lines and words (*.svg)"
 
 
 class Unsaved(StrEnum):
@@ -19,6 +29,14 @@ class Unsaved(StrEnum):
     SAVE = "save"
     DISCARD = "discard"
     CANCEL = "cancel"
+
+
+class Recovery(StrEnum):
+    """What becomes of work that a crash left behind."""
+
+    RESTORE = "restore"
+    DISCARD = "discard"
+    LATER = "later"
 
 
 class Dialogs:
@@ -60,6 +78,56 @@ class Dialogs:
         """Whether a file that is there may be replaced."""
         answer = QMessageBox.question(parent, "Replace the file", f"{path.name} is there already. Replace it?")
         return answer == QMessageBox.StandardButton.Yes
+
+    def name_of_tuning(self, parent: QWidget, suggestion: str) -> NamedTuning | None:
+        """What a tuning is called on the shelf; None where it is not to be kept."""
+        dialog = KeepDialog(suggestion, parent)
+        return dialog.named() if dialog.exec() else None
+
+    def note(self, parent: QWidget, name: str, note: str) -> str | None:
+        """The note of a kept tuning; None where it stays."""
+        text, taken = QInputDialog.getMultiLineText(parent, "Note", f"note to {name}", note)
+        return text if taken else None
+
+    def recover(self, parent: QWidget, name: str, when: str) -> Recovery:
+        """What becomes of a sheet that was not saved when the program ended."""
+        box = QMessageBox(
+            QMessageBox.Icon.NoIcon, "Unsaved work", f"{name} was not saved when Gainbench ended ({when})."
+        )
+        box.setParent(parent, box.windowFlags())
+        box.setInformativeText("Restore it?")
+        restore = box.addButton("Restore", QMessageBox.ButtonRole.AcceptRole)
+        discard = box.addButton("Discard it", QMessageBox.ButtonRole.DestructiveRole)
+        box.addButton("Ask again next time", QMessageBox.ButtonRole.RejectRole)
+        box.setDefaultButton(restore)
+        box.exec()
+        if box.clickedButton() is restore:
+            return Recovery.RESTORE
+        return Recovery.DISCARD if box.clickedButton() is discard else Recovery.LATER
+
+    def picture_to_save(self, parent: QWidget, suggestion: str) -> Path | None:
+        """Where to save a picture; None where no name was given."""
+        name, _ = QFileDialog.getSaveFileName(parent, "Save the picture as", suggestion, _PICTURES)
+        if not name:
+            return None
+        path = Path(name)
+        return path if path.suffix else path.with_suffix(".png")
+
+    def printer(self, parent: QWidget) -> QPrinter | None:
+        """What to print on; None where nothing is to be printed."""
+        from PySide6.QtPrintSupport import QPrintDialog, QPrinter
+
+        printer = QPrinter(QPrinter.PrinterMode.HighResolution)
+        return printer if QPrintDialog(printer, parent).exec() else None
+
+    def rows_to_set(self, parent: QWidget, desk: Desk) -> Mapping[str, EntryValue]:
+        """What pasted rows of a data sheet are to set; nothing where it is not confirmed."""
+        dialog = PasteDialog(desk, QGuiApplication.clipboard().text(), parent)
+        return dialog.values() if dialog.exec() else {}
+
+    def show(self, dialog: QDialog) -> None:
+        """Show something to read."""
+        dialog.exec()
 
     def tell(self, parent: QWidget, title: str, message: str) -> None:
         """Say something that must be read."""

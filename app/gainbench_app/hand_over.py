@@ -6,7 +6,8 @@ from pathlib import Path
 
 from PySide6.QtWidgets import QWidget
 
-from gainbench.handover import Source, write_handover, write_header
+from gainbench.assess import assess
+from gainbench.handover import Source, kept_sheet, write_handover, write_header
 from gainbench.results import Level
 from gainbench.sheetfile import digest
 from gainbench_app.desk import Desk
@@ -14,7 +15,7 @@ from gainbench_app.dialogs import Dialogs
 from gainbench_app.handover_dialog import HandoverRequest
 
 
-def hand_over(window: QWidget, desk: Desk, dialogs: Dialogs) -> None:
+def hand_over(window: QWidget, desk: Desk, dialogs: Dialogs, *, tuning: str | None = None) -> None:
     """Ask for a folder, show the cautions, and write the header of the assessment that is shown.
 
     Parameters
@@ -25,6 +26,8 @@ def hand_over(window: QWidget, desk: Desk, dialogs: Dialogs) -> None:
         Valid, and with an assessment.
     dialogs : Dialogs
         Who asks.
+    tuning : str, optional
+        Name of a kept tuning; by default what is handed over is the assessment that is shown.
 
     Raises
     ------
@@ -32,10 +35,10 @@ def hand_over(window: QWidget, desk: Desk, dialogs: Dialogs) -> None:
         If nothing can be exported or the file cannot be written; nothing was written then.
     """
     document = desk.settled_document()
-    assessment = desk.assessment
+    assessment = desk.assessment if tuning is None else assess(kept_sheet(document.sheet, tuning))
     if assessment is None:
         return
-    source = Source(sheet_name=document.name, digest=digest(document))
+    source = Source(sheet_name=document.name, digest=digest(document), tuning=tuning)
     suggested = write_header(assessment, source)
     remarks = [f"Breaks: {one.text}" for one in assessment.findings if one.level is Level.BREAKS]
     if desk.unsaved_since is not None or desk.path is None:
@@ -45,7 +48,7 @@ def hand_over(window: QWidget, desk: Desk, dialogs: Dialogs) -> None:
     choice = dialogs.handover(
         window,
         HandoverRequest(
-            title=document.sheet.title,
+            title=document.sheet.title if tuning is None else f"{document.sheet.title}, kept tuning {tuning}",
             folder=desk.path.parent if desk.path is not None else Path.home(),
             prefix=suggested.prefix,
             remarks=tuple(remarks),

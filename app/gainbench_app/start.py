@@ -56,7 +56,7 @@ def _open(words: list[str]) -> int:
 
     reason = trouble()
     if not reason:
-        from gainbench_app.window import open_window
+        from gainbench_app.session import open_window
 
         return open_window(path)
     sys.stderr.write(f"gainbench: no window can be opened: {reason}. Here is the assessment instead.\n")

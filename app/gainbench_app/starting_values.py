@@ -6,7 +6,7 @@ import math
 
 from gainbench.model import DesignMethod, Sheet
 from gainbench.plant import Plant
-from gainbench.results import LoopAssessment
+from gainbench.results import Gains, LoopAssessment
 from gainbench.sheetfile import EntryValue
 from gainbench.units import Dimension, format_quantity
 from gainbench_app.sheet_edits import LIVE_DIGITS, METHOD_KEYS, loop_aims
@@ -49,7 +49,7 @@ def starting_values(
     aims = loop_aims(sheet, loop)
     path = f"aims.{loop}"
     if method is DesignMethod.BY_HAND:
-        return {} if aims.hand is not None else _hand(loop, assessed)
+        return {} if aims.hand is not None else gains_by_hand(loop, assessed.gains)
     values = _values(sheet, loop, plant=plant, assessed=assessed)
     return {f"{path}.{key}": _text(key, values[key]) for key in METHOD_KEYS[method] if getattr(aims, key) is None}
 
@@ -92,9 +92,22 @@ def _text(key: str, value: float) -> EntryValue:
     return format_quantity(value, unit, Dimension.FREQUENCY, digits=LIVE_DIGITS)
 
 
-def _hand(loop: str, assessed: LoopAssessment) -> dict[str, EntryValue]:
-    """The gains in force; ti and wi go, since a sheet holds one of the three."""
-    path, gains = f"aims.{loop}", assessed.gains
+def gains_by_hand(loop: str, gains: Gains | None) -> dict[str, EntryValue]:
+    """Gains as texts for the keys of a loop by hand.
+
+    Parameters
+    ----------
+    loop : str
+        ``"current"`` or ``"speed"``.
+    gains : Gains or None
+        SI; without any there is nothing to write.
+
+    Returns
+    -------
+    dict
+        Dotted paths and texts; ti and wi go, since a sheet holds one of the three.
+    """
+    path = f"aims.{loop}"
     if gains is None:
         return {}
     if loop == "current":

@@ -163,6 +163,11 @@ QWidget {{ color: {theme.ink}; background: transparent; }}
 QMainWindow, QDialog, QMessageBox, #paper {{ background: {theme.paper}; }}
 QToolTip {{ background: {theme.card}; color: {theme.ink}; border: 1px solid {theme.rule}; padding: 4px; }}
 #topBar {{ background: {theme.paper}; border-bottom: 1px solid {theme.rule}; }}
+#shelf {{ background: {theme.paper}; border-top: 1px solid {theme.rule}; }}
+#shelf QTableView {{ background: transparent; border: 0; }}
+#shelf QHeaderView {{ background: transparent; border: 0; }}
+#shelf QPushButton[flat="true"] {{ font-size: {SMALL_PX}px; }}
+QPushButton[flat="true"]:disabled {{ color: {theme.outline}; border: 0; }}
 #sideLeft {{ border-right: 1px solid {theme.rule}; }}
 #sideRight {{ border-left: 1px solid {theme.rule}; }}
 #card {{ background: {theme.card}; border: 1px solid {theme.rule}; border-radius: 6px; }}
@@ -195,6 +200,10 @@ QComboBox[quiet="true"] {{ border: 0; border-bottom: 1px solid {theme.outline}; 
   padding: 1px 18px 1px 3px; }}
 QComboBox[quiet="true"]:focus {{ border-bottom: 2px solid {theme.ink}; padding-bottom: 0; }}
 QComboBox[wrong="true"] {{ border: 2px solid {theme.breaks}; border-radius: 3px; }}
+QLineEdit[spread="true"] {{ border-bottom: 1px solid transparent; color: {theme.muted}; font-size: {SMALL_PX}px; }}
+QLineEdit[spread="true"]:hover {{ border-bottom: 1px solid {theme.outline}; }}
+QLineEdit[spread="true"]:focus {{ border-bottom: 2px solid {theme.ink}; color: {theme.ink}; }}
+QLineEdit[spread="true"][wrong="true"] {{ border: 2px solid {theme.breaks}; }}
 #title {{ border-bottom: 1px solid transparent; }}
 #title:focus {{ border-bottom: 2px solid {theme.ink}; }}
 QPushButton::menu-indicator {{ width: 0; image: none; }}

@@ -37,16 +37,20 @@ class TopBar(QWidget):
         self.reason = QLabel()
         self.reason.setProperty("role", "small")
         self.open = QPushButton("Open")
+        self.open.setToolTip("open a bench sheet (Ctrl+O); one can be dropped on the window as well")
         self.save = QPushButton("Save")
+        self.save.setToolTip("save the bench sheet (Ctrl+S)")
+        self.keep = QPushButton("Keep this tuning")
+        self.keep.setToolTip("put the gains in force on the shelf, under a name (Ctrl+K)")
         self.handover = QPushButton("Handover")
         self.more = QPushButton("More")
         self.more.setMenu(menu)
-        self.more.setAccessibleName("more: undo, demo sheets, theme")
+        self.more.setAccessibleName("more: undo, sheets, pictures, theme")
         line.addWidget(self.title)
         line.addWidget(self.saved)
         line.addStretch(1)
         line.addWidget(self.reason)
-        for button in (self.open, self.save, self.handover, self.more):
+        for button in (self.open, self.save, self.keep, self.handover, self.more):
             line.addWidget(button)
         desk.changed.connect(self.refresh)
         self.refresh()
@@ -77,6 +81,12 @@ class TopBar(QWidget):
         self.handover.setToolTip(refused or "write the header for the firmware (Ctrl+E)")
         self.handover.setAccessibleDescription(refused)
         self.reason.setText(refused)
+
+    def show_keep(self, refused: str) -> None:
+        """Whether there are gains to keep, with the reason where not."""
+        if self.keep.isEnabled() is bool(refused):
+            self.keep.setEnabled(not refused)
+            self.keep.setAccessibleDescription(refused)
 
     def _fit(self) -> None:
         text = self.title.text() or self.title.placeholderText()

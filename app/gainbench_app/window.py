@@ -3,63 +3,81 @@
 from __future__ import annotations
 
 import gc
-import sys
+from collections.abc import Callable
+from dataclasses import replace
 from functools import partial
 from pathlib import Path
 
-from PySide6.QtCore import QSettings, Qt, QTimer
-from PySide6.QtGui import QCloseEvent, QGuiApplication, QKeySequence, QShortcut
+from PySide6.QtCore import QPoint, Qt, QUrl
+from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent, QResizeEvent, QShortcut
 from PySide6.QtWidgets import (
     QApplication,
     QFrame,
     QHBoxLayout,
     QLabel,
     QMainWindow,
+    QMenu,
     QScrollArea,
     QVBoxLayout,
     QWidget,
 )
 
-from gainbench.assess import warm_up
 from gainbench.errors import GainbenchError, SheetError
 from gainbench.handover import refusal
-from gainbench.sheetfile import SUFFIX, SheetDocument, parse_sheet, read_sheet
+from gainbench.sheetfile import SUFFIX
 from gainbench_app.desk import Desk
 from gainbench_app.dialogs import Dialogs, Unsaved
+from gainbench_app.habits import Memory, with_recent, without_recent
 from gainbench_app.hand_over import hand_over
-from gainbench_app.live import Readiness, WarmUp
+from gainbench_app.live import Readiness
 from gainbench_app.menu import WindowMenu
 from gainbench_app.on_bench.column import OnBench
-from gainbench_app.theme import DARK, LIGHT, MARGIN_PX, Scheme, Theme, body_font, palette, style_sheet
+from gainbench_app.pictures import copy_picture, save_picture
+from gainbench_app.places import config_folder
+from gainbench_app.printing import Page, print_page
+from gainbench_app.shelf.panel import ShelfPanel
+from gainbench_app.shelf.tunings import Key, Kind, Shelf
+from gainbench_app.shortcuts import ShortcutList, sequences
+from gainbench_app.theme import MARGIN_PX
 from gainbench_app.top_bar import TopBar
 from gainbench_app.what_it_does.column import WhatItDoes
 from gainbench_app.what_we_ask.column import WhatWeAsk
 from gainbench_app.widgets.appearance import Appearance
+from gainbench_app.widgets.figure import Figure
 from gainbench_app.widgets.value_box import ValueBox
 from gainbench_resources import demo_sheet, demo_sheet_names
 
 _LEFT_PX, _RIGHT_PX = 334, 300
-_SETTINGS = ("Gainbench", "Gainbench")
-_SCHEME_KEY = "theme"
+_SHEET_ENDINGS = (".toml",)
+"""Of files that can be dropped on the window."""
 
 
 class Window(QMainWindow):
     """One open sheet."""
 
     def __init__(
-        self, desk: Desk, *, appearance: Appearance, dialogs: Dialogs | None = None, parent: QWidget | None = None
+        self,
+        desk: Desk,
+        *,
+        appearance: Appearance,
+        dialogs: Dialogs | None = None,
+        memory: Memory | None = None,
+        parent: QWidget | None = None,
     ) -> None:
         super().__init__(parent)
         self.desk = desk
         self.dialogs = dialogs or Dialogs()
         self.appearance = appearance
+        self.memory = memory or Memory(config_folder() / "window.json")
         self.menu_of_more = WindowMenu(demo_sheet_names(), self)
         self.top = TopBar(desk, self.menu_of_more)
         self.on_bench = OnBench(desk, appearance)
         self.what_it_does = WhatItDoes(desk, appearance)
         self.what_we_ask = WhatWeAsk(desk, appearance)
+        self.shelf = ShelfPanel(Shelf(desk, self), appearance, dialogs=self.dialogs, hand_over=self.hand_over_tuning)
         self._lay_out()
         self._connect()
+        self.setAcceptDrops(True)
         self.setMinimumSize(1180, 660)
         room = self.screen().availableSize()
         self.resize(min(1400, room.width()), min(900, room.height()))
@@ -88,27 +106,47 @@ class Window(QMainWindow):
         line.addWidget(self.middle, 1)
         line.addWidget(self.right)
         outer.addLayout(line, 1)
+        outer.addWidget(self.shelf)
         self.setCentralWidget(self.page)
 
     def _connect(self) -> None:
         self.top.open.clicked.connect(self.open)
         self.top.save.clicked.connect(self.save)
+        self.top.keep.clicked.connect(self.keep)
         self.top.handover.clicked.connect(self.handover)
         menu = self.menu_of_more
         menu.save_as.triggered.connect(self.save_as)
         menu.undo.triggered.connect(self.undo)
         menu.redo.triggered.connect(self.redo)
         menu.demo_chosen.connect(self.open_demo)
+        menu.recent_chosen.connect(lambda path: self.open_recent(Path(path)))
+        menu.recent.aboutToShow.connect(lambda: menu.show_recent(self.memory.habits().recent))
+        menu.aboutToShow.connect(lambda: menu.show_recent(self.memory.habits().recent))
+        menu.paste_rows.triggered.connect(self.paste_rows)
+        menu.copy_picture.triggered.connect(lambda: copy_picture(self.figures()))
+        menu.save_picture.triggered.connect(lambda: self.save_picture(self.figures()))
+        menu.print.triggered.connect(self.print)
+        menu.scale_chosen.connect(self.choose_scale)
+        menu.show_scale(self.memory.habits().scale)
+        menu.shortcuts.triggered.connect(self.show_shortcuts)
         menu.quit.triggered.connect(self.close)
-        for keys, action in (
-            (QKeySequence.StandardKey.Open, self.open),
-            (QKeySequence.StandardKey.Save, self.save),
-            ("Ctrl+E", self.handover),
-            ("Ctrl+1", lambda: self.on_bench.cards[0].head.setFocus()),
-            ("Ctrl+2", lambda: self.what_it_does.spans.buttons["whole"].setFocus()),
-            ("Ctrl+3", lambda: self.what_we_ask.speed.method.setFocus()),
-        ):
-            QShortcut(QKeySequence(keys), self).activated.connect(action)
+        acts: dict[str, Callable[[], object]] = {
+            "open": self.open,
+            "save": self.save,
+            "keep": self.keep,
+            "handover": self.handover,
+            "bench": self.on_bench.cards[0].head.setFocus,
+            "does": self.what_it_does.spans.buttons["whole"].setFocus,
+            "ask": self.what_we_ask.speed.method.setFocus,
+            "shelf": self.shelf.table.setFocus,
+        }
+        for name, act in acts.items():
+            for keys in sequences(name):
+                QShortcut(keys, self).activated.connect(partial(_call, act))
+        for figure in self.findChildren(Figure):
+            figure.setContextMenuPolicy(Qt.ContextMenuPolicy.CustomContextMenu)
+            figure.customContextMenuRequested.connect(partial(self._show_picture_menu, figure))
+        self.what_we_ask.pointed_at.connect(self.on_bench.point_at)
         self.desk.changed.connect(self._show_title)
         self.desk.changed.connect(self._show_handover)
         self.desk.assessed.connect(self._show_handover)
@@ -127,6 +165,15 @@ class Window(QMainWindow):
 
     def _show_handover(self) -> None:
         self.top.show_handover(self.handover_refusal())
+        self.top.show_keep("" if self._has_gains() else "there are no gains to keep")
+
+    def _has_gains(self) -> bool:
+        found = self.desk.assessment
+        return found is not None and found.current.gains is not None and found.speed.gains is not None
+
+    def figures(self) -> list[Figure]:
+        """The plots that are shown, from top to bottom, maps and small ones left out."""
+        return [one for one in self.what_it_does.findChildren(Figure) if one.isVisible()]
 
     def handover_refusal(self) -> str:
         """Why nothing can be handed over; empty where it can."""
@@ -136,6 +183,9 @@ class Window(QMainWindow):
             return "no handover yet: nothing is assessed"
         if self.desk.readiness is not Readiness.ALL:
             return "no handover yet: the response is being prepared"
+        held = next((loop for loop in ("speed", "current") if self.desk.held(loop)), "")
+        if held:
+            return f"no handover: the {held} loop's gains are held, and not in the sheet"
         if not refusal(self.desk.assessment):
             return ""
         loops = {"current": self.desk.assessment.current, "speed": self.desk.assessment.speed}
@@ -174,6 +224,15 @@ class Window(QMainWindow):
             self.desk.open_path(path)
         except SheetError as error:
             self.dialogs.tell(self, "This sheet cannot be opened", str(error))
+        else:
+            self.memory.change(partial(with_recent, path=path))
+
+    def open_recent(self, path: Path) -> None:
+        """Open a sheet that was open before; one that is gone is forgotten."""
+        if not path.exists():
+            self.memory.change(partial(without_recent, path=path))
+        if self.may_leave():
+            self.open_path(path)
 
     def open_demo(self, name: str) -> None:
         """Open one of the demo sheets."""
@@ -201,7 +260,15 @@ class Window(QMainWindow):
         except SheetError as error:
             self.dialogs.tell(self, "Not saved", str(error))
             return False
+        self.memory.change(partial(with_recent, path=path))
         return True
+
+    def keep(self) -> None:
+        """Ask for a name and put the gains in force on the shelf."""
+        self.finish_typing()
+        self.desk.compute_now()
+        if self._has_gains():
+            self.shelf.keep()
 
     def handover(self) -> None:
         """Ask where to, show the cautions, and write the firmware's header."""
@@ -213,6 +280,98 @@ class Window(QMainWindow):
             hand_over(self, self.desk, self.dialogs)
         except GainbenchError as error:
             self.dialogs.tell(self, "Nothing was handed over", str(error))
+
+    def hand_over_tuning(self, key: Key) -> None:
+        """Write the header of a tuning of the shelf."""
+        if key.kind is Kind.LIVE:
+            self.handover()
+            return
+        self.finish_typing()
+        if not self.desk.valid or self.desk.readiness is not Readiness.ALL:
+            self.dialogs.tell(self, "Nothing was handed over", self.handover_refusal())
+            return
+        try:
+            hand_over(self, self.desk, self.dialogs, tuning=key.name)
+        except GainbenchError as error:
+            self.dialogs.tell(self, "Nothing was handed over", str(error))
+
+    def paste_rows(self) -> None:
+        """Show what rows of a data sheet would set, and set what is confirmed."""
+        self.finish_typing()
+        chosen = self.dialogs.rows_to_set(self, self.desk)
+        if chosen:
+            self.desk.set_values(chosen)
+
+    def show_shortcuts(self) -> None:
+        """Show the list of shortcuts."""
+        self.dialogs.show(ShortcutList(self))
+
+    def choose_scale(self, scale: int) -> None:
+        """Remember another size; Qt takes it up at the next start only."""
+        self.memory.change(lambda habits: replace(habits, scale=scale))
+        self.dialogs.tell(self, "Size", f"The window has {scale} % of its size from the next start on.")
+
+    # Pictures and paper
+
+    def _show_picture_menu(self, figure: Figure, at: QPoint) -> None:
+        menu = QMenu(self)
+        menu.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
+        menu.addAction("Copy picture").triggered.connect(lambda: copy_picture([figure]))
+        menu.addAction("Save picture...").triggered.connect(lambda: self.save_picture([figure]))
+        menu.popup(figure.mapToGlobal(at))
+
+    def save_picture(self, figures: list[Figure]) -> None:
+        """Ask for a file and save a picture of plots."""
+        name = (self.desk.state.document.name or "sheet").removesuffix(SUFFIX)
+        path = self.dialogs.picture_to_save(self, f"{name}.png")
+        if path is None:
+            return
+        try:
+            save_picture(figures, path, title=self.desk.sheet.title)
+        except SheetError as error:
+            self.dialogs.tell(self, "The picture was not saved", str(error))
+
+    def print(self) -> None:
+        """Ask for a printer and print what is shown."""
+        self.finish_typing()
+        self.desk.compute_now()
+        self.shelf.shelf.compute_now()
+        device = self.dialogs.printer(self)
+        if device is not None:
+            print_page(device, self.printed())
+
+    def printed(self) -> Page:
+        """What is printed."""
+        rows = [line.split("\t") for line in self.shelf.model.as_text(markdown=False).splitlines()]
+        return Page(
+            title=self.desk.sheet.title,
+            file=str(self.desk.path or self.desk.state.document.name),
+            verdict=self.what_it_does.words.text(),
+            figures=self.figures(),
+            heads=rows[0][1:],
+            rows=rows[1:],
+            findings=self.desk.assessment.findings if self.desk.assessment is not None else (),
+        )
+
+    # Dropping a sheet
+
+    def dragEnterEvent(self, event: QDragEnterEvent) -> None:  # noqa: N802
+        """Take sheets that are dragged over."""
+        if _dropped(event.mimeData().urls()) is not None:
+            event.acceptProposedAction()
+
+    def dropEvent(self, event: QDropEvent) -> None:  # noqa: N802
+        """Open the sheet."""
+        path = _dropped(event.mimeData().urls())
+        if path is not None:
+            event.acceptProposedAction()
+            if self.may_leave():
+                self.open_path(path)
+
+    def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802
+        """A low window has a low shelf."""
+        super().resizeEvent(event)
+        self.shelf.follow_height(self.height())
 
     def may_leave(self) -> bool:
         """Whether the open sheet may be left: unsaved work is asked about."""
@@ -241,6 +400,17 @@ class Window(QMainWindow):
             event.ignore()
 
 
+def _call(act: Callable[[], object]) -> None:
+    act()
+
+
+def _dropped(urls: list[QUrl]) -> Path | None:
+    """The one sheet among what is dropped."""
+    paths = [Path(one.toLocalFile()) for one in urls if one.isLocalFile()]
+    sheets = [one for one in paths if one.suffix.lower() in _SHEET_ENDINGS]
+    return sheets[0] if len(sheets) == len(paths) == 1 else None
+
+
 def _column(name: str, inner: QWidget, *, scrolls: bool) -> QFrame:
     frame = QFrame()
     frame.setAccessibleName(name)
@@ -263,92 +433,3 @@ def _column(name: str, inner: QWidget, *, scrolls: bool) -> QFrame:
         inner.setContentsMargins(12, 0, 12, 12)
         layout.addWidget(inner, 1)
     return frame
-
-
-class Themes:
-    """Puts a theme in force: the system's, or one of the two."""
-
-    def __init__(self, application: QApplication, appearance: Appearance, *, menu: WindowMenu, scheme: Scheme) -> None:
-        self._application = application
-        self._appearance = appearance
-        self._scheme = scheme
-        menu.show_scheme(scheme)
-        menu.scheme_chosen.connect(self.choose)
-        hints = QGuiApplication.styleHints()
-        hints.colorSchemeChanged.connect(self._apply)
-        self._apply()
-
-    @property
-    def scheme(self) -> Scheme:
-        """What was chosen."""
-        return self._scheme
-
-    def choose(self, scheme: Scheme) -> None:
-        """Choose another one."""
-        self._scheme = scheme
-        self._apply()
-
-    def _theme(self) -> Theme:
-        if self._scheme is Scheme.FOLLOW:
-            dark = QGuiApplication.styleHints().colorScheme() is Qt.ColorScheme.Dark
-            return DARK if dark else LIGHT
-        return DARK if self._scheme is Scheme.DARK else LIGHT
-
-    def _apply(self) -> None:
-        theme = self._theme()
-        self._application.setPalette(palette(theme))
-        self._application.setStyleSheet(style_sheet(theme))
-        self._appearance.show(theme)
-
-
-def open_window(path: str | None) -> int:
-    """Open the window and run until it is closed.
-
-    Parameters
-    ----------
-    path : str, optional
-        A bench sheet; without one the demo sheet opens. One that cannot be read is said in a dialog over the demo.
-
-    Returns
-    -------
-    int
-        Exit status of the application.
-    """
-    existing = QApplication.instance()
-    application = existing if isinstance(existing, QApplication) else QApplication(sys.argv[:1])
-    application.setApplicationName("Gainbench")
-    application.setStyle("Fusion")
-    application.setFont(body_font())
-    document, file, trouble = _first_document(path)
-    desk = Desk(document, path=file, readiness=Readiness.NOTHING)
-    appearance = Appearance()
-    window = Window(desk, appearance=appearance)
-    settings = QSettings(*_SETTINGS)
-    stored = str(settings.value(_SCHEME_KEY, Scheme.FOLLOW.value))
-    scheme = Scheme(stored) if stored in set(Scheme) else Scheme.FOLLOW
-    themes = Themes(application, appearance, menu=window.menu_of_more, scheme=scheme)
-    warming = WarmUp(partial(warm_up, simulated=False), warm_up)
-    warming.reached.connect(desk.reach)
-    warming.finished.connect(window.settle_memory)
-    warming.failed.connect(window.tell_failure)
-    window.show()
-    warming.start()
-    if trouble:
-        QTimer.singleShot(0, window, lambda: window.dialogs.tell(window, "This sheet cannot be opened", trouble))
-    status = application.exec()
-    settings.setValue(_SCHEME_KEY, themes.scheme.value)
-    warming.requestInterruption()
-    warming.wait()
-    return status
-
-
-def _first_document(path: str | None) -> tuple[SheetDocument, Path | None, str]:
-    """The sheet to open with, its file, and what is to be said about one that cannot be read."""
-    trouble = ""
-    if path is not None:
-        try:
-            return read_sheet(path), Path(path), ""
-        except SheetError as error:
-            trouble = str(error)
-    file = demo_sheet(demo_sheet_names()[0])
-    return parse_sheet(file.read_text(encoding="utf-8"), file.name), None, trouble

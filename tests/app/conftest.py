@@ -37,6 +37,14 @@ class Answers:
         self.asked: list[str] = []
         self.told: list[tuple[str, str]] = []
         self.requests: list[object] = []
+        self.named: tuple[str, str] | None = None
+        self.noted: str | None = None
+        self.picture: Path | None = None
+        self.device = None
+        self.recovery = "later"
+        self.recovered: list[str] = []
+        self.rows: dict[str, str] = {}
+        self.shown: list[object] = []
 
     def sheet_to_open(self, parent):
         self.asked.append("open")
@@ -59,6 +67,35 @@ class Answers:
     def replace_file(self, parent, path):
         self.asked.append(f"replace {path.name}")
         return self.replace
+
+    def name_of_tuning(self, parent, suggestion):
+        from gainbench_app.keep_dialog import NamedTuning
+
+        self.asked.append(f"name {suggestion}")
+        return NamedTuning(name=self.named[0], note=self.named[1]) if self.named is not None else None
+
+    def note(self, parent, name, note):
+        self.asked.append(f"note {name}: {note}")
+        return self.noted
+
+    def picture_to_save(self, parent, suggestion):
+        self.asked.append(f"picture {suggestion}")
+        return self.picture
+
+    def printer(self, parent):
+        return self.device
+
+    def recover(self, parent, name, when):
+        from gainbench_app.dialogs import Recovery
+
+        self.recovered.append(name)
+        return Recovery(self.recovery)
+
+    def rows_to_set(self, parent, desk):
+        return self.rows
+
+    def show(self, dialog):
+        self.shown.append(dialog)
 
     def tell(self, parent, title, message):
         self.told.append((title, message))

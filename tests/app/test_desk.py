@@ -215,3 +215,80 @@ def test_a_text_that_cannot_be_edited_is_told(desk, qtbot, monkeypatch):
     with qtbot.waitSignal(desk.trouble):
         desk.set_values({"machine.resistance": "0.7 ohm"})
     assert desk.sheet.rig.machine.resistance == pytest.approx(0.6)
+
+
+def test_a_drag_in_the_reach_map_moves_two_targets_as_one_step(desk):
+    desk.begin_gesture("aims.speed")
+    for hertz, degrees in ((50.0, 65.0), (40.0, 70.0)):
+        values = {"aims.speed.crossover": math.tau * hertz, MARGIN: math.radians(degrees)}
+        desk.move_all("aims.speed", values)
+        desk.compute_now()
+    desk.end_gesture()
+    assert (desk.text("aims.speed.crossover"), desk.text(MARGIN)) == ("40 Hz", "70 deg")
+    desk.undo()
+    assert (desk.text("aims.speed.crossover"), desk.text(MARGIN)) == ("60 Hz", "60 deg")
+    assert not desk.can_undo
+
+
+@pytest.mark.parametrize(("hertz", "degrees"), [(60.0, 89.9), (900.0, 60.0)])
+def test_a_drag_in_the_reach_map_stops_at_the_edge(desk, hertz, degrees):
+    desk.begin_gesture("aims.speed")
+    desk.move_all("aims.speed", {"aims.speed.crossover": math.tau * hertz, MARGIN: math.radians(degrees)})
+    desk.compute_now()
+    desk.end_gesture()
+    assert desk.assessment.speed.refusal is None
+    assert desk.assessment.sheet == desk.sheet
+
+
+def test_gains_are_held_as_a_state_of_the_desk_that_can_be_taken_back(desk):
+    gains = desk.assessment.current.gains
+    desk.hold("current", True)
+    assert desk.held("current")
+    assert not desk.held("speed")
+    assert desk.unsaved_since is None
+    desk.set_values({"machine.inductance": "0.9 mH"})
+    desk.compute_now()
+    assert desk.held("current")
+    assert desk.assessment.current.gains == gains
+    assert desk.sheet.aims.current.method is DesignMethod.CROSSOVER_MARGIN
+    assert "by-hand" not in desk.settled_document().text()
+    desk.undo()
+    desk.undo()
+    desk.compute_now()
+    assert not desk.held("current")
+    assert not desk.can_undo
+    desk.redo()
+    assert desk.held("current")
+
+
+def test_another_method_lets_go_of_held_gains(desk):
+    desk.hold("speed", True)
+    desk.choose_method("speed", DesignMethod.POLE_PLACEMENT)
+    assert not desk.held("speed")
+    desk.undo()
+    assert desk.held("speed")
+    assert desk.sheet.aims.speed.method is DesignMethod.CROSSOVER_MARGIN
+
+
+def test_gains_that_are_not_there_are_not_held(desk):
+    desk.set_values({"aims.speed.crossover": "900 Hz"})
+    desk.compute_now()
+    desk.hold("speed", True)
+    desk.take_over("speed")
+    assert not desk.held("speed")
+    assert desk.sheet.aims.speed.method is DesignMethod.CROSSOVER_MARGIN
+
+
+def test_gains_in_force_become_gains_by_hand_over_older_ones(desk):
+    desk.set_values({"aims.speed.kp": "9 A*s/rad", "aims.speed.ti": "1 s"})
+    desk.compute_now()
+    gains = desk.assessment.speed.gains
+    desk.hold("speed", True)
+    desk.set_values({"train.load_inertia": "7.2 kg*cm^2"})
+    desk.take_over("speed")
+    desk.compute_now()
+    assert desk.sheet.aims.speed.method is DesignMethod.BY_HAND
+    assert desk.text("aims.speed.ti") is None
+    assert desk.assessment.speed.gains.kp == pytest.approx(gains.kp, rel=1e-4)
+    assert desk.assessment.speed.gains.ki == pytest.approx(gains.ki, rel=1e-4)
+    assert not desk.held("speed")

@@ -1,7 +1,9 @@
 import math
+from dataclasses import replace
 
 import pytest
 
+from gainbench.model import DesignMethod, HandGains
 from gainbench.sheetfile import parse_sheet
 from gainbench_app.desk_state import State, as_text, moved, settled, typed
 
@@ -96,3 +98,18 @@ def test_comments_and_order_survive(state):
 
 def test_entries_stand_in_a_box_as_in_the_sheet():
     assert [as_text(one) for one in (True, False, 0.5, 3, "1 kHz")] == ["true", "false", "0.5", "3", "1 kHz"]
+
+
+def test_held_gains_are_assessed_and_not_in_the_sheet(demo_texts):
+    document = parse_sheet(demo_texts["label-unwinder"], "x.bench.toml")
+    free = State(document=document, sheet=document.sheet)
+    assert free.assessed_sheet is free.sheet
+    hand = HandGains(kp=0.3, ki=20.0)
+    held = replace(free, held={"speed": hand})
+    assert held.assessed_sheet.aims.speed.method is DesignMethod.BY_HAND
+    assert held.assessed_sheet.aims.speed.hand == hand
+    assert held.assessed_sheet.aims.current == free.sheet.aims.current
+    assert held.sheet == free.sheet
+    for values in ({"machine.inductance": "0.9 mH"}, {"machine.inductance": "0.9 kg"}):
+        assert typed(held, values).state.held == held.held
+    assert moved(held, "aims.current.crossover", 5000.0).held == held.held

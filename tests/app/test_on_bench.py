@@ -1,15 +1,17 @@
 import math
+from dataclasses import fields
 
 import pytest
 from PySide6.QtCore import Qt
 
 from gainbench.derived import derived_constants
-from gainbench.model import MachineKind
+from gainbench.model import Duty, Machine, MachineKind, Stage, Train
 from gainbench.plant import refer
 from gainbench.sheetfile import parse_sheet, quantity_paths
 from gainbench_app.desk import Desk
 from gainbench_app.on_bench import entries, follows
 from gainbench_app.on_bench.column import OnBench
+from gainbench_app.on_bench.meanings import MEANINGS
 from gainbench_app.theme import strong
 
 RETURN = Qt.Key.Key_Return
@@ -45,6 +47,84 @@ def test_every_quantity_of_the_bench_has_a_box():
     shown = {entry.path for entry in all_entries()}
     tables = ("machine.", "train.", "stage.", "duty.")
     assert {path for path in quantity_paths() if path.startswith(tables)} <= shown
+
+
+def test_every_key_of_the_bench_has_a_box_and_a_meaning():
+    shown = {entry.path for entry in all_entries()}
+    kinds = {"machine.kind", "train.kind"}
+    for table, model in (("machine", Machine), ("train", Train), ("stage", Stage), ("duty", Duty)):
+        keys = {f"{table}.{one.name}" for one in fields(model)}
+        assert keys <= shown | kinds
+        assert keys <= MEANINGS.keys()
+    assert shown | kinds == MEANINGS.keys()
+
+
+def test_each_kind_shows_the_keys_it_uses():
+    brushed, sine, block = ({one.path for one in entries.machine_entries(kind)} for kind, _ in entries.MACHINE_KINDS)
+    assert "machine.speed_constant" in brushed
+    assert not {"machine.pole_pairs", "machine.current_values"} & brushed
+    assert {"machine.pole_pairs", "machine.winding_values", "machine.current_values", "machine.back_emf_values"} <= sine
+    assert "machine.speed_constant" not in sine
+    assert {"machine.pole_pairs", "machine.winding_values", "machine.speed_constant"} <= block
+    assert "machine.current_values" not in block
+    rigid, elastic = ({one.path for one in entries.train_entries(kind)} for kind, _ in entries.TRAIN_KINDS)
+    assert elastic - rigid == {"train.shaft_stiffness", "train.shaft_damping"}
+
+
+def test_what_it_means_is_told_when_it_is_pointed_at(column):
+    row = column.row("stage.update_delay")
+    assert "in current periods" in row.box.toolTip()
+    assert "stage.update_delay" in row.box.toolTip()
+    assert "machine.kind" in column.machine.kind.toolTip()
+
+
+def test_a_tolerance_is_typed_and_taken_out(column, desk, qtbot):
+    box = column.row("machine.inductance").tolerance
+    box.setFocus()
+    qtbot.keyClicks(box, "15 %")
+    qtbot.keyClick(box, RETURN)
+    assert desk.text('tolerance."machine.inductance"') == "15 %"
+    assert box.text() == "±15 %"
+    assert desk.sheet.tolerances[-1].relative == pytest.approx(0.15)
+    box.selectAll()
+    qtbot.keyClicks(box, "± 0.01 mH")
+    qtbot.keyClick(box, RETURN)
+    assert desk.sheet.tolerances[-1].absolute == pytest.approx(1e-5)
+    box.selectAll()
+    qtbot.keyClick(box, Qt.Key.Key_Delete)
+    qtbot.keyClick(box, RETURN)
+    assert desk.text('tolerance."machine.inductance"') is None
+
+
+def test_a_tolerance_that_is_refused_is_marked_and_says_why(column, desk, qtbot):
+    row = column.row("machine.inductance")
+    row.tolerance.setFocus()
+    qtbot.keyClicks(row.tolerance, "200 %")
+    qtbot.keyClick(row.tolerance, RETURN)
+    assert row.tolerance.property("wrong") is True
+    assert row.tolerance.text() == "±200 %"
+    assert "tolerance: " in row.reason.text()
+    assert not row.reason.isHidden()
+    assert row.box.property("wrong") is not True
+    assert not desk.valid
+
+
+def test_only_quantities_have_a_tolerance():
+    without = {one.path for one in all_entries() if not one.spread}
+    assert {"stage.encoder_counts", "machine.pole_pairs", "stage.speed_sensor", "duty.length"} <= without
+    assert "machine.resistance" not in without
+
+
+def test_the_delays_of_both_loops_are_told(demo_texts):
+    sheet = parse_sheet(demo_texts["label-unwinder"], "x.bench.toml").sheet
+    # One period of 20 kHz and half a hold; half a period of 2 kHz for the hold and half for the window: by hand.
+    budget = follows.delay_budget(sheet.rig.stage)
+    current, speed = budget.splitlines()
+    assert current == "current loop: update delay 50 µs, half a hold 25 µs"
+    assert speed == "speed loop: half a hold 250 µs, speed window 250 µs"
+    line = follows.stage_line(derived_constants(sheet.rig), refer(sheet.rig), sheet).replace("\N{NO-BREAK SPACE}", " ")
+    assert "current loop delay " + strong("75 µs") in line
+    assert "speed loop delay " + strong("500 µs") in line
 
 
 def test_typing_a_value_is_taken_as_typed(column, desk, qtbot):
@@ -135,6 +215,7 @@ def test_an_entry_behind_more_comes_out_where_it_is_wrong(column, qtbot):
 def test_tolerances_stand_beside_their_boxes(column):
     assert column.row("machine.resistance").tolerance.text() == "±10 %"
     assert column.row("machine.inductance").tolerance.text() == ""
+    assert column.row("machine.resistance").tolerance.accessibleName() == "tolerance of resistance"
 
 
 @pytest.mark.parametrize("name", ["label-unwinder", "sieve-drum", "bottle-indexer"])

@@ -21,9 +21,9 @@ def bench(tmp_path, demo_texts):
 def opened(monkeypatch, bench):
     """What the window was opened on; the window itself is left out."""
     paths = []
-    window = ModuleType("gainbench_app.window")
+    window = ModuleType("gainbench_app.session")
     window.open_window = lambda path: paths.append(path) or 0
-    monkeypatch.setitem(sys.modules, "gainbench_app.window", window)
+    monkeypatch.setitem(sys.modules, "gainbench_app.session", window)
     monkeypatch.setattr(display, "trouble", lambda: "")
     monkeypatch.chdir(bench)
     return paths

@@ -10,7 +10,6 @@ from gainbench_app.widgets.card import Card
 from gainbench_app.widgets.choice_box import ChoiceBox
 from gainbench_app.widgets.entry_row import Entry, EntryRow
 from gainbench_app.widgets.figure import Axes, Figure, paint_band, paint_dashed, paint_hatched, paint_line
-from gainbench_app.widgets.legend import Legend
 from gainbench_app.widgets.level_mark import LevelMark
 from gainbench_app.widgets.scales import Range
 from gainbench_app.widgets.slim_slider import SlimSlider
@@ -140,7 +139,7 @@ def test_a_choice_is_heard_once(qtbot, appearance):
 
 
 def test_an_entry_row_says_why_its_text_is_refused(qtbot, appearance):
-    row = EntryRow(Entry(path="machine.resistance", name="resistance"), appearance)
+    row = EntryRow(Entry(path="machine.resistance", name="resistance", spread=True), appearance)
     qtbot.addWidget(row)
     row.show_entry("0.6 kg", "a resistance is meant", "10 %")
     assert row.box.text() == "0.6 kg"
@@ -318,12 +317,13 @@ def test_a_card_folds_to_what_follows(qtbot, appearance):
 
 
 def test_the_theme_changes_what_is_painted(qtbot, appearance):
-    legend = Legend(appearance, ("speed", "current"))
-    qtbot.addWidget(legend)
-    legend.resize(legend.sizeHint())
-    assert rgb(LIGHT.current) in colours(legend)
+    mark = LevelMark(appearance)
+    qtbot.addWidget(mark)
+    mark.show_level(Level.BREAKS)
+    mark.resize(mark.sizeHint())
+    assert rgb(LIGHT.breaks) in colours(mark)
     appearance.show(DARK)
-    assert rgb(DARK.current) in colours(legend)
+    assert rgb(DARK.breaks) in colours(mark)
 
 
 # Figures

@@ -1,15 +1,13 @@
 import sys
 
 import pytest
-from PySide6.QtCore import QObject, QSettings, Qt, QTimer
-from PySide6.QtGui import QCloseEvent
+from PySide6.QtCore import QMimeData, QObject, QPointF, Qt, QUrl
+from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent, QGuiApplication
 from PySide6.QtWidgets import QApplication, QWidget
 
 from gainbench.sheetfile import read_sheet
-from gainbench_app import window as window_module
+from gainbench_app.habits import with_recent
 from gainbench_app.live import Readiness
-from gainbench_app.theme import DARK, LIGHT, Scheme
-from gainbench_app.window import Themes, open_window
 
 RETURN = Qt.Key.Key_Return
 LEFT_BUTTON = Qt.MouseButton.LeftButton
@@ -230,18 +228,6 @@ def test_the_title_can_be_changed(window, qtbot, desk):
     assert window.windowTitle().startswith("Label unwinder 2")
 
 
-def test_themes_change_at_once(window, qapp, appearance):
-    sheet, colours = qapp.styleSheet(), qapp.palette()
-    themes = Themes(qapp, appearance, menu=window.menu_of_more, scheme=Scheme.DARK)
-    assert appearance.theme is DARK
-    assert DARK.paper in qapp.styleSheet()
-    window.menu_of_more.schemes[Scheme.LIGHT].trigger()
-    assert themes.scheme is Scheme.LIGHT
-    assert appearance.theme is LIGHT
-    qapp.setStyleSheet(sheet)
-    qapp.setPalette(colours)
-
-
 def test_a_demo_sheet_opens_from_the_menu(window, desk):
     names = [action.text() for action in window.menu_of_more.demos.actions()]
     assert names[0] == "Label unwinder"
@@ -251,49 +237,154 @@ def test_a_demo_sheet_opens_from_the_menu(window, desk):
     assert window.what_it_does.plots.view.trace is desk.assessment.response.trace
 
 
-@pytest.fixture
-def opened(qapp, monkeypatch, tmp_path):
-    """Runs open_window until its response is there, and gives the window's words at the end."""
-
-    def run(path):
-        seen = {}
-        told = []
-        monkeypatch.setattr(window_module.Dialogs, "tell", lambda self, parent, title, message: told.append(message))
-
-        def look():
-            shown = [one for one in QApplication.topLevelWidgets() if one.isVisible()]
-            found = next((one for one in shown if isinstance(one, window_module.Window)), None)
-            if found is not None and found.desk.assessment is not None and found.desk.assessment.response is not None:
-                seen["title"], seen["words"] = found.desk.sheet.title, found.what_it_does.words.text()
-                timer.stop()
-                found.close()
-
-        timer = QTimer()
-        timer.timeout.connect(look)
-        timer.start(20)
-        assert open_window(path) == 0
-        return seen, told
-
-    QSettings.setPath(QSettings.Format.NativeFormat, QSettings.Scope.UserScope, str(tmp_path))
-    sheet = qapp.styleSheet()
-    yield run
-    qapp.setStyleSheet(sheet)
+def dropped(window, paths):
+    data = QMimeData()
+    data.setUrls([QUrl.fromLocalFile(str(path)) for path in paths])
+    action, buttons = Qt.DropAction.CopyAction, Qt.MouseButton.LeftButton
+    enter = QDragEnterEvent(QPointF(9, 9).toPoint(), action, data, buttons, Qt.KeyboardModifier.NoModifier)
+    enter.setAccepted(False)
+    window.dragEnterEvent(enter)
+    if enter.isAccepted():
+        window.dropEvent(QDropEvent(QPointF(9, 9), action, data, buttons, Qt.KeyboardModifier.NoModifier))
+    return enter.isAccepted()
 
 
-def test_it_opens_on_the_demo_sheet(opened):
-    seen, told = opened(None)
-    assert seen == {"title": "Label unwinder", "words": "Both loops hold"}
-    assert told == []
-
-
-def test_it_opens_on_a_sheet_of_ones_own(opened, tmp_path, demo_texts):
+def test_a_sheet_can_be_dropped_on_the_window(window, desk, answers, tmp_path, demo_texts):
     path = tmp_path / "drum.bench.toml"
     path.write_text(demo_texts["sieve-drum"], encoding="utf-8")
-    seen, _ = opened(str(path))
-    assert seen["title"] == "Sieve drum"
+    assert not dropped(window, [tmp_path / "notes.txt"])
+    assert not dropped(window, [path, path])
+    desk.set_values({"machine.inductance": "0.9 mH"})
+    assert dropped(window, [path])
+    assert answers.asked == ["unsaved Label unwinder"]
+    assert desk.sheet.title == "Label unwinder"
+    answers.leave = "discard"
+    assert dropped(window, [path])
+    assert desk.sheet.title == "Sieve drum"
 
 
-def test_a_sheet_that_cannot_be_read_is_told_over_the_demo(opened, tmp_path):
-    seen, told = opened(str(tmp_path / "none.bench.toml"))
-    assert seen["title"] == "Label unwinder"
-    assert "no such file" in told[0]
+def test_sheets_that_were_open_are_remembered(window, desk, answers, tmp_path, demo_texts):
+    path = tmp_path / "drum.bench.toml"
+    path.write_text(demo_texts["sieve-drum"], encoding="utf-8")
+    window.open_path(path)
+    window.menu_of_more.aboutToShow.emit()
+    first = window.menu_of_more.recent.actions()[0]
+    assert first.text() == "drum.bench.toml"
+    window.open_demo("label-unwinder")
+    first.trigger()
+    assert desk.sheet.title == "Sieve drum"
+    gone = tmp_path / "gone.bench.toml"
+    window.memory.change(lambda habits: with_recent(habits, gone))
+    window.open_recent(gone)
+    assert "no such file" in answers.told[-1][1]
+    assert str(gone) not in window.memory.habits().recent
+
+
+def test_keeping_from_the_keyboard_and_recalling(window, qtbot, desk, answers):
+    answers.named = ("second", "a note")
+    qtbot.keyClick(window, Qt.Key.Key_K, CONTROL)
+    assert [one.name for one in desk.sheet.kept] == ["first light", "second"]
+    assert desk.sheet.kept[1].note == "a note"
+    assert window.shelf.row.name == "second"
+    answers.named = ("second", "")
+    qtbot.mouseClick(window.top.keep, LEFT_BUTTON)
+    assert "second" in answers.told[-1][1]
+    desk.set_values({"aims.speed.crossover": "900 Hz"})
+    desk.compute_now()
+    assert not window.top.keep.isEnabled()
+
+
+def test_a_kept_tuning_is_handed_over(window, desk, answers, tmp_path):
+    from gainbench_app.handover_dialog import HandoverChoice
+
+    answers.choice = HandoverChoice(folder=tmp_path, prefix=None)
+    window.shelf.shelf.compute_now()
+    window.shelf.choose(window.shelf.model.shelf_rows[1].key)
+    window.shelf.actions_of_row["hand over"].click()
+    assert "first light" in answers.requests[0].title
+    (header,) = tmp_path.glob("*.h")
+    text = header.read_text(encoding="ascii")
+    assert "first light" in text
+    assert "2.66" in text
+    desk.set_values({"machine.resistance": "0.6 kg"})
+    window.shelf.hand_over()
+    assert len(answers.requests) == 1
+    assert "not valid" in answers.told[-1][1]
+
+
+def test_pictures_are_copied_and_saved(window, qtbot, answers, tmp_path):
+    qtbot.keyClick(window, Qt.Key.Key_C, CONTROL | Qt.KeyboardModifier.ShiftModifier)
+    image = QGuiApplication.clipboard().image()
+    assert image.width() == 2 * max(one.width() for one in window.figures())
+    answers.picture = tmp_path / "plots.svg"
+    window.menu_of_more.save_picture.trigger()
+    assert answers.picture.read_bytes().startswith(b"<?xml")
+    answers.picture = tmp_path / "plots.bmp"
+    window.menu_of_more.save_picture.trigger()
+    assert "saved as .png or .svg" in answers.told[-1][1]
+
+
+def test_what_is_printed_is_what_is_shown(window, desk):
+    window.shelf.shelf.compute_now()
+    page = window.printed()
+    assert page.title == "Label unwinder"
+    assert page.rows[0][0] == "live"
+    assert page.rows[1][0] == "first light"
+    assert len(page.heads) == len(page.rows[0]) - 1
+    assert page.findings == desk.assessment.findings
+
+
+def test_pasted_rows_are_set_once_confirmed(window, desk, answers):
+    answers.rows = {"machine.resistance": "0.207 ohm", "machine.inductance": "0.169 mH"}
+    window.menu_of_more.paste_rows.trigger()
+    assert desk.text("machine.resistance") == "0.207 ohm"
+    desk.undo()
+    assert desk.text("machine.resistance") == "0.60 ohm"
+    assert desk.text("machine.inductance") == "0.45 mH"
+
+
+def test_a_size_is_remembered_for_the_next_start(window, answers):
+    window.menu_of_more.scales[150].trigger()
+    assert window.memory.habits().scale == 150
+    assert "next start" in answers.told[-1][1]
+    window.menu_of_more.scales[100].trigger()
+
+
+def test_the_list_of_shortcuts_is_shown(window, qtbot, answers):
+    qtbot.keyClick(window, Qt.Key.Key_Slash, CONTROL)
+    assert [type(one).__name__ for one in answers.shown] == ["ShortcutList"]
+    answers.shown[0].close()
+
+
+def test_a_low_window_has_a_low_shelf(window, desk):
+    for name in ("two", "three", "four"):
+        window.shelf.shelf.keep(name)
+    window.resize(1400, 900)
+    QApplication.processEvents()
+    high = window.shelf.table.height()
+    window.resize(1280, 720)
+    QApplication.processEvents()
+    assert window.shelf.table.height() == high - 24
+
+
+def test_a_finding_leads_to_an_entry_of_the_bench(window, qtbot):
+    findings = window.what_we_ask.findings
+    index = next(k for k, one in enumerate(findings.shown) if "speed_window" in one.advice)
+    row = window.on_bench.row("stage.speed_window")
+    assert row.isHidden()
+    findings.row(index).setFocus()
+    qtbot.keyClick(findings.row(index), Qt.Key.Key_Return)
+    assert row.isVisible()
+    assert row.box.hasFocus()
+    assert not row.box.visibleRegion().isEmpty()
+
+
+def test_gains_that_are_held_are_not_handed_over(window, desk, qtbot):
+    assert window.handover_refusal() == ""
+    qtbot.mouseClick(window.what_we_ask.speed.hold, Qt.MouseButton.LeftButton)
+    desk.compute_now()
+    assert "held" in window.handover_refusal()
+    assert not window.top.handover.isEnabled()
+    desk.undo()
+    desk.compute_now()
+    assert window.handover_refusal() == ""

@@ -28,7 +28,7 @@ WINDOW = """
 import sys, time
 from PySide6.QtCore import QTimer
 from PySide6.QtWidgets import QApplication
-from gainbench_app.window import open_window
+from gainbench_app.session import open_window
 application = QApplication(sys.argv[:1])
 def look():
     if any(window.isVisible() and window.isEnabled() for window in application.topLevelWidgets()):

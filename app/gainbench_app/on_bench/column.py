@@ -10,10 +10,12 @@ from gainbench.derived import derived_constants
 from gainbench.plant import refer
 from gainbench_app.desk import Desk
 from gainbench_app.on_bench import entries, follows
+from gainbench_app.on_bench.meanings import MEANINGS
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.card import Card
 from gainbench_app.widgets.choice_box import ChoiceBox
 from gainbench_app.widgets.entry_row import Entry, EntryRow
+from gainbench_app.widgets.revealing import reveal
 
 
 class EntryCard(Card):
@@ -41,6 +43,7 @@ class EntryCard(Card):
         if kinds:
             self.kind = ChoiceBox(f"kind of {name.lower()}", kinds, appearance, quiet=True)
             self.kind.chosen.connect(lambda word: desk.set_values({word_path: word}))
+            self.kind.setToolTip(f"{MEANINGS[word_path]}\n{word_path}")
             self.head_line.addWidget(self.kind)
         self._more = QPushButton("more")
         self._more.setProperty("flat", True)
@@ -52,6 +55,14 @@ class EntryCard(Card):
     def row(self, path: str) -> EntryRow:
         """The row of an entry."""
         return self._rows[path]
+
+    def point_at(self, path: str) -> None:
+        """Bring an entry to the eye and the keyboard; the head where the card has no such entry."""
+        self.head.setChecked(True)
+        row = self._rows.get(path)
+        if row is not None and row.isHidden():
+            self._more.setChecked(True)
+        reveal(row.box if row is not None else self.head)
 
     def refresh(self) -> None:
         """Show what the sheet holds."""
@@ -65,9 +76,11 @@ class EntryCard(Card):
         hidden = 0
         for path, row in self._rows.items():
             text, problem = self._desk.text(path), self._desk.problem(path)
-            tolerance = self._desk.text(f'tolerance."{path}"')
-            row.show_entry(text, problem, tolerance)
-            shown = self._is_main(row.entry, text) or problem is not None or tolerance is not None
+            spread = f'tolerance."{path}"'
+            tolerance, spread_problem = self._desk.text(spread), self._desk.problem(spread)
+            row.show_entry(text, problem, tolerance, tolerance_problem=spread_problem)
+            told = problem is not None or tolerance is not None or spread_problem is not None
+            shown = self._is_main(row.entry, text) or told
             row.setVisible(shown or self._more.isChecked())
             hidden += not shown
         self._more.setVisible(hidden > 0)
@@ -145,6 +158,12 @@ class OnBench(QWidget):
         table = path.partition(".")[0]
         return {"machine": self.machine, "train": self.train, "stage": self.stage, "duty": self.duty}[table].row(path)
 
+    def point_at(self, path: str) -> None:
+        """Bring an entry, or the card of a table, to the eye and the keyboard."""
+        table = path.partition(".")[0]
+        card = {"machine": self.machine, "train": self.train, "stage": self.stage, "duty": self.duty}[table]
+        card.point_at(path)
+
     def refresh(self) -> None:
         """Show what the sheet holds, and what follows; nothing of it moves while a slider does."""
         state = self._desk.state
@@ -159,4 +178,5 @@ class OnBench(QWidget):
         self.machine.show_follows(follows.machine_line(derived))
         self.train.show_follows(follows.train_line(derived))
         self.stage.show_follows(follows.stage_line(derived, plant, sheet))
+        self.stage.follows.setToolTip(follows.delay_budget(sheet.rig.stage))
         self.duty.show_follows(follows.duty_line(sheet, plant))

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from gainbench.sheetfile import quantity_paths
+from gainbench_app.on_bench.meanings import MEANINGS
 from gainbench_app.widgets.entry_row import Entry
 
 MACHINE_KINDS = (("brushed-dc", "brushed DC"), ("pm-sine", "PM, field-oriented"), ("pm-block", "PM, six-step"))
@@ -18,16 +20,26 @@ _SENSORS = (("encoder", "encoder"), ("ideal", "ideal"))
 SWITCH = (("false", "no"), ("true", "yes"))
 
 
+def _entry(
+    path: str, name: str, *, words: tuple[tuple[str, str], ...] = (), default: str = "", optional: bool = True
+) -> Entry:
+    # Of the duty nothing varies from drive to drive: it is what is asked of all of them.
+    spread = path in quantity_paths() and not path.startswith("duty.")
+    return Entry(
+        path=path, name=name, words=words, default=default, optional=optional, meaning=MEANINGS[path], spread=spread
+    )
+
+
 def _required(path: str, name: str, words: tuple[tuple[str, str], ...] = ()) -> Entry:
-    return Entry(path=path, name=name, words=words, optional=False)
+    return _entry(path, name, words=words, optional=False)
 
 
 def _with_default(path: str, name: str, default: str, words: tuple[tuple[str, str], ...] = ()) -> Entry:
-    return Entry(path=path, name=name, default=default, words=words)
+    return _entry(path, name, words=words, default=default)
 
 
 def _optional(path: str, name: str) -> Entry:
-    return Entry(path=path, name=name, default="not given")
+    return _entry(path, name, default="not given")
 
 
 def machine_entries(kind: str) -> tuple[Entry, ...]:
@@ -49,7 +61,7 @@ def machine_entries(kind: str) -> tuple[Entry, ...]:
         _optional("machine.back_emf_constant", "back-EMF constant"),
     ]
     if sine:
-        found.append(Entry(path="machine.back_emf_values", name="its volts are", words=_VOLTS))
+        found.append(_entry("machine.back_emf_values", "its volts are", words=_VOLTS))
     else:
         found.append(_optional("machine.speed_constant", "speed constant"))
     return (
@@ -121,7 +133,7 @@ def duty_entries() -> tuple[Entry, ...]:
         _with_default("duty.reference_ramp", "its ramp", "a step"),
         _with_default("duty.load_step", "load step", "0"),
         _with_default("duty.load_at", "load at", "half of length"),
-        Entry(path="duty.stop_at", name="stop at", default="never"),
+        _entry("duty.stop_at", "stop at", default="never"),
         _with_default("duty.stop_ramp", "stop ramp", "a step"),
         _required("duty.length", "length"),
     )
@@ -154,3 +166,15 @@ HIDDEN_AT_DEFAULT: dict[str, tuple[str, ...]] = {
     "duty.stop_ramp": ("0 rpm/s",),
 }
 """Entries that say no more than their default go behind the "more" of a card."""
+
+
+def entry_name(path: str) -> str:
+    """An entry in the words of people, as on its card."""
+    every = [*duty_entries()]
+    for kind, _ in MACHINE_KINDS:
+        every += machine_entries(kind)
+    for kind, _ in TRAIN_KINDS:
+        every += train_entries(kind)
+    for sensor, _ in _SENSORS:
+        every += stage_entries(sensor)
+    return next((one.name for one in every if one.path == path), path)

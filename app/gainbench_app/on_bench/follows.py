@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from gainbench.derived import DerivedConstants
-from gainbench.model import Sheet, SpeedSensor
+from gainbench.model import Sheet, SpeedSensor, Stage
 from gainbench.plant import Plant
 from gainbench.units import Dimension, pretty, show
 from gainbench_app.theme import strong
@@ -58,10 +58,37 @@ def stage_line(derived: DerivedConstants, plant: Plant, sheet: Sheet) -> str:
     if sheet.rig.stage.speed_sensor is SpeedSensor.ENCODER and derived.count_speed is not None:
         parts.append(f"one count per window {said(derived.count_speed, Dimension.SPEED)}")
     parts.append(f"current loop delay {said(derived.current_loop_delay, Dimension.TIME)}")
+    parts.append(f"speed loop delay {said(sum(speed_delays(sheet.rig.stage).values()), Dimension.TIME)}")
     parts.append(
         f"limits {said(plant.current_limit, Dimension.CURRENT)}, {said(plant.voltage_limit, Dimension.VOLTAGE)}"
     )
     return " · ".join(parts)
+
+
+def speed_delays(stage: Stage) -> dict[str, float]:
+    """What delays the speed loop, by name [s]; half a hold and half a window are their low-frequency delays."""
+    period = stage.speed_period
+    window = 0.5 * stage.speed_window * period if stage.speed_sensor is SpeedSensor.ENCODER else 0.0
+    return {
+        "half a hold": 0.5 * period,
+        "speed window": window,
+        "speed delay": stage.speed_delay * stage.current_period,
+        "speed filter": stage.speed_filter,
+    }
+
+
+def delay_budget(stage: Stage) -> str:
+    """Where the delays of both loops come from."""
+    current = {
+        "update delay": stage.update_delay * stage.current_period,
+        "half a hold": 0.5 * stage.current_period,
+        "current filter": stage.current_filter,
+    }
+    lines = []
+    for loop, delays in (("current", current), ("speed", speed_delays(stage))):
+        told = ", ".join(f"{name} {pretty(show(one, Dimension.TIME))}" for name, one in delays.items() if one > 0.0)
+        lines.append(f"{loop} loop: {told}")
+    return "\n".join(lines)
 
 
 def duty_line(sheet: Sheet, plant: Plant) -> str:

@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
-from PySide6.QtWidgets import QButtonGroup, QFrame, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
+from functools import partial
+
+from PySide6.QtGui import QKeySequence, QResizeEvent, QShortcut
+from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
 
 from gainbench.assess import Assessment
 from gainbench.units import Dimension, unit_size
@@ -10,50 +13,23 @@ from gainbench_app.desk import Desk
 from gainbench_app.live import Readiness
 from gainbench_app.sheet_edits import unit_of
 from gainbench_app.what_it_does.bode import BodePlot
+from gainbench_app.what_it_does.duty_handles import duty_times
 from gainbench_app.what_it_does.headroom import headroom_line
 from gainbench_app.what_it_does.spans import Span, SpanChoice, load_span, step_span, whole_span
+from gainbench_app.what_it_does.third_view import ThirdSubject, ThirdView
 from gainbench_app.what_it_does.time_plots import TimePlots, TimeView
 from gainbench_app.what_it_does.verdict import Verdict, verdict
 from gainbench_app.widgets.appearance import Appearance
-from gainbench_app.widgets.legend import Legend
+from gainbench_app.widgets.choices import Choices
 from gainbench_app.widgets.level_mark import LevelMark
 from gainbench_app.widgets.words import WordLine
 
+_LEAST_FOR_THREE_PX = 690
+"""In a narrower column the third view leaves."""
+_LEAST_FRAME_PX = 220
+_SPEED_UNITS = ("rpm", "rad/s")
+_SPAN_KEYS = {"1": SpanChoice.WHOLE.value, "2": SpanChoice.STEP.value, "3": SpanChoice.LOAD.value}
 _LOOPS = {"both loops": ("speed", "current"), "speed": ("speed",), "current": ("current",)}
-
-
-class Choices(QWidget):
-    """A few words in a row, one of them underlined."""
-
-    def __init__(self, name: str, words: tuple[str, ...], parent: QWidget | None = None) -> None:
-        super().__init__(parent)
-        self.setAccessibleName(name)
-        line = QHBoxLayout(self)
-        line.setContentsMargins(0, 0, 0, 0)
-        line.setSpacing(4)
-        self.group = QButtonGroup(self)
-        self.buttons: dict[str, QPushButton] = {}
-        for word in words:
-            button = QPushButton(word)
-            button.setProperty("flat", True)
-            button.setCheckable(True)
-            button.setAccessibleName(f"{name}: {word}")
-            self.group.addButton(button)
-            self.buttons[word] = button
-            line.addWidget(button)
-        self.buttons[words[0]].setChecked(True)
-
-    @property
-    def word(self) -> str:
-        """The word chosen."""
-        return next((word for word, button in self.buttons.items() if button.isChecked()), "")
-
-    def clear(self) -> None:
-        """Choose none."""
-        self.group.setExclusive(False)
-        for button in self.buttons.values():
-            button.setChecked(False)
-        self.group.setExclusive(True)
 
 
 class WhatItDoes(QWidget):
@@ -63,7 +39,10 @@ class WhatItDoes(QWidget):
         super().__init__(parent)
         self._desk = desk
         self._dragged: Span | None = None
+        self._chosen_unit: str | None = None
+        """None is the unit that the reference was typed in."""
         self._verdict: Verdict | None = None
+        self._wide = True
         self.mark = LevelMark(appearance, size=12)
         self.words = QLabel()
         self.words.setProperty("role", "large")
@@ -71,21 +50,34 @@ class WhatItDoes(QWidget):
         self.more.setProperty("role", "muted")
         self.more.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
         self.spans = Choices(
-            "span of the time plots", (SpanChoice.WHOLE.value, SpanChoice.STEP.value, SpanChoice.LOAD.value)
+            "span of the time plots",
+            tuple(_SPAN_KEYS.values()),
+            tips={word: f"key {key}; drag across the plots for another span" for key, word in _SPAN_KEYS.items()},
         )
         self.spans.group.buttonClicked.connect(self._span_chosen)
         self.plots = TimePlots(appearance)
         self.plots.span_dragged.connect(self._span_dragged)
         self.plots.span_reset.connect(self._span_reset)
+        self.plots.speed_unit.clicked.connect(self._next_unit)
+        self._connect_handles()
+        for key, word in _SPAN_KEYS.items():
+            QShortcut(QKeySequence(key), self).activated.connect(partial(self._choose_span, word))
         self.headroom = WordLine("headroom", appearance, line_px=22)
         self.bode = BodePlot(appearance)
-        self.loops = Choices("loops of the Bode plot", tuple(_LOOPS))
+        self.loops = Choices(
+            "loops of the Bode plot",
+            tuple(_LOOPS),
+            appearance=appearance,
+            samples={"speed": "speed", "current": "current"},
+            tips={"both loops": "the phase ledger is the speed loop's", "current": "the phase ledger follows"},
+        )
         self.loops.group.buttonClicked.connect(self.refresh)
-        self.legend = Legend(appearance, ("speed", "current"))
+        self.third = ThirdView(appearance)
         self._lay_out()
         desk.assessed.connect(self.refresh)
         desk.changed.connect(self._show_verdict)
-        desk.opened.connect(self._span_reset)
+        desk.opened.connect(self._open)
+        desk.kept_shown.connect(self._show_kept)
         self.refresh()
 
     def _lay_out(self) -> None:
@@ -107,14 +99,71 @@ class WhatItDoes(QWidget):
         name = QLabel("Open loops")
         name.setProperty("role", "head")
         bode_head.addWidget(name)
-        bode_head.addSpacing(10)
-        bode_head.addWidget(self.legend)
         bode_head.addStretch(1)
         bode_head.addWidget(self.loops)
-        frame = _framed(self.bode, head=bode_head)
-        layout.addWidget(frame, 42)
+        self.more_views = QPushButton("other views")
+        self.more_views.setProperty("flat", True)
+        self.more_views.setToolTip("phase ledger, operating plane, sensitivity, locked step")
+        self.more_views.setVisible(False)
+        self.more_views.clicked.connect(lambda: self._show_lower(third=True))
+        self.third.back.clicked.connect(lambda: self._show_lower(third=False))
+        bode_head.addWidget(self.more_views)
+        self.bode_frame = _framed(self.bode, head=bode_head)
+        for frame in (self.bode_frame, self.third):
+            # Neither keeps the window from becoming so narrow that one of them leaves.
+            frame.setMinimumWidth(_LEAST_FRAME_PX)
+        lower = QHBoxLayout()
+        lower.setSpacing(8)
+        lower.addWidget(self.bode_frame, 1)
+        lower.addWidget(self.third, 1)
+        layout.addLayout(lower, 42)
+
+    def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802
+        """Where it is narrow the third view leaves first."""
+        super().resizeEvent(event)
+        wide = self.width() >= _LEAST_FOR_THREE_PX
+        if wide is not self._wide:
+            self._wide = wide
+            self._show_lower(third=wide)
+
+    def _show_lower(self, *, third: bool) -> None:
+        """Both views below where there is room, else the one that is asked for."""
+        self.third.setVisible(third)
+        self.bode_frame.setVisible(self._wide or not third)
+        self.more_views.setVisible(not self._wide)
+        self.third.back.setVisible(not self._wide)
+        self.third.fill_again()
+
+    def _connect_handles(self) -> None:
+        handles, desk = self.plots.handles, self._desk
+        handles.grabbed.connect(desk.begin_gesture)
+        handles.moved.connect(desk.move)
+        handles.dropped.connect(desk.end_gesture)
+        handles.dropped.connect(self.refresh)
+        handles.taken_back.connect(desk.cancel_gesture)
+
+    def _open(self) -> None:
+        """Another sheet has its own units and times."""
+        self._chosen_unit = None
+        self._span_reset()
+
+    # Units
+
+    def _next_unit(self) -> None:
+        """Show speed in the other unit."""
+        units = [self._typed_unit(), *(unit for unit in _SPEED_UNITS if unit != self._typed_unit())]
+        shown = self._chosen_unit or units[0]
+        self._chosen_unit = units[(units.index(shown) + 1) % len(units)] if shown in units else None
+        self.refresh()
+
+    def _typed_unit(self) -> str:
+        return unit_of(self._desk.state.document.typed("duty.reference_speed")) or "rpm"
 
     # Spans
+
+    def _choose_span(self, word: str) -> None:
+        self.spans.choose(word)
+        self._span_chosen()
 
     def _span_chosen(self) -> None:
         self._dragged = None
@@ -135,6 +184,10 @@ class WhatItDoes(QWidget):
         """The span, and whether speed is scaled to its deviation."""
         duty = assessment.sheet.duty
         figures = assessment.response.figures if assessment.response is not None else None
+        view = self.plots.view
+        if view is not None and self.plots.handles.movement.by_hand:
+            # The ground does not move below a handle that is held.
+            return view.span, view.deviation
         if self._dragged is not None:
             stop = min(self._dragged.stop, duty.length)
             if self._dragged.start < stop:
@@ -153,7 +206,7 @@ class WhatItDoes(QWidget):
         assessment = self._desk.assessment
         if assessment is None:
             return
-        speed_unit = unit_of(self._desk.state.document.typed("duty.reference_speed")) or "rpm"
+        speed_unit = self._chosen_unit or self._typed_unit()
         speed_size = unit_size(speed_unit, Dimension.SPEED)
         span, deviation = self._span(assessment)
         machine, plant = assessment.sheet.rig.machine, assessment.plant
@@ -168,6 +221,7 @@ class WhatItDoes(QWidget):
                 speed_limit=machine.max_speed,
                 current_limit=plant.current_limit,
                 voltage_limit=plant.voltage_limit,
+                times=duty_times(assessment.sheet.duty),
                 deviation=deviation,
             )
         )
@@ -175,6 +229,19 @@ class WhatItDoes(QWidget):
         self.headroom.show_pieces(headroom_line(figures, plant, speed_unit=speed_unit, speed_size=speed_size))
         loops = {"speed": assessment.speed, "current": assessment.current}
         self.bode.show_loops({name: loops[name] for name in _LOOPS[self.loops.word or "both loops"]})
+        self.third.show_subject(
+            ThirdSubject(
+                assessment=assessment,
+                loop="current" if self.loops.word == "current" else "speed",
+                speed_unit=speed_unit,
+                speed_size=speed_size,
+                prepared=self._desk.readiness is Readiness.ALL,
+            )
+        )
+
+    def _show_kept(self) -> None:
+        self.plots.show_kept(self._desk.shown_kept)
+        self.bode.show_kept(self._desk.shown_kept)
 
     def _why_no_response(self, assessment: Assessment) -> str:
         if self._desk.readiness is not Readiness.ALL:
@@ -201,6 +268,7 @@ class WhatItDoes(QWidget):
         stale = "" if self._desk.valid else "last valid sheet"
         self.plots.show_stale(stale)
         self.bode.show_stale(stale)
+        self.third.show_stale(stale)
 
 
 def _framed(inner: QWidget, *, head: QHBoxLayout | None = None) -> QFrame:

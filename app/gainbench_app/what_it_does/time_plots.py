@@ -6,19 +6,22 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from PySide6.QtCore import QPointF, QRectF, Qt, Signal
+from PySide6.QtCore import QRectF, Qt, Signal
 from PySide6.QtGui import QColor, QMouseEvent, QPainter, QPen, QResizeEvent
-from PySide6.QtWidgets import QWidget
+from PySide6.QtWidgets import QPushButton, QWidget
 
 from gainbench.results import Trace
+from gainbench_app.shown_tuning import ShownTuning
 from gainbench_app.theme import SMALL_PX, sized
+from gainbench_app.what_it_does.duty_handles import HEIGHT_PX, SIDE_PX, DutyHandles, DutyTime
+from gainbench_app.what_it_does.kept_lines import KeptLine, paint_kept, time_lines
 from gainbench_app.what_it_does.spans import Span
 from gainbench_app.what_it_does.traces import Array, Drawn, decimated, merged, stretches
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.figure import Axes, Figure, paint_band, paint_dashed, paint_hatched, paint_line
 from gainbench_app.widgets.scales import Range, corners, nice_step, number_text, stepped
 
-_LEFT, _RIGHT, _TOP, _BOTTOM, _GAP = 112.0, 22.0, 12.0, 26.0, 20.0
+_LEFT, _RIGHT, _TOP, _BOTTOM, _GAP = 112.0, 22.0, 20.0, 26.0, 20.0
 _SHARES = (1.45, 1.0, 1.0)
 _NAME_RIGHT = 64.0
 _NEAR_LIMIT = 0.5
@@ -44,6 +47,8 @@ class TimeView:
     """[A]."""
     voltage_limit: float
     """[V]."""
+    times: tuple[DutyTime, ...] = ()
+    """Of the duty, to be dragged."""
     deviation: bool = False
     """True scales the speed to its movement about the reference."""
 
@@ -58,6 +63,7 @@ class _Panel:
     limit: float | None = None
     clamped: tuple[tuple[float, float], ...] = ()
     y: Range | None = None
+    kept: tuple[KeptLine, ...] = ()
 
 
 class TimePlots(Figure):
@@ -75,6 +81,24 @@ class TimePlots(Figure):
         self._ranges_of: tuple[object, ...] = ()
         self._pressed: float | None = None
         self._columns = 0
+        self._kept_curves: tuple[ShownTuning, ...] = ()
+        self._kept_of: tuple[object, ...] = ()
+        self.handles = DutyHandles(appearance, self)
+        self.speed_unit = QPushButton("", self)
+        self.speed_unit.setProperty("flat", True)
+        self.speed_unit.setFont(sized(self.font(), SMALL_PX))
+
+    @property
+    def kept_curves(self) -> tuple[ShownTuning, ...]:
+        """The tunings that are drawn below the live curves."""
+        return self._kept_curves
+
+    def show_kept(self, tunings: tuple[ShownTuning, ...]) -> None:
+        """Draw other tunings below the live curves."""
+        if tunings != self._kept_curves:
+            self._kept_curves = tunings
+            self._prepare()
+            self.update()
 
     @property
     def view(self) -> TimeView | None:
@@ -85,7 +109,20 @@ class TimePlots(Figure):
         """Show something else."""
         self._view = view
         self._prepare()
+        self.handles.show_times(view.times, self._time_range())
+        self._place_unit()
         self.update()
+
+    def _place_unit(self) -> None:
+        """The unit of speed stands below the name of its panel."""
+        unit = self._view.speed_unit if self._view is not None else ""
+        if self.speed_unit.text() != unit:
+            self.speed_unit.setText(unit)
+            self.speed_unit.setAccessibleName(f"unit of speed: {unit}")
+            self.speed_unit.setToolTip("show speed in another unit")
+        size = self.speed_unit.sizeHint()
+        middle = round(self.panels()[0].box.center().y())
+        self.speed_unit.setGeometry(round(_NAME_RIGHT) + 4 - size.width(), middle - 4, size.width(), 21)
 
     def _prepare(self) -> None:
         view = self._view
@@ -102,7 +139,17 @@ class TimePlots(Figure):
                 part.drawn = part.extra = part.reference = None
                 part.clamped = ()
             return
+        self._fill_kept(view)
         self._fill(view, view.trace)
+
+    def _fill_kept(self, view: TimeView) -> None:
+        """Lines of kept tunings; they stay while only the live curves move."""
+        of = (view.span, view.speed_size, self._columns, self._kept_curves)
+        if of != self._kept_of:
+            self._kept_of = of
+            found = time_lines(self._kept_curves, span=view.span, speed_size=view.speed_size, columns=self._columns)
+            for part, lines in zip(self._parts, found, strict=True):
+                part.kept = lines
 
     def _fill(self, view: TimeView, trace: Trace) -> None:
         first = max(0, int(np.searchsorted(trace.time, view.span.start)) - 1)
@@ -132,7 +179,8 @@ class TimePlots(Figure):
 
     def _set_range(self, part: _Panel, *, deviation: bool) -> None:
         assert part.drawn is not None
-        low, high = part.drawn.lowest, part.drawn.highest
+        low = min([part.drawn.lowest, *(float(line.y.min()) for line in part.kept)])
+        high = max([part.drawn.highest, *(float(line.y.max()) for line in part.kept)])
         if part.reference is not None and not deviation:
             low, high = min(low, float(part.reference[1].min())), max(high, float(part.reference[1].max()))
         if not deviation:
@@ -168,11 +216,13 @@ class TimePlots(Figure):
         """Limits and units are part of the axes."""
         view = self._view
         unit = view.speed_unit if view is not None else ""
-        return (unit, *((part.limit, part.y is None) for part in self._parts))
+        kept = view is not None and view.trace is not None
+        return (unit, *((part.limit, part.y is None, part.kept if kept else ()) for part in self._parts))
 
     def paint_axes(self, painter: QPainter, panels: Sequence[Axes]) -> None:
         """Grids, numbers, names and the bands beyond limits."""
-        units = (self._view.speed_unit if self._view is not None else "", "A", "V")
+        # The unit of speed is a button.
+        units = ("", "A", "V")
         for axes, part, name, unit in zip(panels, self._parts, _NAMES, units, strict=True):
             across = [float(axes.across(tick)) for tick in axes.x.ticks()]
             ticks = axes.y.ticks()
@@ -192,6 +242,8 @@ class TimePlots(Figure):
                 numbers = [number_text(tick, axes.y.step) for tick in ticks]
                 self.paint_y_labels(painter, axes, labels=list(zip(down, numbers, strict=True)))
             self.paint_name(painter, axes, name=name, unit=unit, right=_NAME_RIGHT)
+            if self._view is not None and self._view.trace is not None:
+                paint_kept(painter, axes, part.kept, colour=getattr(self.theme, name))
         last = panels[-1]
         seconds = last.x.span >= 0.4
         size, unit = (1.0, "s") if seconds else (1e-3, "ms")
@@ -258,21 +310,10 @@ class TimePlots(Figure):
         index = min(max(int(np.searchsorted(view.trace.time, time)), 0), len(view.trace.time) - 1)
         trace = view.trace
         values = (trace.speed[index] / view.speed_size, trace.current[index], trace.voltage[index])
-        painter.setPen(QPen(QColor(self.theme.outline), 1.0))
-        for axes in panels:
-            painter.drawLine(QPointF(at.x(), axes.box.top()), QPointF(at.x(), axes.box.bottom()))
-        painter.setFont(sized(self.font(), SMALL_PX, bold=True))
         for axes, value, name in zip(panels, values, _NAMES, strict=True):
-            painter.setPen(QColor(getattr(self.theme, name)))
-            middle = axes.box.center().y()
-            text = number_text(float(value), axes.y.step / 50.0)
-            painter.drawText(
-                QRectF(0.0, middle + 14.0, _NAME_RIGHT, 18.0),
-                int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter),
-                text,
-            )
-        words = f"{time * 1e3:.4g}\N{NO-BREAK SPACE}ms"
-        self.paint_tag(painter, words, at=QPointF(at.x() + 6.0, box.top() + 8.0), colour=self.theme.ink, axes=panels[0])
+            reading = (number_text(float(value), axes.y.step / 50.0), getattr(self.theme, name))
+            self.paint_readings(painter, axes, readings=[reading], right=_NAME_RIGHT)
+        self.paint_hair(painter, panels, x=at.x(), words=f"{time * 1e3:.4g}\N{NO-BREAK SPACE}ms")
 
     # Dragging a span
 
@@ -298,5 +339,8 @@ class TimePlots(Figure):
     def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802
         """Another width has other columns."""
         super().resizeEvent(event)
+        left, width = round(_LEFT) - SIDE_PX, round(self.width() - _LEFT - _RIGHT) + 2 * SIDE_PX
+        self.handles.setGeometry(left, round(_TOP) - HEIGHT_PX, width, HEIGHT_PX)
+        self._place_unit()
         self._ranges_of = ()
         self._prepare()

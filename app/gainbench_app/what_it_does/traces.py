@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass
 from itertools import pairwise
 
@@ -77,27 +76,25 @@ def decimated(time: Array, values: Array, *, columns: int, least_ripple: float) 
     per = -(-count // max(1, columns))
     if per < _LEAST_PER_COLUMN:
         return Drawn(x=time, y=values)
-    whole = -(-count // per)
-    padded = np.concatenate((values, np.full(whole * per - count, values[-1]))).reshape(whole, per)
-    low, high = padded.min(axis=1), padded.max(axis=1)
-    change = np.diff(padded, axis=1)
-    up, down = change > 0.0, change < 0.0
-    turns = ((up[:, 1:] & down[:, :-1]) | (down[:, 1:] & up[:, :-1])).sum(axis=1) * (high - low > least_ripple)
-    ripple = _joined(np.convolve(turns, np.ones(_NEAR), mode="same") >= _RIPPLE_TURNS)
+    from gainbench.kernels.columns import FIRST, HIGH, LAST, LOW, MEAN, TURNS, band_edges, column_figures
+
+    figures = column_figures(np.ascontiguousarray(values), per)
+    whole = figures.shape[1]
+    low, high = figures[LOW], figures[HIGH]
+    turns = figures[TURNS] * (high - low > least_ripple)
+    ripple = _joined(np.convolve(turns, np.ones(_NEAR), mode="same") >= _RIPPLE_TURNS - 0.5)
     if turns.any():
         ripple &= high - low <= _EVENT * float(np.median((high - low)[turns > 0]))
-    own = padded.mean(axis=1)
-    mean = _averaged(own, ripple)
-    # Edges are taken about the mean, so that a slope does not look like ripple.
-    low_edge = np.clip(mean + _extreme(low - own, np.min), _extreme(low, np.min), low)
-    high_edge = np.clip(mean + _extreme(high - own, np.max), high, _extreme(high, np.max))
     starts = np.minimum(np.arange(whole) * per, count - 1)
     centre = time[np.minimum(starts + per // 2, count - 1)]
-    first = np.minimum(padded.argmin(axis=1), padded.argmax(axis=1))
-    last = np.maximum(padded.argmin(axis=1), padded.argmax(axis=1))
-    rows = np.arange(whole)
-    x = np.stack((time[np.minimum(starts + first, count - 1)], time[np.minimum(starts + last, count - 1)]), axis=1)
-    y = np.stack((padded[rows, first], padded[rows, last]), axis=1)
+    first = np.minimum(starts + figures[FIRST].astype(np.int64), count - 1)
+    last = np.minimum(starts + figures[LAST].astype(np.int64), count - 1)
+    x = np.stack((time[first], time[last]), axis=1)
+    y = np.stack((values[first], values[last]), axis=1)
+    if not ripple.any():
+        return Drawn(x=x.ravel(), y=y.ravel())
+    mean = _averaged(figures[MEAN], ripple)
+    low_edge, high_edge = band_edges(figures, mean, _SMOOTHED // 2)
     x[ripple] = centre[ripple, None]
     y[ripple] = mean[ripple, None]
     return Drawn(x=x.ravel(), y=y.ravel(), bands=tuple(_bands(centre, low_edge, high_edge, ripple)))
@@ -120,13 +117,6 @@ def _averaged(mean: Array, ripple: NDArray[np.bool_]) -> Array:
     share = np.convolve(ripple.astype(float), weights, mode="same")
     total = np.convolve(np.where(ripple, mean, 0.0), weights, mode="same")
     return np.where(ripple, total / np.maximum(share, 1.0), mean)
-
-
-def _extreme(edge: Array, kind: Callable[..., Array]) -> Array:
-    """The outermost value over neighbouring columns."""
-    half = _SMOOTHED // 2
-    padded = np.concatenate((np.full(half, edge[0]), edge, np.full(half, edge[-1])))
-    return np.asarray(kind(np.lib.stride_tricks.sliding_window_view(padded, _SMOOTHED), axis=1))
 
 
 def _bands(x: Array, low: Array, high: Array, ripple: NDArray[np.bool_]) -> list[Band]:
@@ -156,3 +146,11 @@ def merged(intervals: list[tuple[float, float]], gap: float) -> list[tuple[float
         else:
             result.append((start, stop))
     return result
+
+
+def warm_up() -> None:
+    """Compile, or load from the disk cache, what decimates traces; a window calls it off its own thread."""
+    from gainbench.kernels.columns import MEAN, band_edges, column_figures
+
+    figures = column_figures(np.sin(np.arange(64.0)), _LEAST_PER_COLUMN)
+    band_edges(figures, figures[MEAN], _SMOOTHED // 2)

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
+from PySide6.QtCore import QTimer
+from PySide6.QtWidgets import QHBoxLayout, QPushButton, QSizePolicy, QVBoxLayout, QWidget
 
 from gainbench.assess import Assessment
 from gainbench.firmware_form import FirmwareGain, LoopName, firmware_gains
@@ -11,52 +12,93 @@ from gainbench.plant import refer
 from gainbench.results import Level, LoopAssessment
 from gainbench.units import Dimension, pretty, show
 from gainbench_app.desk import Desk
+from gainbench_app.live import Readiness
+from gainbench_app.sheet_edits import loop_aims
 from gainbench_app.theme import LARGE_PX
+from gainbench_app.what_we_ask.reach_view import KeptPoints, ReachKeeper, asks_for_a_point
 from gainbench_app.what_we_ask.target_row import TargetRow
 from gainbench_app.what_we_ask.targets import METHOD_NAMES, targets
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.card import Card
+from gainbench_app.widgets.check_box import CheckBox
 from gainbench_app.widgets.choice_box import ChoiceBox
 from gainbench_app.widgets.level_mark import LevelMark
+from gainbench_app.widgets.reach_plot import ReachPlot
 from gainbench_app.widgets.scales import frequency_text
 from gainbench_app.widgets.words import Piece, WordLine
 
 _GAP = "\N{NO-BREAK SPACE}"
+_OTHERS_PX = 97
+_REST_MS = 200
+"""After the last move the map is computed as far as it may be asked for."""
 _GAIN_NAMES = {"kp": "Kp", "ki": "Ki", "ti": "Ti", "wi": "Ki/Kp"}
 
 
 class LoopCard(Card):
     """The card of one loop."""
 
-    def __init__(self, loop: LoopName, desk: Desk, appearance: Appearance, parent: QWidget | None = None) -> None:
+    def __init__(
+        self, loop: LoopName, desk: Desk, appearance: Appearance, kept: KeptPoints, parent: QWidget | None = None
+    ) -> None:
         super().__init__(f"{loop.capitalize()} loop", appearance, parent=parent)
         self.loop: LoopName = loop
         self._desk = desk
         self._appearance = appearance
         self._target_rows: dict[str, TargetRow] = {}
-        self.state = QLabel()
-        self.state.setProperty("role", "small")
         self.mark = LevelMark(appearance, size=10)
-        self.head_line.addWidget(self.state)
+        self.hold = CheckBox("hold gains", f"hold the gains of the {loop} loop", appearance)
+        self.hold.setToolTip("keep these gains while machine, train and stage are edited; the method waits")
+        self.hold.clicked.connect(lambda on: desk.hold(loop, on))
+        self.head_line.addWidget(self.hold)
         self.head_line.addWidget(self.mark)
         methods = CURRENT_METHODS if loop == "current" else SPEED_METHODS
         self.method = ChoiceBox(
             f"design method of the {loop} loop", [(one.value, METHOD_NAMES[one]) for one in methods], appearance
         )
         self.method.chosen.connect(lambda word: desk.choose_method(loop, DesignMethod(word)))
-        self.rows.addWidget(self.method)
+        self.by_hand = QPushButton("by hand")
+        self.by_hand.setProperty("flat", True)
+        self.by_hand.setAccessibleName(f"write the gains of the {loop} loop into the sheet as gains by hand")
+        self.by_hand.setToolTip("write these gains into the sheet as gains by hand")
+        self.by_hand.clicked.connect(lambda: desk.take_over(loop))
+        line = QHBoxLayout()
+        line.setSpacing(4)
+        line.addWidget(self.method, 1)
+        line.addWidget(self.by_hand)
+        self.rows.addLayout(line)
         self.rows.setSpacing(4)
+        self.map = ReachPlot(loop, appearance)
+        self._keeper = ReachKeeper(loop, kept)
+        self.map.grabbed.connect(lambda: desk.begin_gesture(f"aims.{loop}"))
+        self.map.moved.connect(self._move)
+        self.map.dropped.connect(desk.end_gesture)
+        self.map.dropped.connect(lambda: self._show_map())
+        self._resting = QTimer(self)
+        self._resting.setSingleShot(True)
+        self._resting.setInterval(_REST_MS)
+        self._resting.timeout.connect(lambda: self._show_map(quick=False))
+        self.map.taken_back.connect(desk.cancel_gesture)
+        self.rows.addWidget(self.map)
         self._targets = QVBoxLayout()
-        self._targets.setContentsMargins(0, 4, 0, 0)
-        self._targets.setSpacing(3)
+        self._targets.setContentsMargins(0, 0, 0, 0)
+        self._targets.setSpacing(1)
+        self._pair = QHBoxLayout()
+        self._pair.setSpacing(10)
+        self._targets.addLayout(self._pair)
         self.rows.addLayout(self._targets)
-        self.figures = WordLine(f"figures of the {loop} loop", appearance, line_px=27)
-        self.others = WordLine(f"more figures of the {loop} loop", appearance)
-        self.gains = WordLine(f"gains of the {loop} loop, in the firmware's form", appearance)
+        self.figures = WordLine(f"figures of the {loop} loop", appearance, line_px=32, tells_moves=True)
+        self.others = WordLine(f"more figures of the {loop} loop", appearance, lines=2, line_px=16, tells_moves=True)
+        self.gains = WordLine(f"gains of the {loop} loop, in the firmware's form", appearance, tells_moves=True)
         outer = self.layout()
         assert isinstance(outer, QVBoxLayout)
-        for line in (self.figures, self.others, self.gains):
-            outer.addWidget(line)
+        large = QHBoxLayout()
+        large.setSpacing(6)
+        large.addWidget(self.figures, 1)
+        self.others.setSizePolicy(QSizePolicy.Policy.Fixed, QSizePolicy.Policy.Fixed)
+        self.others.setFixedWidth(_OTHERS_PX)
+        large.addWidget(self.others)
+        outer.addLayout(large)
+        outer.addWidget(self.gains)
         desk.changed.connect(self.refresh)
         desk.assessed.connect(self.show_assessment)
         self.refresh()
@@ -80,34 +122,71 @@ class LoopCard(Card):
         wanted = targets(self.loop, sheet, plant=refer(sheet.rig))
         if [one.path for one in wanted] != list(self._target_rows):
             for row in self._target_rows.values():
-                self._targets.removeWidget(row)
+                (self._pair if row.paired else self._targets).removeWidget(row)
                 row.hide()
                 row.deleteLater()
             self._target_rows = {}
             for target in wanted:
                 row = TargetRow(target, self._desk, self._appearance, colour=self.loop)
-                self._targets.addWidget(row)
+                (self._pair if row.paired else self._targets).addWidget(row, 1)
                 self._target_rows[target.path] = row
+            alone = [row for row in self._target_rows.values() if not row.paired]
+            for row in alone:
+                row.name.setFixedWidth(max(one.name.sizeHint().width() for one in alone))
+        held = self._desk.held(self.loop)
         for target in wanted:
-            self._target_rows[target.path].refresh(target)
+            self._target_rows[target.path].refresh(target, held=held)
+        if self.hold.isChecked() is not held:
+            self.hold.setChecked(held)
+        aims, view = loop_aims(sheet, self.loop), self.map.view
+        if view is not None and view.asked and aims.crossover is not None and aims.phase_margin is not None:
+            self.map.show_point(aims.crossover, aims.phase_margin)
+
+    def _move(self, crossover: float, margin: float) -> None:
+        """Move what the map asks for, and leave alone what it leaves alone."""
+        aims, path = loop_aims(self._desk.sheet, self.loop), f"aims.{self.loop}"
+        asked = {"crossover": (crossover, aims.crossover), "phase_margin": (margin, aims.phase_margin)}
+        self._desk.move_all(path, {f"{path}.{key}": one for key, (one, before) in asked.items() if one != before})
+
+    def _show_map(self, *, quick: bool = True) -> None:
+        assessment = self._desk.assessment
+        if assessment is None or self._desk.readiness is not Readiness.ALL:
+            self.map.show_view(None)
+            return
+        method = loop_aims(self._desk.sheet, self.loop).method
+        asked = asks_for_a_point(method) and not self._desk.held(self.loop)
+        still = self.map.movement.under_way
+        self.map.show_view(self._keeper.view(assessment, asked=asked, still=still, quick=quick))
+        if not self._keeper.whole:
+            self._resting.start()
 
     def show_assessment(self) -> None:
         """Show what the loop gets."""
         assessment = self._desk.assessment
+        self._show_map()
+        there = assessment is not None and self._loop_of(assessment).gains is not None
+        already = loop_aims(self._desk.sheet, self.loop).method is DesignMethod.BY_HAND
+        self.by_hand.setEnabled(there and (not already or self._desk.held(self.loop)))
         if assessment is None:
             for line in (self.figures, self.others, self.gains):
                 line.show_pieces()
-            self._show_state("", None)
+            self._show_mark(None)
             return
-        loop = assessment.current if self.loop == "current" else assessment.speed
+        loop = self._loop_of(assessment)
+        self.hold.setEnabled(loop.gains is not None)
         self._show_figures(loop)
         self._show_level(assessment, loop)
         self.gains.show_pieces(self._gain_pieces(assessment, loop))
 
+    def _loop_of(self, assessment: Assessment) -> LoopAssessment:
+        return assessment.current if self.loop == "current" else assessment.speed
+
     def _show_figures(self, loop: LoopAssessment) -> None:
         figures = loop.figures
         if figures is None or not figures.stable:
-            words = "no gains" if loop.gains is None else "unstable"
+            words = (
+                "unstable" if loop.gains is not None else "cannot be met" if loop.refusal is not None else "no gains"
+            )
             self.figures.show_pieces((Piece(text=words, strong=True, size=LARGE_PX),))
             self.others.show_pieces()
             return
@@ -117,7 +196,7 @@ class LoopCard(Card):
             large.append(f"{margin:.1f}°")
         self.figures.show_pieces(
             tuple(
-                Piece(text=one, strong=True, size=LARGE_PX, gap=16.0 if index else 0.0)
+                Piece(text=one, strong=True, size=LARGE_PX, gap=13.0 if index else 0.0)
                 for index, one in enumerate(large)
             )
         )
@@ -126,7 +205,7 @@ class LoopCard(Card):
             pairs.append(("gain", f"{figures.gain_margin_db:.1f}{_GAP}dB"))
         if figures.peak_sensitivity is not None:
             pairs.append(("sensitivity", f"{figures.peak_sensitivity:.2f}"))
-        self.others.show_pieces(_pieces(pairs))
+        self.others.show_pieces(*(_pieces([pair]) for pair in pairs))
 
     def _show_level(self, assessment: Assessment, loop: LoopAssessment) -> None:
         own = [one.level for one in assessment.findings if one.subject == self.loop]
@@ -134,14 +213,9 @@ class LoopCard(Card):
             level = Level.BREAKS
         else:
             level = Level.THIN if Level.THIN in own else Level.HOLDS
-        words = {Level.HOLDS: "", Level.THIN: "thin", Level.BREAKS: "breaks"}[level]
-        if loop.refusal is not None:
-            words = "cannot be met"
-        self._show_state(words, level)
+        self._show_mark(level)
 
-    def _show_state(self, words: str, level: Level | None) -> None:
-        if self.state.text() != words:
-            self.state.setText(words)
+    def _show_mark(self, level: Level | None) -> None:
         if self.mark.level is not level:
             self.mark.show_level(level)
 
@@ -161,7 +235,7 @@ class LoopCard(Card):
         for one in pair:
             if one.value is not None:
                 number, unit = _gain_text(one)
-                pieces.append(Piece(text=_GAIN_NAMES[one.name], gap=12.0 if pieces else 0.0))
+                pieces.append(Piece(text=_GAIN_NAMES[one.name], gap=12.0 if pieces else 0.0, breaks=bool(pieces)))
                 pieces += [Piece(text=number, strong=True, gap=4.0), Piece(text=unit, gap=4.0)]
         return tuple(pieces)
 

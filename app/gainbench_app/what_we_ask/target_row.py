@@ -1,4 +1,4 @@
-"""One target: its name, an exact box, and a slim slider below."""
+"""One target: its name, a slim slider, and an exact box: in one line, or half a line with the slider below."""
 
 from __future__ import annotations
 
@@ -12,9 +12,14 @@ from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.slim_slider import SlimSlider
 from gainbench_app.widgets.value_box import ValueBox
 
+_BOX_PX = {"kp": 112, "ki": 112, "reference_weight": 52, "damping": 60, "spread": 60}
+_USUAL_BOX_PX = 78
+_PAIRED = {"crossover": "crossover", "bandwidth": "bandwidth", "phase_margin": "margin"}
+"""Targets of the reach map stand side by side below it, by shorter names."""
+
 
 class TargetRow(QWidget):
-    """Box and slider of one number."""
+    """Slider and box of one number."""
 
     def __init__(
         self, target: Target, desk: Desk, appearance: Appearance, *, colour: str, parent: QWidget | None = None
@@ -26,17 +31,16 @@ class TargetRow(QWidget):
         outer.setContentsMargins(0, 0, 0, 0)
         outer.setSpacing(0)
         line = QHBoxLayout()
-        line.setSpacing(8)
-        name = QLabel(target.name)
-        name.setProperty("role", "muted")
-        name.setToolTip(target.path)
+        line.setSpacing(4 if target.paired else 6)
+        self.name = QLabel(_PAIRED[target.key] if target.paired else target.name)
+        self.name.setProperty("role", "small" if target.paired else "muted")
+        self.name.setToolTip(f"{target.name}: {target.path}")
         loop = target.path.split(".")[1]
         self.box = ValueBox(f"{target.name} of the {loop} loop")
-        self.box.setFixedWidth(116)
+        if not target.paired:
+            self.box.setFixedWidth(_BOX_PX.get(target.key, _USUAL_BOX_PX))
         self.box.committed.connect(self._typed)
-        name.setBuddy(self.box)
-        line.addWidget(name, 1)
-        line.addWidget(self.box)
+        self.name.setBuddy(self.box)
         self.slider = SlimSlider(
             f"{target.name} of the {loop} loop",
             appearance,
@@ -49,6 +53,10 @@ class TargetRow(QWidget):
         self.slider.moved.connect(lambda value: desk.move(target.path, value))
         self.slider.dropped.connect(desk.end_gesture)
         self.slider.taken_back.connect(desk.cancel_gesture)
+        line.addWidget(self.name)
+        if not target.paired:
+            line.addWidget(self.slider, 1)
+        line.addWidget(self.box, 1 if target.paired else 0)
         self.reason = QLabel()
         self.reason.setProperty("role", "problem")
         self.reason.setWordWrap(True)
@@ -56,11 +64,19 @@ class TargetRow(QWidget):
         self.reason.setAlignment(Qt.AlignmentFlag.AlignLeft)
         self.reason.setVisible(False)
         outer.addLayout(line)
-        outer.addWidget(self.slider)
+        if target.paired:
+            outer.addWidget(self.slider)
         outer.addWidget(self.reason)
+        if target.paired:
+            outer.addStretch(1)
 
-    def refresh(self, target: Target) -> None:
-        """Show what the sheet holds; the target may have moved its ends."""
+    @property
+    def paired(self) -> bool:
+        """Whether it is half a line."""
+        return self.target.paired
+
+    def refresh(self, target: Target, *, held: bool = False) -> None:
+        """Show what the sheet holds; the target may have moved its ends. With gains held it waits."""
         self.target = target
         path = target.path
         text, problem = self._desk.text(path) or "", self._desk.problem(path) or ""
@@ -70,8 +86,10 @@ class TargetRow(QWidget):
             self.reason.setText(problem)
             self.reason.setVisible(bool(problem))
         value = value_at(self._desk.sheet, path)
+        waits = held and target.key != "reference_weight"
+        self.box.setEnabled(not waits)
         self.slider.show_range(target.low, target.high)
-        self.slider.setEnabled(value is not None)
+        self.slider.setEnabled(value is not None and not waits)
         if value is not None:
             self.slider.show_number(value, text)
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from gainbench.model import DesignMethod, HandGains, Sheet
 from gainbench.plant import Plant
@@ -23,7 +23,7 @@ _NAMES = {
     "crossover": "crossover",
     "phase_margin": "phase margin",
     "bandwidth": "bandwidth",
-    "natural_frequency": "natural frequency",
+    "natural_frequency": "natural freq.",
     "damping": "damping",
     "spread": "spread",
     "reference_weight": "reference weight",
@@ -44,6 +44,13 @@ class Target:
     """Left end of the slider, in the model's unit."""
     high: float
     logarithmic: bool
+    paired: bool = False
+    """Whether it stands beside another one: crossover or bandwidth with a margin."""
+
+    @property
+    def key(self) -> str:
+        """Last part of the path."""
+        return self.path.rpartition(".")[2]
 
 
 def targets(loop: str, sheet: Sheet, *, plant: Plant) -> tuple[Target, ...]:
@@ -69,7 +76,8 @@ def targets(loop: str, sheet: Sheet, *, plant: Plant) -> tuple[Target, ...]:
         keys.append(integral_key(aims.hand))
     if loop == "speed":
         keys.append("reference_weight")
-    return tuple(_target(loop, key, sheet=sheet, plant=plant) for key in keys)
+    found = (_target(loop, key, sheet=sheet, plant=plant) for key in keys)
+    return tuple(replace(one, paired="phase_margin" in keys and one.key != "reference_weight") for one in found)
 
 
 def _target(loop: str, key: str, *, sheet: Sheet, plant: Plant) -> Target:

@@ -4,11 +4,12 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from PySide6.QtCore import QSize, Qt, Signal
+from PySide6.QtCore import QSize, Signal
 from PySide6.QtWidgets import QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
 
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.choice_box import ChoiceBox
+from gainbench_app.widgets.tolerance_box import LEAST_PX, ToleranceBox, bare_tolerance
 from gainbench_app.widgets.value_box import ValueBox
 
 
@@ -24,6 +25,10 @@ class Entry:
     """What holds where the sheet is silent, shown grey."""
     optional: bool = True
     """Whether an empty box takes the entry out of the sheet."""
+    meaning: str = ""
+    """Told when it is pointed at."""
+    spread: bool = False
+    """Whether it can have a tolerance."""
 
 
 class _Name(QLabel):
@@ -53,7 +58,8 @@ class EntryRow(QWidget):
         name = _Name(entry.name)
         name.setProperty("role", "muted")
         name.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
-        name.setToolTip(f"{entry.name}: {entry.path}")
+        self._tip = "\n".join(one for one in (entry.meaning or entry.name, entry.path) if one)
+        name.setToolTip(self._tip)
         line.addWidget(name, 1)
         self.box: ValueBox | ChoiceBox
         if entry.words:
@@ -66,12 +72,17 @@ class EntryRow(QWidget):
             box.committed.connect(self._committed)
             self.box = box
         self.box.setFixedWidth(box_width)
+        self.box.setToolTip(self._tip)
         name.setBuddy(self.box)
         line.addWidget(self.box)
-        self.tolerance = QLabel()
-        self.tolerance.setProperty("role", "small")
-        self.tolerance.setFixedWidth(38)
-        self.tolerance.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
+        self.tolerance: ToleranceBox | QLabel
+        if entry.spread:
+            spread = ToleranceBox(entry.name)
+            spread.committed.connect(self._spread_committed)
+            self.tolerance = spread
+        else:
+            self.tolerance = QLabel()
+            self.tolerance.setFixedWidth(LEAST_PX)
         line.addWidget(self.tolerance)
         outer.addLayout(line)
         self.reason = QLabel()
@@ -81,20 +92,25 @@ class EntryRow(QWidget):
         self.reason.setContentsMargins(0, 1, 0, 4)
         outer.addWidget(self.reason)
 
-    def show_entry(self, text: str | None, problem: str | None, tolerance: str | None) -> None:
+    def show_entry(
+        self, text: str | None, problem: str | None, tolerance: str | None, *, tolerance_problem: str | None = None
+    ) -> None:
         """Show what the sheet holds, why it is refused, and its plus or minus."""
         if isinstance(self.box, ChoiceBox):
             self.box.show_word(text if text is not None else self.entry.default or None)
         else:
             self.box.show_text(text or "")
         self.box.mark(problem or "")
-        if self.reason.text() != (problem or ""):
-            self.reason.setText(problem or "")
-        self.reason.setVisible(bool(problem))
-        shown = f"±{tolerance}" if tolerance else ""
-        if self.tolerance.text() != shown:
-            self.tolerance.setText(shown)
-            self.tolerance.setToolTip(f"tolerance {shown}" if shown else "")
+        why = "; ".join(one for one in (problem, f"tolerance: {tolerance_problem}" if tolerance_problem else "") if one)
+        if self.reason.text() != why:
+            self.reason.setText(why)
+        self.reason.setVisible(bool(why))
+        if isinstance(self.tolerance, ToleranceBox):
+            self.tolerance.show_tolerance(tolerance, tolerance_problem or "")
 
     def _committed(self, text: str) -> None:
         self.edited.emit(self.entry.path, text if text else None)
+
+    def _spread_committed(self, text: str) -> None:
+        bare = bare_tolerance(text)
+        self.edited.emit(f'tolerance."{self.entry.path}"', bare if bare else None)

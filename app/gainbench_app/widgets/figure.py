@@ -25,6 +25,7 @@ from PySide6.QtGui import (
     QPixmap,
     QPolygonF,
     QResizeEvent,
+    QShowEvent,
 )
 from PySide6.QtWidgets import QWidget
 
@@ -133,7 +134,7 @@ def paint_hatched(painter: QPainter, box: QRectF, *, theme: Theme) -> None:
     painter.fillRect(box, QColor(theme.mixed(theme.breaks, 0.10)))
     painter.setPen(QPen(QColor(theme.mixed(theme.breaks, 0.34)), 1.0))
     painter.save()
-    painter.setClipRect(box)
+    painter.setClipRect(box, Qt.ClipOperation.IntersectClip)
     x = box.left() - box.height()
     while x < box.right():
         painter.drawLine(QPointF(x, box.bottom()), QPointF(x + box.height(), box.top()))
@@ -152,7 +153,6 @@ class Figure(QWidget):
         self._stale = ""
         self._cursor: QPointF | None = None
         self.setMouseTracking(True)
-        self.setAttribute(Qt.WidgetAttribute.WA_OpaquePaintEvent)
         appearance.changed.connect(self.forget_background)
 
     def sizeHint(self) -> QSize:  # noqa: N802
@@ -220,6 +220,22 @@ class Figure(QWidget):
             if self._stale:
                 self._paint_stale(painter, panels)
 
+    def paint_whole(self, painter: QPainter) -> None:
+        """All of it in lines and words, for a picture: without the cached axes, and without the read-out."""
+        panels, cursor = self.panels(), self._cursor
+        painter.fillRect(QRectF(0.0, 0.0, self.width(), self.height()), QColor(self.theme.card))
+        painter.setFont(self.small_font())
+        self.paint_axes(painter, panels)
+        painter.setFont(self.small_font())
+        painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+        self._cursor = None
+        try:
+            self.paint_curves(painter, panels)
+        finally:
+            self._cursor = cursor
+        if self._stale:
+            self._paint_stale(painter, panels)
+
     def _painted_background(self, panels: Sequence[Axes]) -> QPixmap:
         ratio = self.devicePixelRatioF()
         pixmap = QPixmap(round(self.width() * ratio), round(self.height() * ratio))
@@ -256,6 +272,21 @@ class Figure(QWidget):
     def small_font(self) -> QFont:
         """The font of ticks and labels."""
         return sized(self.font(), SMALL_PX)
+
+    def showEvent(self, event: QShowEvent) -> None:  # noqa: N802
+        """Shown for the first time."""
+        super().showEvent(event)
+        self._hide_what_is_below()
+
+    def changeEvent(self, event: QEvent) -> None:  # noqa: N802
+        """Another style."""
+        super().changeEvent(event)
+        if event.type() == QEvent.Type.StyleChange:
+            self._hide_what_is_below()
+
+    def _hide_what_is_below(self) -> None:
+        """All of it is painted here, so that nothing below has to be: the style sheet takes this mark away."""
+        self.setAttribute(Qt.WidgetAttribute.WA_OpaquePaintEvent)
 
     def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802
         """Another size has another background."""
@@ -322,6 +353,31 @@ class Figure(QWidget):
         painter.setFont(sized(self.font(), SMALL_PX))
         painter.setPen(QColor(self.theme.muted))
         painter.drawText(QRectF(0.0, middle - 2.0, right, 18.0), align, unit)
+
+    def paint_hair(self, painter: QPainter, panels: Sequence[Axes], *, x: float, words: str) -> None:
+        """A hair line through all panels, and what is there below the last one, over the numbers of its axis."""
+        painter.setPen(QPen(QColor(self.theme.outline), 1.0))
+        for axes in panels:
+            painter.drawLine(QPointF(x, axes.box.top()), QPointF(x, axes.box.bottom()))
+        painter.setFont(sized(self.font(), SMALL_PX, bold=True))
+        width = QFontMetricsF(painter.font()).horizontalAdvance(words) + 10.0
+        left = min(max(x - width / 2.0, 2.0), self.width() - width - 2.0)
+        box = QRectF(left, panels[-1].box.bottom() + 3.0, width, 18.0)
+        painter.fillRect(box, QColor(self.theme.card))
+        painter.setPen(QColor(self.theme.ink))
+        painter.drawText(box, int(Qt.AlignmentFlag.AlignCenter), words)
+
+    def paint_readings(
+        self, painter: QPainter, axes: Axes, *, readings: Sequence[tuple[str, str]], right: float
+    ) -> None:
+        """Words and colours below the name of a panel, right-aligned at a pixel from the left."""
+        painter.setFont(sized(self.font(), SMALL_PX, bold=True))
+        align = int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
+        top = axes.box.center().y() + 14.0
+        for words, colour in readings:
+            painter.setPen(QColor(colour))
+            painter.drawText(QRectF(0.0, top, right, 16.0), align, words)
+            top += 15.0
 
     def paint_tag(self, painter: QPainter, words: str, *, at: QPointF, colour: str, axes: Axes) -> QRectF:
         """Words right of a point, with a rim of card around the letters, kept within a panel."""

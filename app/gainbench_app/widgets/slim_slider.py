@@ -4,16 +4,15 @@ from __future__ import annotations
 
 import math
 
-from PySide6.QtCore import QPointF, QRectF, QSize, Qt, QTimer, Signal
+from PySide6.QtCore import QPointF, QRectF, QSize, Qt, Signal
 from PySide6.QtGui import QColor, QFocusEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent, QPen, QWheelEvent
 from PySide6.QtWidgets import QAbstractSlider, QSizePolicy, QWidget
 
 from gainbench_app.widgets.appearance import Appearance
+from gainbench_app.widgets.movement import Movement
 
 _STEPS = 10_000
 _RADIUS = 6.0
-_REST_MS = 700
-"""Key presses and turns of the wheel that follow each other faster are one movement."""
 _UP = (Qt.Key.Key_Right, Qt.Key.Key_Up)
 _DOWN = (Qt.Key.Key_Left, Qt.Key.Key_Down)
 _PAGES = {Qt.Key.Key_PageUp: 10.0, Qt.Key.Key_PageDown: -10.0}
@@ -46,12 +45,10 @@ class SlimSlider(QAbstractSlider):
         self._low, self._high = low, high
         self._number = low
         self._words: str | None = None
-        self._held = False
-        self._moving = False
-        self._rest = QTimer(self)
-        self._rest.setSingleShot(True)
-        self._rest.setInterval(_REST_MS)
-        self._rest.timeout.connect(self._finish)
+        self._movement = Movement(self)
+        self._movement.grabbed.connect(self.grabbed)
+        self._movement.dropped.connect(self.dropped)
+        self._movement.taken_back.connect(self.taken_back)
         self.setRange(0, _STEPS)
         self.setOrientation(Qt.Orientation.Horizontal)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
@@ -114,38 +111,24 @@ class SlimSlider(QAbstractSlider):
             return self._number * (1.0 + percent / 100.0)
         return self._number + max(abs(self._number), 0.1 * (self._high - self._low)) * percent / 100.0
 
-    def _start(self) -> None:
-        if not self._moving:
-            self._moving = True
-            self.grabbed.emit()
-
-    def _finish(self) -> None:
-        self._rest.stop()
-        if self._moving:
-            self._moving = False
-            self.dropped.emit()
-
     def mousePressEvent(self, event: QMouseEvent) -> None:  # noqa: N802
         """Take hold; the knob comes to the hand."""
         if event.button() != Qt.MouseButton.LeftButton:
             event.ignore()
             return
-        self._finish()
-        self._held = True
-        self._start()
+        self._movement.press()
         self._ask(self.number_at(event.position().x()))
         self.update()
 
     def mouseMoveEvent(self, event: QMouseEvent) -> None:  # noqa: N802
         """Drag."""
-        if self._held:
+        if self._movement.by_hand:
             self._ask(self.number_at(event.position().x()))
 
     def mouseReleaseEvent(self, event: QMouseEvent) -> None:  # noqa: N802
         """Let go."""
-        if self._held and event.button() == Qt.MouseButton.LeftButton:
-            self._held = False
-            self._finish()
+        if event.button() == Qt.MouseButton.LeftButton:
+            self._movement.release()
             self.update()
 
     def wheelEvent(self, event: QWheelEvent) -> None:  # noqa: N802
@@ -168,25 +151,20 @@ class SlimSlider(QAbstractSlider):
             self._nudge(-fine)
         elif key in _PAGES:
             self._nudge(_PAGES[Qt.Key(key)])
-        elif key == Qt.Key.Key_Escape and self._moving:
-            self._held = self._moving = False
-            self._rest.stop()
-            self.taken_back.emit()
+        elif key == Qt.Key.Key_Escape and self._movement.take_back():
             self.update()
         else:
             event.ignore()
 
     def _nudge(self, percent: float) -> None:
-        if self._held:
-            return
-        self._start()
-        self._ask(self._stepped(percent))
-        self._rest.start()
+        if not self._movement.by_hand:
+            self._movement.nudge()
+            self._ask(self._stepped(percent))
 
     def focusOutEvent(self, event: QFocusEvent) -> None:  # noqa: N802
         """Leaving ends the movement."""
-        if not self._held:
-            self._finish()
+        if not self._movement.by_hand:
+            self._movement.finish()
         super().focusOutEvent(event)
         self.update()
 

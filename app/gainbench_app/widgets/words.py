@@ -2,15 +2,18 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from itertools import takewhile
 
-from PySide6.QtCore import QSize, Qt
-from PySide6.QtGui import QColor, QFontMetricsF, QPainter, QPaintEvent, QResizeEvent
+from PySide6.QtCore import QEvent, QLineF, QSize, Qt, QTimer
+from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QPaintEvent, QPen, QResizeEvent
 from PySide6.QtWidgets import QSizePolicy, QWidget
 
 from gainbench_app.theme import SMALL_PX, sized
 from gainbench_app.widgets.appearance import Appearance
+
+MOVED_MS = 900
+"""So long a number that moved is underlined."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -27,18 +30,51 @@ class Piece:
     """Whether a line may be broken before them."""
 
 
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Hand:
+    """A font, and how wide words are in it."""
+
+    font: QFont
+    metrics: QFontMetricsF
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Placed:
+    """A piece where it is painted."""
+
+    piece: Piece
+    x: float
+    words: str
+    width: float
+
+
 class WordLine(QWidget):
     """One line of pieces, or a few lines; what does not fit is cut at the right and told when pointed at."""
 
     def __init__(
-        self, name: str, appearance: Appearance, *, lines: int = 1, line_px: int = 18, parent: QWidget | None = None
+        self,
+        name: str,
+        appearance: Appearance,
+        *,
+        lines: int = 1,
+        line_px: int = 18,
+        tells_moves: bool = False,
+        parent: QWidget | None = None,
     ) -> None:
         super().__init__(parent)
         self._name = name
         self._appearance = appearance
         self._pieces: tuple[tuple[Piece, ...], ...] = ()
+        self._rows: list[list[_Placed]] = []
+        self._fonts: dict[tuple[int, bool], _Hand] = {}
         self._line_px = line_px
         self._least = lines
+        self._tells_moves = tells_moves
+        self._moved: frozenset[str] = frozenset()
+        self._settling = QTimer(self)
+        self._settling.setSingleShot(True)
+        self._settling.setInterval(MOVED_MS)
+        self._settling.timeout.connect(self._settle)
         self.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Fixed)
         self.setFixedHeight(lines * line_px)
         self.setAccessibleName(name)
@@ -51,6 +87,8 @@ class WordLine(QWidget):
     def show_pieces(self, *lines: tuple[Piece, ...]) -> None:
         """Show other words."""
         if lines != self._pieces:
+            if self._tells_moves:
+                self._tell_moves(self._pieces, lines)
             self._pieces = lines
             self.setAccessibleDescription(self.text)
             self.setToolTip(self.text)
@@ -62,48 +100,87 @@ class WordLine(QWidget):
         """The words, as a screen reader says them."""
         return "\n".join(" ".join(piece.text for piece in line) for line in self._pieces)
 
+    @property
+    def moved(self) -> frozenset[str]:
+        """The strong pieces that are other than a moment ago, underlined."""
+        return self._moved
+
+    def _tell_moves(self, before: tuple[tuple[Piece, ...], ...], after: tuple[tuple[Piece, ...], ...]) -> None:
+        known = {piece.text for line in before for piece in line}
+        now = {piece.text for line in after for piece in line if piece.strong}
+        if known and now:
+            self._moved = frozenset((now - known) | (self._moved & now))
+            self._settling.start()
+
+    def _settle(self) -> None:
+        self._moved = frozenset()
+        self.update()
+
     def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802
         """Another width breaks lines elsewhere."""
         super().resizeEvent(event)
         self._fit()
 
+    def changeEvent(self, event: QEvent) -> None:  # noqa: N802
+        """Another font has other widths."""
+        super().changeEvent(event)
+        if event.type() == QEvent.Type.FontChange:
+            self._fonts.clear()
+            self._fit()
+
     def _fit(self) -> None:
-        height = max(self._least, len(self._rows())) * self._line_px
+        """Lay the words out anew, and be as high as they need."""
+        self._rows = self._laid_out()
+        height = max(self._least, len(self._rows)) * self._line_px
         if height != self.height():
             self.setFixedHeight(height)
 
-    def _rows(self) -> list[list[Piece]]:
-        """The lines, broken where they are too long and may be."""
-        rows: list[list[Piece]] = []
+    def _laid_out(self) -> list[list[_Placed]]:
+        """The lines, broken where they are too long and may be, and cut at the right."""
+        rows: list[list[_Placed]] = []
+        room = float(self.width())
         for line in self._pieces:
             rows.append([])
+            widths = [self._hand(piece).metrics.horizontalAdvance(piece.text) for piece in line]
             x = 0.0
             for index, piece in enumerate(line):
-                group = [piece, *takewhile(lambda one: not one.breaks, line[index + 1 :])]
-                if piece.breaks and rows[-1] and x + sum(map(self._width, group)) > self.width():
-                    rows.append([])
-                    piece, x = replace(piece, gap=0.0), 0.0
-                rows[-1].append(piece)
-                x += self._width(piece)
+                gap = piece.gap
+                if piece.breaks and rows[-1]:
+                    group = 1 + sum(1 for _ in takewhile(lambda one: not one.breaks, line[index + 1 :]))
+                    gaps = sum(one.gap for one in line[index : index + group])
+                    if x + gaps + sum(widths[index : index + group]) > room:
+                        rows.append([])
+                        gap, x = 0.0, 0.0
+                x += gap
+                words, width = piece.text, widths[index]
+                if x + width > room:
+                    metrics = self._hand(piece).metrics
+                    words = metrics.elidedText(words, Qt.TextElideMode.ElideRight, max(0.0, room - x))
+                    width = metrics.horizontalAdvance(words)
+                rows[-1].append(_Placed(piece=piece, x=x, words=words, width=width))
+                x += width
         return rows
 
-    def _width(self, piece: Piece) -> float:
-        metrics = QFontMetricsF(sized(self.font(), piece.size, bold=piece.strong))
-        return piece.gap + metrics.horizontalAdvance(piece.text)
+    def _hand(self, piece: Piece) -> _Hand:
+        """Font and widths of a piece; to make them anew for every word of every frame takes longer than to paint."""
+        key = (piece.size, piece.strong)
+        if key not in self._fonts:
+            font = sized(self.font(), piece.size, bold=piece.strong)
+            self._fonts[key] = _Hand(font=font, metrics=QFontMetricsF(font))
+        return self._fonts[key]
 
     def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802
         """Pieces from left to right on a common base line."""
         theme = self._appearance.theme
+        ink, muted = QColor(theme.ink), QColor(theme.muted)
         with QPainter(self) as painter:
-            for row, line in enumerate(self._rows()):
-                x = 0.0
+            for row, line in enumerate(self._rows):
                 base = (row + 1) * self._line_px - 5.0
-                for piece in line:
-                    font = sized(self.font(), piece.size, bold=piece.strong)
-                    painter.setFont(font)
-                    metrics = QFontMetricsF(font)
-                    x += piece.gap
-                    words = metrics.elidedText(piece.text, Qt.TextElideMode.ElideRight, max(0.0, self.width() - x))
-                    painter.setPen(QColor(theme.ink if piece.strong else theme.muted))
-                    painter.drawText(int(x), int(base), words)
-                    x += metrics.horizontalAdvance(words)
+                for one in line:
+                    piece = one.piece
+                    painter.setFont(self._hand(piece).font)
+                    painter.setPen(ink if piece.strong else muted)
+                    painter.drawText(int(one.x), int(base), one.words)
+                    if piece.strong and piece.text in self._moved:
+                        painter.setPen(QPen(muted, 1.0))
+                        painter.drawLine(QLineF(one.x, base + 2.5, one.x + one.width, base + 2.5))

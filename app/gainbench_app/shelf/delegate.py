@@ -1,0 +1,137 @@
+"""How the cells of the shelf look: a line's sample, names and figures, and differences in grey before them.
+
+Painted from the model's words directly: a style sheet, or asking for each word through Qt, takes several times as long.
+"""
+
+from __future__ import annotations
+
+from PySide6.QtCore import QAbstractItemModel, QEvent, QPointF, QRect, QRectF, QSize, Qt
+from PySide6.QtGui import QColor, QFont, QFontMetricsF, QKeyEvent, QMouseEvent, QPainter, QPen
+from PySide6.QtWidgets import QStyle, QStyledItemDelegate, QStyleOptionViewItem, QWidget
+
+from gainbench_app.shelf.head import PAD_PX as _PAD
+from gainbench_app.shelf.model import LINE, NAME, UNSTABLE, Index, ShelfModel
+from gainbench_app.shelf.tunings import Kind, Row
+from gainbench_app.theme import SMALL_PX, sized
+from gainbench_app.widgets.appearance import Appearance
+
+_SAMPLE_PX = 34.0
+_GAP_PX = 6.0
+_RIGHT = int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
+_LEFT = int(Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter)
+
+
+class ShelfDelegate(QStyledItemDelegate):
+    """Paints cells by itself."""
+
+    def __init__(self, model: ShelfModel, appearance: Appearance, parent: QWidget) -> None:
+        super().__init__(parent)
+        self._model = model
+        self._appearance = appearance
+        font = parent.font()
+        self._plain, self._strong, self._small = sized(font, 13), sized(font, 13, bold=True), sized(font, SMALL_PX)
+        self._widths = {id(one): QFontMetricsF(one) for one in (self._plain, self._strong, self._small)}
+        self.dirty = QRect()
+        """What is painted anew; Qt asks for the cells around it as well."""
+
+    def sizeHint(self, option: QStyleOptionViewItem, index: Index) -> QSize:  # noqa: N802
+        """As wide as its words."""
+        return QSize(round(self._width(self._plain, str(index.data() or "")) + 2.0 * _PAD), 24)
+
+    def _width(self, font: QFont, words: str) -> float:
+        return self._widths[id(font)].horizontalAdvance(words)
+
+    def paint(self, painter: QPainter, option: QStyleOptionViewItem, index: Index) -> None:
+        """One cell."""
+        rect: QRect = option.rect
+        if not self.dirty.isNull() and not rect.intersects(self.dirty):
+            return
+        theme = self._appearance.theme
+        number, column = index.row(), index.column()
+        row = self._model.shelf_rows[number]
+        box = QRectF(rect)
+        state = option.state
+        if state & QStyle.StateFlag.State_Selected:
+            painter.fillRect(box, QColor(theme.mixed(theme.outline, 0.16)))
+        painter.fillRect(QRectF(box.left(), box.top(), box.width(), 1.0), QColor(theme.rule))
+        if column == LINE:
+            self._paint_sample(painter, box, row)
+        elif column == NAME:
+            self._paint_name(painter, box, number)
+        else:
+            self._paint_figure(painter, box, number, column)
+        if state & QStyle.StateFlag.State_HasFocus:
+            painter.setPen(QPen(QColor(theme.ink), 1.0))
+            painter.setBrush(Qt.BrushStyle.NoBrush)
+            painter.drawRect(box.adjusted(0.5, 1.5, -0.5, -1.5))
+
+    def _paint_sample(self, painter: QPainter, box: QRectF, row: Row) -> None:
+        theme = self._appearance.theme
+        middle = round(box.center().y()) + 0.5
+        right = box.right() - _PAD
+        painter.save()
+        painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+        if row.key.kind is Kind.LIVE or row.pattern is not None:
+            pen = QPen(QColor(theme.speed), 2.0 if row.pattern is None else 1.6)
+            if row.pattern is not None:
+                pen.setDashPattern([one / pen.widthF() for one in row.pattern])
+                pen.setCapStyle(Qt.PenCapStyle.FlatCap)
+            painter.setPen(pen)
+            painter.drawLine(QPointF(right - _SAMPLE_PX, middle), QPointF(right, middle))
+        else:
+            painter.setPen(QPen(QColor(theme.outline), 1.0))
+            painter.drawEllipse(QPointF(right - _SAMPLE_PX / 2.0, middle), 4.0, 4.0)
+        painter.restore()
+
+    def _paint_name(self, painter: QPainter, box: QRectF, number: int) -> None:
+        theme = self._appearance.theme
+        row = self._model.shelf_rows[number]
+        font = self._strong if row.key.kind is Kind.LIVE else self._plain
+        inner = box.adjusted(_PAD, 0.0, -_PAD, 0.0)
+        words = self._widths[id(font)].elidedText(row.name, Qt.TextElideMode.ElideRight, inner.width())
+        painter.setFont(font)
+        painter.setPen(QColor(theme.ink))
+        painter.drawText(inner, _LEFT, words)
+        if self._model.is_reference(number):
+            x = inner.left() + self._width(font, words) + _GAP_PX
+            painter.setFont(self._small)
+            painter.setPen(QColor(theme.muted))
+            painter.drawText(QRectF(x, inner.top(), inner.right() - x, inner.height()), _LEFT, "reference")
+
+    def _paint_figure(self, painter: QPainter, box: QRectF, number: int, column: int) -> None:
+        theme = self._appearance.theme
+        row = self._model.shelf_rows[number]
+        text, change = self._model.cell(number, column), self._model.change(number, column)
+        inner = box.adjusted(0.0, 0.0, -_PAD, 0.0)
+        font = self._strong if row.key.kind is Kind.LIVE else self._plain
+        painter.setFont(font)
+        painter.setPen(QColor(theme.breaks if text == UNSTABLE else theme.ink if row.known else theme.muted))
+        painter.drawText(inner, _RIGHT, text)
+        if change:
+            width = self._width(font, text)
+            if self._width(self._small, change) + _GAP_PX + width <= inner.width():
+                painter.setFont(self._small)
+                painter.setPen(QColor(theme.muted))
+                painter.drawText(inner.adjusted(0.0, 0.0, -width - _GAP_PX, 0.0), _RIGHT, change)
+
+    def editorEvent(  # noqa: N802
+        self, event: QEvent, model: QAbstractItemModel, option: QStyleOptionViewItem, index: Index
+    ) -> bool:
+        """A click anywhere on the sample, or Space, switches the line."""
+        if index.column() != LINE or not model.flags(index) & Qt.ItemFlag.ItemIsUserCheckable:
+            return super().editorEvent(event, model, option, index)
+        clicked = (
+            event.type() == QEvent.Type.MouseButtonRelease
+            and isinstance(event, QMouseEvent)
+            and event.button() == Qt.MouseButton.LeftButton
+            and option.rect.contains(event.position().toPoint())
+        )
+        pressed = (
+            event.type() == QEvent.Type.KeyPress and isinstance(event, QKeyEvent) and event.key() == Qt.Key.Key_Space
+        )
+        if clicked or pressed:
+            drawn = model.data(index, Qt.ItemDataRole.CheckStateRole) is Qt.CheckState.Checked
+            return model.setData(
+                index, Qt.CheckState.Unchecked if drawn else Qt.CheckState.Checked, Qt.ItemDataRole.CheckStateRole
+            )
+        return False

@@ -1,0 +1,97 @@
+"""Tunings of the shelf as thin broken lines below the live curves: painted with the axes, so that a drag is free."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from PySide6.QtCore import Qt
+from PySide6.QtGui import QColor, QPainter, QPen
+
+from gainbench_app.shown_tuning import ShownTuning
+from gainbench_app.what_it_does.loop_marks import bode_curve
+from gainbench_app.what_it_does.spans import Span
+from gainbench_app.what_it_does.traces import Array, decimated
+from gainbench_app.widgets.figure import Axes, polygon
+
+_WIDTH_PX = 1.4
+_LEAST_RIPPLE = 0.01
+"""Of what a curve spans; its ripple is drawn as the mean."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class KeptLine:
+    """One curve of a tuning."""
+
+    x: Array
+    y: Array
+    pattern: tuple[float, ...]
+    """Dashes and gaps [px]."""
+
+
+def time_lines(
+    tunings: tuple[ShownTuning, ...], *, span: Span, speed_size: float, columns: int
+) -> tuple[tuple[KeptLine, ...], tuple[KeptLine, ...], tuple[KeptLine, ...]]:
+    """Speed, current and voltage of tunings over a span.
+
+    Parameters
+    ----------
+    tunings : tuple of ShownTuning
+        Those without a response give no lines.
+    span : Span
+        What is shown.
+    speed_size : float
+        The unit of speed [rad/s].
+    columns : int
+        Pixel columns.
+
+    Returns
+    -------
+    tuple
+        The lines of each panel.
+    """
+    found: tuple[list[KeptLine], list[KeptLine], list[KeptLine]] = ([], [], [])
+    for one in tunings:
+        if one.assessment.response is None:
+            continue
+        trace = one.assessment.response.trace
+        first = max(0, int(np.searchsorted(trace.time, span.start)) - 1)
+        last = min(len(trace.time), int(np.searchsorted(trace.time, span.stop)) + 2)
+        if last - first < 2:
+            continue
+        cut = slice(first, last)
+        for lines, values in zip(
+            found, (trace.speed[cut] / speed_size, trace.current[cut], trace.voltage[cut]), strict=True
+        ):
+            ripple = _LEAST_RIPPLE * float(np.ptp(values))
+            drawn = decimated(trace.time[cut], values, columns=columns, least_ripple=ripple)
+            lines.append(KeptLine(x=drawn.x, y=drawn.y, pattern=one.pattern))
+    return tuple(found[0]), tuple(found[1]), tuple(found[2])
+
+
+def loop_lines(tunings: tuple[ShownTuning, ...], loop: str) -> tuple[tuple[KeptLine, ...], tuple[KeptLine, ...]]:
+    """Magnitude and phase of a loop, ``speed`` or ``current``, of tunings."""
+    magnitudes, phases = [], []
+    for one in tunings:
+        assessed = one.assessment.speed if loop == "speed" else one.assessment.current
+        if assessed.curve is not None:
+            curve = bode_curve(assessed.curve, assessed.figures)
+            magnitudes.append(KeptLine(x=curve.frequency_hz, y=curve.magnitude_db, pattern=one.pattern))
+            phases.append(KeptLine(x=curve.frequency_hz, y=curve.phase_deg, pattern=one.pattern))
+    return tuple(magnitudes), tuple(phases)
+
+
+def paint_kept(painter: QPainter, axes: Axes, lines: tuple[KeptLine, ...], *, colour: str) -> None:
+    """Broken lines in a panel, in the hue of the quantity."""
+    if not lines:
+        return
+    painter.save()
+    painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+    painter.setClipRect(axes.box.adjusted(0.0, -1.5, 1.0, 1.5), Qt.ClipOperation.IntersectClip)
+    for line in lines:
+        pen = QPen(QColor(colour), _WIDTH_PX)
+        pen.setCapStyle(Qt.PenCapStyle.FlatCap)
+        pen.setDashPattern([one / _WIDTH_PX for one in line.pattern])
+        painter.setPen(pen)
+        painter.drawPolyline(polygon(axes.across(line.x), axes.down(line.y)))
+    painter.restore()
