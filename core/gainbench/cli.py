@@ -1,4 +1,4 @@
-"""The commands: ``assess``, ``contrast``, ``handover`` and ``origin``.
+"""The commands: ``assess``, ``contrast``, ``handover``, ``identify`` and ``origin``.
 
 Exit status: 0 done and nothing breaks; 1 done, something breaks; 2 refused, with one message on standard error and
 nothing written.
@@ -11,6 +11,7 @@ import os
 import sys
 from collections.abc import Sequence
 from importlib.metadata import version
+from pathlib import Path
 from typing import TYPE_CHECKING, Annotated
 
 import typer
@@ -27,15 +28,16 @@ from gainbench.handover import (
     write_handover,
     write_header,
 )
+from gainbench.identify_report import identification_json, print_identification
 from gainbench.report import assessment_json, breaks, print_assessment
 from gainbench.results import Level
-from gainbench.sheetfile import SheetDocument, digest, read_sheet
+from gainbench.sheetfile import SheetDocument, digest, read_sheet, write_sheet
 
 if TYPE_CHECKING:
     from rich.console import Console
 
 FLOAT = "float"
-COMMANDS = ("assess", "contrast", "handover", "origin")
+COMMANDS = ("assess", "contrast", "handover", "identify", "origin")
 DONE, BREAKS, REFUSED, INTERRUPTED = 0, 1, 2, 130
 _PLAIN_WIDTH = 100
 """Of text that goes to a file or another program."""
@@ -177,6 +179,42 @@ def handover_command(
     lines.append("Read the head of the file before the first run: it holds a bench procedure and the cautions.")
     _say(lines)
     return BREAKS if breaks(assessment) else DONE
+
+
+@app.command("identify")
+def identify_command(
+    sheet: SheetArgument,
+    as_json: Annotated[
+        bool, typer.Option("--json", help="Print JSON for scripts: SI units, full precision, absent where not told.")
+    ] = False,
+    accept: Annotated[
+        bool, typer.Option("--accept", help="Write the estimates with their tolerances back into the sheet.")
+    ] = False,
+) -> int:
+    """Identify motor and load from the logs that a sheet names under [[evidence]].
+
+    Every log is fitted by its experiment, and what they tell is put together. Each estimate has two intervals: of this
+    fit, with its coloured residuals, and with the spread between runs. What a log cannot tell is left out and named.
+    Logs are only read. Exit status: 1 where nothing at all could be told.
+    """
+    from gainbench.evidence.accept import accept as accepted
+    from gainbench.evidence.identify import identify
+    from gainbench.evidence.reading import read_log
+
+    document = read_sheet(sheet)
+    folder = Path(sheet).parent
+    found = identify(document.sheet, [read_log(folder / one.log, one.columns) for one in document.sheet.evidence])
+    if as_json:
+        sys.stdout.write(json.dumps(identification_json(found), indent=2, allow_nan=False) + "\n")
+    else:
+        print_identification(found, _console())
+    if accept and found.estimates:
+        values = accepted(document.sheet, found, typed=document.typed).values
+        write_sheet(document.with_values(values), sheet)
+        if not as_json:
+            _say(["", f"written into {document.name}:", *(f"  {path} = {text}" for path, text in values.items())])
+    told = bool(found.estimates) or any(one.fit_percent is not None for one in found.runs)
+    return DONE if told else BREAKS
 
 
 @app.command("origin")

@@ -43,9 +43,7 @@ def second_part(x: float) -> float:
 
 
 @compiled
-def turn(
-    speed: float, torque: float, step: float, row: NDArray[np.float64]
-) -> tuple[float, float]:
+def turn(speed: float, torque: float, step: float, row: NDArray[np.float64]) -> tuple[float, float]:
     """Speed after an interval and the angle turned in it, through rest and reversal."""
     angle = 0.0
     for _ in range(_PIECES):

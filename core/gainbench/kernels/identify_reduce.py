@@ -102,10 +102,10 @@ def block_sums(rows: NDArray[np.float64], count: int) -> tuple[NDArray[np.float6
 
 @compiled
 def unroll(rows: NDArray[np.float64], bounds: NDArray[np.int64], keep: float) -> NDArray[np.float64]:
-    """Residuals as what entered them at each sample, and sensitivities as what such an entry does to the scores.
+    """Residuals as what entered them at each sample, sensitivities as what such an entry does to the scores.
 
-    With ``r[k] = keep r[k-1] + e[k]`` and ``l[k] = s[k] + keep l[k+1]`` within a segment, ``sum s r = sum l e`` exactly,
-    for any ``keep``; where it is the model's own memory, ``e`` is the disturbance, without memory.
+    With ``r[k] = keep r[k-1] + e[k]`` and ``l[k] = s[k] + keep l[k+1]`` within a segment ``sum s r = sum l e``
+    exactly, for any ``keep``; where it is the model's own memory, ``e`` is the disturbance, without memory.
 
     Parameters
     ----------

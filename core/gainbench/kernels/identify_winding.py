@@ -1,6 +1,7 @@
 """The current of a winding under a known voltage and speed, for many sets of parameters side by side.
 
-``L di/dt = v - R i - Ke w``; voltage and speed are constant over an interval, so that every step is exact.
+``L di/dt = v - R i - Ke w``; over an interval the voltage is constant and the speed goes straight from one sample to
+the next, so that every step is exact.
 """
 
 from __future__ import annotations
@@ -37,7 +38,7 @@ def run_winding(
     voltage : ndarray, shape (n_sources, n)
         Mean voltage from each sample to the next [V].
     speed : ndarray, shape (n,)
-        Mean speed from each sample to the next [rad/s].
+        At the samples [rad/s].
     step : float
         From sample to sample [s].
     sets : ndarray, shape (n_sets, 3)
@@ -57,10 +58,13 @@ def run_winding(
         share = -math.expm1(-x)
         gain = share / resistance
         keep = 1.0 - share
+        # What a straight change over the interval leaves of itself at its end.
+        late = (1.0 - share / x) / resistance * constant
+        early = gain * constant - late
         drive = voltage[source[one]]
         for segment in range(bounds.size - 1):
             current = starts[one, segment]
             out[one, bounds[segment]] = current
             for k in range(bounds[segment], bounds[segment + 1] - 1):
-                current = keep * current + gain * (drive[k] - constant * speed[k])
+                current = keep * current + gain * drive[k] - early * speed[k] - late * speed[k + 1]
                 out[one, k + 1] = current
