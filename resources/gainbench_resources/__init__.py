@@ -1,4 +1,4 @@
-"""Demo sheets, templates and icons, as package data."""
+"""Demo sheets and logs, recipes, templates and icons, as package data."""
 
 from __future__ import annotations
 
@@ -35,6 +35,16 @@ def demo_sheet(name: str) -> Traversable:
     if name not in demo_sheet_names():
         raise KeyError(name)
     return _sheets() / f"{name}{_SUFFIX}"
+
+
+def demo_log(name: str) -> Traversable:
+    """The file of a demo log, ``label-unwinder-driven.csv``; invented data."""
+    return files(__name__) / "logs" / name
+
+
+def recipe(experiment: str) -> Traversable:
+    """The guide's recipe for an experiment as markdown, by the word that the sheet has for it, ``locked-rotor``."""
+    return files(__name__) / "guide" / f"{experiment}.md"
 
 
 def template(name: str) -> Traversable:

@@ -53,7 +53,7 @@ def test_a_command_does_not_open_the_window(opened, capfd):
     [
         (["none.bench.toml"], "no such file"),
         (["."], "folder"),
-        (["identify"], "no such command"),
+        (["identity"], "no such command"),
         (["drive.bench.toml", "drive.bench.toml"], "one sheet at a time"),
         (["--contrast"], "--contrast"),
     ],

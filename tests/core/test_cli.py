@@ -15,6 +15,7 @@ from gainbench import cli
 from gainbench.assess import assess
 from gainbench.handover import read_origin
 from gainbench.sheetfile import digest, parse_sheet
+from gainbench_resources import demo_log
 
 HEADER = "label_unwinder_gains.h"
 
@@ -306,6 +307,9 @@ def test_files_that_are_no_sheets_are_refused(call, bench, content, says):
         (("handover", "label-unwinder.bench.toml", "--to", "out", "--arithmetic", "fixed"), "fixed"),
         (("handover", "label-unwinder.bench.toml", "--to", "out", "--prefix", "_X"), "prefix"),
         (("handover", "label-unwinder.bench.toml", "--to", "out", "--prefix", "a */ b"), "prefix"),
+        (("identify",), "SHEET"),
+        (("identify", "label-unwinder.bench.toml"), "no evidence"),
+        (("identify", "label-unwinder.bench.toml", "--xml"), "--xml"),
         (("origin", "label-unwinder.bench.toml"), "SHEET"),
         (("origin", "label-unwinder.bench.toml", "label-unwinder.bench.toml"), "does not tell its origin"),
         (("origin", "none.h", "label-unwinder.bench.toml"), "does not exist"),
@@ -316,6 +320,58 @@ def test_wrong_words_are_refused(bench, words, says):
     before = sorted(os.listdir(bench))
     assert_refused(run_program(*words, folder=bench), says=says)
     assert sorted(os.listdir(bench)) == before
+
+
+LOG = "label-unwinder-driven.csv"
+EVIDENCE = f"""
+[[evidence]]
+log = "{LOG}"
+experiment = "driven"
+[evidence.columns]
+time = {{ column = "time [s]", unit = "s" }}
+voltage = {{ column = "voltage [V]", unit = "V" }}
+current = {{ column = "current [A]", unit = "A" }}
+angle = {{ column = "angle [deg]", unit = "deg" }}
+"""
+
+
+@pytest.fixture
+def with_evidence(bench):
+    sheet = bench / "evident.bench.toml"
+    text = (bench / "label-unwinder.bench.toml").read_text(encoding="utf-8")
+    sheet.write_text(text + EVIDENCE, encoding="utf-8")
+    (bench / LOG).write_text(demo_log(LOG).read_text(encoding="utf-8"), encoding="utf-8")
+    return sheet
+
+
+def test_identify_prints_json_and_touches_nothing(call, with_evidence):
+    before = {one.name: one.read_bytes() for one in with_evidence.parent.iterdir() if one.is_file()}
+    status, out, _ = call("identify", str(with_evidence), "--json")
+    data = json.loads(out)
+    assert status == 0
+    assert data["format"] == 1
+    assert 0.6 < data["estimates"]["resistance"]["value"] < 0.7
+    assert data["runs"][0]["log"] == LOG
+    assert {one.name: one.read_bytes() for one in with_evidence.parent.iterdir() if one.is_file()} == before
+
+
+def test_identify_accepts_into_the_sheet_and_says_so(call, with_evidence):
+    log = (with_evidence.parent / LOG).read_bytes()
+    status, out, _ = call("identify", str(with_evidence), "--accept")
+    text = with_evidence.read_text(encoding="utf-8")
+    assert status == 0
+    assert "written into evident.bench.toml" in out
+    assert 'note = "accepted: ' in text
+    assert "# brushed: terminal to terminal" in text, "comments survive"
+    assert parse_sheet(text, "x").sheet.rig.machine.resistance > 0.62
+    assert (with_evidence.parent / LOG).read_bytes() == log
+
+
+def test_identify_refuses_a_log_that_is_not_there(call, with_evidence):
+    (with_evidence.parent / LOG).unlink()
+    status, out, err = call("identify", str(with_evidence))
+    assert (status, out) == (2, "")
+    assert LOG in err
 
 
 def test_a_file_name_cannot_steer_the_terminal(call):
@@ -334,10 +390,9 @@ def test_a_title_of_other_letters_is_printed_where_it_cannot_be_shown(bench):
 def test_help_teaches_the_commands(call):
     status, out, _ = call("--help")
     assert status == 0
-    for word in ("assess", "contrast", "handover", "origin", "NAME.bench.toml", "Exit status"):
+    for word in ("assess", "contrast", "handover", "identify", "origin", "NAME.bench.toml", "Exit status"):
         assert word in out
-    for word in ("identify", "fixed"):
-        assert word not in out
+    assert "fixed" not in out
     assert "bench procedure" in " ".join(call("handover", "--help")[1].split())
 
 

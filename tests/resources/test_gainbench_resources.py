@@ -4,8 +4,27 @@ from __future__ import annotations
 
 import pytest
 
+from demo_log import TRUE
+from demo_log import demo_log as made
+from gainbench.evidence.estimate import EstimateName
+from gainbench.evidence.identify import identify
+from gainbench.evidence.reading import read_log
+from gainbench.model import Experiment
 from gainbench.sheetfile import parse_sheet
-from gainbench_resources import demo_sheet, demo_sheet_names
+from gainbench_resources import demo_log, demo_sheet, demo_sheet_names, recipe
+from quantities import assert_quantity
+
+LOG = "label-unwinder-driven.csv"
+EVIDENCE = f"""
+[[evidence]]
+log = "{LOG}"
+experiment = "driven"
+[evidence.columns]
+time = {{ column = "time [s]", unit = "s" }}
+voltage = {{ column = "voltage [V]", unit = "V" }}
+current = {{ column = "current [A]", unit = "A" }}
+angle = {{ column = "angle [deg]", unit = "deg" }}
+"""
 
 
 def test_the_sheet_that_opens_by_default_comes_first():
@@ -26,3 +45,28 @@ def test_there_is_no_other():
         demo_sheet("none")
     with pytest.raises(KeyError):
         demo_sheet("../sheets/label-unwinder")
+
+
+def test_the_demo_log_is_what_its_script_makes():
+    assert demo_log(LOG).read_text(encoding="utf-8") == made()
+
+
+def test_the_demo_log_identifies_the_motor_it_was_made_with(tmp_path):
+    (tmp_path / LOG).write_text(made(), encoding="utf-8")
+    sheet = parse_sheet(demo_sheet("label-unwinder").read_text(encoding="utf-8") + EVIDENCE, "x.bench.toml").sheet
+    found = identify(sheet, [read_log(tmp_path / one.log, one.columns) for one in sheet.evidence]).estimates
+    for name, true in (
+        (EstimateName.RESISTANCE, TRUE.resistance),
+        (EstimateName.BACK_EMF_CONSTANT, TRUE.constant),
+        (EstimateName.INERTIA, TRUE.inertia),
+        (EstimateName.COULOMB_FRICTION, TRUE.coulomb),
+    ):
+        assert_quantity(found[name].value, true[0], rtol=0.02, unit=name.si, why="some noise over 5 s")
+
+
+def test_every_experiment_has_its_recipe():
+    for one in Experiment:
+        text = recipe(one.value).read_text(encoding="utf-8")
+        assert text.startswith("# ")
+        assert "## What it cannot tell" in text
+        assert "## How to run it" in text

@@ -19,6 +19,9 @@ from gainbench.evidence.step_check import check_step
 from gainbench.model import EvidenceLog, Experiment, Sheet
 from gainbench.plant import Plant, refer
 
+_FEWEST = 60
+"""Rows of a log below which nothing is told from it."""
+
 
 def identify(sheet: Sheet, logs: Sequence[Log]) -> Identification:
     """Identify from the logs of a sheet.
@@ -88,6 +91,11 @@ def _outcome(sheet: Sheet, plant: Plant, entry: EvidenceLog, log: Log) -> Outcom
     if entry.experiment is Experiment.FREQUENCY_RESPONSE:
         return check_frequency_response(sheet, log).outcome
     record = prepare(log)
+    if record.size < _FEWEST:
+        raise LogError(
+            f"{log.name}: too short to identify from: it has {record.size} rows in unbroken pieces, it takes at least"
+            f" {_FEWEST}; record a longer run, or at a higher rate"
+        )
     found: Outcome
     if entry.experiment is Experiment.LOCKED_ROTOR:
         found = locked_rotor(record, plant)

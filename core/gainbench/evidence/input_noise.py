@@ -14,6 +14,8 @@ _LINES = 256
 _HIGHEST = 0.35
 """Cycles a sample above which the softened signals hold next to nothing."""
 _TURNS = 4
+_FASTEST, _SLOWEST = 1e-6, 30.0
+"""Samples over a winding's time constant between which its lag shows."""
 
 
 def input_noise(fit: Fit, keep: float) -> float:
@@ -86,6 +88,9 @@ def undrawn(fit: Fit, *, size: Array, noise: float, step: float) -> Array:
     T. Soederstroem, Errors-in-variables methods in system identification, Automatica 43, 2007, section 5, for
     compensated least squares (from memory).
     """
+    # Where nothing lags there is nothing to draw, nor where a fit ran to the end of its bounds.
+    if noise <= 0.0 or not _FASTEST < fit.values[0] * step / fit.values[1] < _SLOWEST:
+        return fit.values
     frequency = np.asarray((np.arange(2048) + 0.5) / 4096.0, dtype=np.float64)
     turn, soft = np.exp(-2j * np.pi * frequency), softened(frequency)
 

@@ -214,7 +214,8 @@ def _settle(task: _Task, start: Array, *, lower: Array, upper: Array) -> Fit:
         values = _solve(task, values, lower=lower, upper=upper)
         rows = task.rows(values)
     size = task.model.size
-    ridge = np.full(size.size, _RIDGE * float(np.mean(rows[0] ** 2)))
+    most = float(np.max(np.sum(rows[1:] ** 2, axis=1), initial=0.0))
+    ridge = np.full(size.size, _RIDGE * float(np.mean(rows[0] ** 2)) + (_ROUNDING * most if most > 0.0 else 1.0))
     keep = task.model.keep(values)
     disturbance = _disturbance(task, values, keep)
     spectral = spectral_covariance(rows, task.bounds, keep=keep, ridge=ridge, disturbance=disturbance)

@@ -188,6 +188,8 @@ def fit_shaft(record: Record, drive: Array, *, per: EstimateName | None) -> Shaf
     rows = shaft_rows(work, work.signals[SignalName.TORQUE])
     if rows.drive.size < 20:
         return ShaftEvidence(fitted=(), linear=(), fit_percent=0.0, remarks=("nothing moved: this log tells nothing",))
+    if not np.any(rows.drive):
+        return ShaftEvidence(fitted=(), linear=(), fit_percent=0.0, remarks=("the drive is zero throughout",))
     shapes = (Shape.EVEN, Shape.BY_WAY) if rows.both_ways else (Shape.ONE_WAY,)
     fitted: list[Told] = []
     linear: list[Told] = []

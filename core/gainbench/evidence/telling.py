@@ -17,6 +17,8 @@ _WIDEST = 0.5
 """Share of the value that the 95 % bounds of a told parameter may be away from it."""
 _HELD = (-1.0, 0.5)
 """Shifts in samples that are the way a signal is held between samples, and no dead time."""
+_EXACT = 1e-18
+"""Share of a square below which a variance is rounding."""
 _SURE = 3.0
 """Standard deviations that a dead time must be away from zero to be one."""
 
@@ -46,7 +48,10 @@ def tell(
     remarks : list of str
         One for each that is not.
     """
-    half = quantile(spare) * np.sqrt(np.maximum(np.diag(covariance), 0.0))
+    variance = np.diag(covariance)
+    half = quantile(spare) * np.sqrt(np.where(variance > 0.0, variance, np.inf))
+    # What a covariance gives to a variance of nothing, an exact log, is as sure as numbers are.
+    half = np.where(np.abs(variance) <= _EXACT * values**2, _EXACT * np.abs(values), half)
     finite = np.isfinite(half) & np.isfinite(values)
     narrow = half <= np.maximum(_WIDEST * np.abs(values), floors)
     possible = (values > 0.0) | (floors > 0.0)
