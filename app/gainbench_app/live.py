@@ -5,9 +5,10 @@ from __future__ import annotations
 from collections.abc import Callable
 from enum import IntEnum
 
-from PySide6.QtCore import QElapsedTimer, QObject, Qt, QThread, QTimer, Signal
+from PySide6.QtCore import QElapsedTimer, QMetaObject, QObject, Qt, QThread, QTimer, Signal, Slot
 
-FRAME_MS = 16
+FRAME_MS = 10
+"""From the start of one run to the next. Less than a screen's frame, so that a run that came late is caught up."""
 
 
 class FrameTimer(QObject):
@@ -16,6 +17,7 @@ class FrameTimer(QObject):
     def __init__(self, run: Callable[[], None], parent: QObject | None = None) -> None:
         super().__init__(parent)
         self._run = run
+        self._asked = False
         self._timer = QTimer(self)
         self._timer.setSingleShot(True)
         self._timer.setTimerType(Qt.TimerType.PreciseTimer)
@@ -24,21 +26,30 @@ class FrameTimer(QObject):
 
     def request(self) -> None:
         """Ask for a run."""
-        if not self._timer.isActive():
-            elapsed = self._since.elapsed() if self._since.isValid() else FRAME_MS
-            self._timer.start(max(0, FRAME_MS - elapsed))
+        if self._asked:
+            return
+        self._asked = True
+        elapsed = self._since.elapsed() if self._since.isValid() else FRAME_MS
+        if elapsed >= FRAME_MS:
+            # Before the window is painted: a timer would come after, and the same event be painted twice.
+            QMetaObject.invokeMethod(self, "_fire", Qt.ConnectionType.QueuedConnection)
+        else:
+            self._timer.start(FRAME_MS - elapsed)
 
     def flush(self) -> None:
         """Run now if a run is asked for."""
-        if self._timer.isActive():
-            self._timer.stop()
-            self._fire()
+        self._fire()
 
     def stop(self) -> None:
         """Forget what was asked for."""
+        self._asked = False
         self._timer.stop()
 
+    @Slot()
     def _fire(self) -> None:
+        if not self._asked:
+            return
+        self.stop()
         self._since.start()
         self._run()
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
+from PySide6.QtGui import QResizeEvent, QShowEvent
 from PySide6.QtWidgets import (
     QAbstractItemView,
     QDialog,
@@ -33,7 +34,7 @@ class PasteDialog(QDialog):
         self._desk = desk
         self._rows: tuple[PastedRow, ...] = ()
         self.setWindowTitle("Paste rows from a data sheet")
-        self.resize(820, 560)
+        self.resize(900, 580)
         layout = QVBoxLayout(self)
         layout.setContentsMargins(MARGIN_PX + 2, MARGIN_PX, MARGIN_PX + 2, MARGIN_PX)
         layout.setSpacing(10)
@@ -49,13 +50,15 @@ class PasteDialog(QDialog):
         self.table.setAccessibleName("what the rows would set")
         self.table.setHorizontalHeaderLabels(_HEADS)
         self.table.verticalHeader().hide()
+        self.table.verticalHeader().setMinimumSectionSize(24)
+        self.table.verticalHeader().setDefaultSectionSize(24)
         self.table.setShowGrid(False)
         self.table.setTabKeyNavigation(False)
         self.table.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
         self.table.setSelectionBehavior(QAbstractItemView.SelectionBehavior.SelectRows)
         self.table.setWordWrap(True)
         head = self.table.horizontalHeader()
-        for column, width in enumerate((170, 120, 250)):
+        for column, width in enumerate((160, 120, 330)):
             head.resizeSection(column, width)
         head.setSectionResizeMode(len(_HEADS) - 1, QHeaderView.ResizeMode.Stretch)
         self.table.itemChanged.connect(self._count)
@@ -90,6 +93,16 @@ class PasteDialog(QDialog):
         self.table.blockSignals(False)
         self.table.resizeRowsToContents()
         self._count()
+
+    def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802
+        """Another width breaks lines elsewhere."""
+        super().resizeEvent(event)
+        self.table.resizeRowsToContents()
+
+    def showEvent(self, event: QShowEvent) -> None:  # noqa: N802
+        """The columns have their widths."""
+        super().showEvent(event)
+        self.table.resizeRowsToContents()
 
     def _show(self, number: int, row: PastedRow) -> None:
         now = (self._desk.text(row.path) or "not given") if row.path else ""

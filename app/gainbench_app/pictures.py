@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from PySide6.QtCore import QBuffer, QByteArray, QIODevice, QRectF, QSize, Qt
+from PySide6.QtCore import QBuffer, QByteArray, QIODevice, QPoint, QRect, QRectF, QSize, Qt
 from PySide6.QtGui import QColor, QGuiApplication, QImage, QImageWriter, QPainter
 
 from gainbench.errors import SheetError
@@ -19,18 +19,18 @@ PIXELS_PER_POINT = 2.0
 
 
 def picture(figures: list[Figure], *, pixels_per_point: float = PIXELS_PER_POINT) -> QImage:
-    """Plots one above the other as pixels."""
+    """Plots as pixels, where they are to each other."""
     width, height = _size(figures)
     image = QImage(QSize(round(width * pixels_per_point), round(height * pixels_per_point)), QImage.Format.Format_RGB32)
     image.setDevicePixelRatio(pixels_per_point)
     image.fill(QColor(figures[0].theme.card))
     with QPainter(image) as painter:
-        _paint_stacked(painter, figures)
+        _paint_all(painter, figures)
     return image
 
 
 def drawing(figures: list[Figure], *, title: str) -> bytes:
-    """Plots one above the other as SVG."""
+    """Plots as SVG, where they are to each other."""
     from PySide6.QtSvg import QSvgGenerator
 
     width, height = _size(figures)
@@ -43,7 +43,7 @@ def drawing(figures: list[Figure], *, title: str) -> bytes:
     generator.setViewBox(QRectF(0.0, 0.0, width, height))
     generator.setTitle(title)
     with QPainter(generator) as painter:
-        _paint_stacked(painter, figures)
+        _paint_all(painter, figures)
     buffer.close()
     return bytes(content.data())
 
@@ -76,16 +76,22 @@ def save_picture(figures: list[Figure], path: Path, *, title: str) -> None:
     replace_file(path, content)
 
 
+def _places(figures: list[Figure]) -> list[QRect]:
+    """Where the plots are to each other in their window, from the corner of all of them."""
+    found = [QRect(one.mapTo(one.window(), QPoint(0, 0)), one.size()) for one in figures]
+    left, top = min(one.left() for one in found), min(one.top() for one in found)
+    return [one.translated(-left, -top) for one in found]
+
+
 def _size(figures: list[Figure]) -> tuple[int, int]:
-    return max(one.width() for one in figures), sum(one.height() for one in figures)
+    places = _places(figures)
+    return max(one.right() for one in places) + 1, max(one.bottom() for one in places) + 1
 
 
-def _paint_stacked(painter: QPainter, figures: list[Figure]) -> None:
-    top = 0.0
-    for figure in figures:
+def _paint_all(painter: QPainter, figures: list[Figure]) -> None:
+    for figure, place in zip(figures, _places(figures), strict=True):
         painter.save()
-        painter.translate(0.0, top)
+        painter.translate(place.topLeft())
         painter.setClipRect(QRectF(0.0, 0.0, figure.width(), figure.height()), Qt.ClipOperation.IntersectClip)
         figure.paint_whole(painter)
         painter.restore()
-        top += figure.height()

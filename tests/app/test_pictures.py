@@ -1,7 +1,7 @@
 import re
 
 import pytest
-from PySide6.QtCore import QPointF
+from PySide6.QtCore import QPoint, QPointF, QRect
 from PySide6.QtGui import QGuiApplication, QImage
 
 from gainbench.errors import SheetError
@@ -22,12 +22,19 @@ def test_a_drawing_holds_lines_and_words(figures):
     assert "a <b>" not in text
 
 
-def test_plots_stand_one_above_the_other(figures):
+def test_plots_stand_to_each_other_as_they_do_in_the_window(figures):
     image = picture(figures, pixels_per_point=1.0)
-    assert image.width() == max(one.width() for one in figures)
-    assert image.height() == sum(one.height() for one in figures)
-    lower = image.copy(0, figures[0].height(), figures[1].width(), figures[1].height())
-    assert lower.convertToFormat(QImage.Format.Format_RGB32) == picture(figures[1:2], pixels_per_point=1.0)
+    places = [QRect(one.mapTo(one.window(), QPoint(0, 0)), one.size()) for one in figures]
+    left, top = min(one.left() for one in places), min(one.top() for one in places)
+    assert image.width() == max(one.right() for one in places) - left + 1
+    assert image.height() == max(one.bottom() for one in places) - top + 1
+    for number, place in enumerate(places):
+        part = image.copy(place.translated(-left, -top)).convertToFormat(QImage.Format.Format_RGB32)
+        assert part == picture(figures[number : number + 1], pixels_per_point=1.0)
+
+
+def test_the_unit_on_a_button_is_in_it(figures):
+    assert ">rpm</text>" in re.sub(r"\s+", "", drawing(figures[:1], title="x").decode("utf-8"))
 
 
 def test_the_cursor_is_not_in_it(figures):

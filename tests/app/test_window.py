@@ -3,11 +3,12 @@ import sys
 import pytest
 from PySide6.QtCore import QMimeData, QObject, QPointF, Qt, QUrl
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent, QGuiApplication
-from PySide6.QtWidgets import QApplication, QWidget
+from PySide6.QtWidgets import QApplication, QLabel, QWidget
 
 from gainbench.sheetfile import read_sheet
 from gainbench_app.habits import with_recent
 from gainbench_app.live import Readiness
+from gainbench_app.pictures import picture
 
 RETURN = Qt.Key.Key_Return
 LEFT_BUTTON = Qt.MouseButton.LeftButton
@@ -49,6 +50,9 @@ def test_it_is_laid_out_at_its_smallest_and_at_its_usual_size(window):
         for row in (window.on_bench.row("machine.viscous_friction"), window.on_bench.row("train.ratio")):
             box = row.box
             assert box.fontMetrics().horizontalAdvance(box.text()) <= box.width() - 6
+        for label in window.on_bench.findChildren(QLabel):
+            if label.isVisible() and label.buddy() is not None:
+                assert label.fontMetrics().horizontalAdvance(label.text()) <= label.width(), label.text()
 
 
 def test_typing_a_value_redraws_everything(window, qtbot, desk):
@@ -315,7 +319,7 @@ def test_a_kept_tuning_is_handed_over(window, desk, answers, tmp_path):
 def test_pictures_are_copied_and_saved(window, qtbot, answers, tmp_path):
     qtbot.keyClick(window, Qt.Key.Key_C, CONTROL | Qt.KeyboardModifier.ShiftModifier)
     image = QGuiApplication.clipboard().image()
-    assert image.width() == 2 * max(one.width() for one in window.figures())
+    assert image.width() == picture(window.figures()).width()
     answers.picture = tmp_path / "plots.svg"
     window.menu_of_more.save_picture.trigger()
     assert answers.picture.read_bytes().startswith(b"<?xml")

@@ -65,10 +65,10 @@ def main() -> None:
     else:
         found = measured(options.platform, options.seconds)
     if options.json:
-        print(json.dumps(found, indent=2))
+        sys.stdout.write(json.dumps(found, indent=2) + "\n")
     else:
         for key, value in found.items():
-            print(f"{key}: {value}")
+            sys.stdout.write(f"{key}: {value}\n")
 
 
 def here(platform: str, seconds: float, display: str = "") -> dict[str, object]:

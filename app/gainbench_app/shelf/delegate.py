@@ -5,7 +5,7 @@ Painted from the model's words directly: a style sheet, or asking for each word 
 
 from __future__ import annotations
 
-from PySide6.QtCore import QAbstractItemModel, QEvent, QPointF, QRect, QRectF, QSize, Qt
+from PySide6.QtCore import QAbstractItemModel, QEvent, QPointF, QRectF, QSize, Qt
 from PySide6.QtGui import QColor, QFont, QFontMetricsF, QKeyEvent, QMouseEvent, QPainter, QPen
 from PySide6.QtWidgets import QStyle, QStyledItemDelegate, QStyleOptionViewItem, QWidget
 
@@ -31,8 +31,6 @@ class ShelfDelegate(QStyledItemDelegate):
         font = parent.font()
         self._plain, self._strong, self._small = sized(font, 13), sized(font, 13, bold=True), sized(font, SMALL_PX)
         self._widths = {id(one): QFontMetricsF(one) for one in (self._plain, self._strong, self._small)}
-        self.dirty = QRect()
-        """What is painted anew; Qt asks for the cells around it as well."""
 
     def sizeHint(self, option: QStyleOptionViewItem, index: Index) -> QSize:  # noqa: N802
         """As wide as its words."""
@@ -43,15 +41,23 @@ class ShelfDelegate(QStyledItemDelegate):
 
     def paint(self, painter: QPainter, option: QStyleOptionViewItem, index: Index) -> None:
         """One cell."""
-        rect: QRect = option.rect
-        if not self.dirty.isNull() and not rect.intersects(self.dirty):
-            return
-        theme = self._appearance.theme
-        number, column = index.row(), index.column()
-        row = self._model.shelf_rows[number]
-        box = QRectF(rect)
         state = option.state
-        if state & QStyle.StateFlag.State_Selected:
+        self.paint_cell(
+            painter,
+            QRectF(option.rect),
+            number=index.row(),
+            column=index.column(),
+            chosen=bool(state & QStyle.StateFlag.State_Selected),
+            focused=bool(state & QStyle.StateFlag.State_HasFocus),
+        )
+
+    def paint_cell(
+        self, painter: QPainter, box: QRectF, *, number: int, column: int, chosen: bool, focused: bool
+    ) -> None:
+        """One cell of a row, on the ground of the chosen row, and with a line around it where the focus is."""
+        theme = self._appearance.theme
+        row = self._model.shelf_rows[number]
+        if chosen:
             painter.fillRect(box, QColor(theme.mixed(theme.outline, 0.16)))
         painter.fillRect(QRectF(box.left(), box.top(), box.width(), 1.0), QColor(theme.rule))
         if column == LINE:
@@ -60,7 +66,7 @@ class ShelfDelegate(QStyledItemDelegate):
             self._paint_name(painter, box, number)
         else:
             self._paint_figure(painter, box, number, column)
-        if state & QStyle.StateFlag.State_HasFocus:
+        if focused:
             painter.setPen(QPen(QColor(theme.ink), 1.0))
             painter.setBrush(Qt.BrushStyle.NoBrush)
             painter.drawRect(box.adjusted(0.5, 1.5, -0.5, -1.5))

@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from PySide6.QtCore import QPoint, Qt, Signal
-from PySide6.QtGui import QFontMetricsF, QGuiApplication, QKeyEvent, QPaintEvent, QResizeEvent
+from PySide6.QtCore import QPoint, QRectF, Qt, Signal
+from PySide6.QtGui import QFontMetricsF, QGuiApplication, QKeyEvent, QPainter, QPaintEvent, QResizeEvent
 from PySide6.QtWidgets import (
     QAbstractItemView,
     QFrame,
@@ -50,13 +50,35 @@ class _Table(QTableView):
         super().resizeEvent(event)
         self.resized.emit()
 
+    def edit_name(self) -> None:
+        """Edit the name of the chosen row, unless that is being done already."""
+        if self.state() != self.State.EditingState:
+            self.edit(self.model().index(self.currentIndex().row(), NAME))
+
     def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802
-        """Only cells that have changed are painted."""
+        """Only the cells that have changed, without asking Qt's styles about each of them."""
         delegate = self.itemDelegate()
-        if isinstance(delegate, ShelfDelegate):
-            # Qt asks for one pixel more than has changed, which would paint the next row as well.
-            delegate.dirty = event.region().boundingRect().adjusted(0, 1, 0, -1)
-        super().paintEvent(event)
+        assert isinstance(delegate, ShelfDelegate)
+        # Qt asks for one pixel more than has changed, which would paint the next row as well.
+        dirty = event.region().boundingRect().adjusted(0, 1, 0, -1)
+        model, current, focused = self.model(), self.currentIndex(), self.hasFocus()
+        lines = [(self.rowViewportPosition(row), self.rowHeight(row)) for row in range(model.rowCount())]
+        columns = [(self.columnViewportPosition(one), self.columnWidth(one)) for one in range(model.columnCount())]
+        with QPainter(self.viewport()) as painter:
+            for row, (top, height) in enumerate(lines):
+                if top + height <= dirty.top() or top > dirty.bottom():
+                    continue
+                chosen = row == current.row()
+                for column, (left, width) in enumerate(columns):
+                    if left + width > dirty.left() and left <= dirty.right():
+                        delegate.paint_cell(
+                            painter,
+                            QRectF(left, top, width, height),
+                            number=row,
+                            column=column,
+                            chosen=chosen,
+                            focused=focused and chosen and column == current.column(),
+                        )
 
     def keyPressEvent(self, event: QKeyEvent) -> None:  # noqa: N802
         """Enter recalls, Delete takes off, Alt with the arrows moves."""
@@ -296,7 +318,7 @@ class ShelfPanel(QFrame):
         row = self.row
         if row is not None and row.key.kind is Kind.KEPT:
             self.table.setFocus()
-            self.table.edit(self.model.index(self.table.currentIndex().row(), NAME))
+            self.table.edit_name()
 
     def note(self) -> None:
         """Ask for the chosen tuning's note."""

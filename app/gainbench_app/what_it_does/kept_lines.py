@@ -14,7 +14,7 @@ from gainbench_app.what_it_does.spans import Span
 from gainbench_app.what_it_does.traces import Array, decimated
 from gainbench_app.widgets.figure import Axes, polygon
 
-_WIDTH_PX = 1.4
+_TWICE = (-0.2, 0.2)
 _LEAST_RIPPLE = 0.01
 """Of what a curve spans; its ripple is drawn as the mean."""
 
@@ -88,10 +88,16 @@ def paint_kept(painter: QPainter, axes: Axes, lines: tuple[KeptLine, ...], *, co
     painter.save()
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     painter.setClipRect(axes.box.adjusted(0.0, -1.5, 1.0, 1.5), Qt.ClipOperation.IntersectClip)
+    # A pen wider than one pixel takes thirty times as long: twice a pixel looks the same.
+    pen = QPen(QColor(colour), 1.0)
+    pen.setCosmetic(True)
+    pen.setCapStyle(Qt.PenCapStyle.FlatCap)
     for line in lines:
-        pen = QPen(QColor(colour), _WIDTH_PX)
-        pen.setCapStyle(Qt.PenCapStyle.FlatCap)
-        pen.setDashPattern([one / _WIDTH_PX for one in line.pattern])
+        pen.setDashPattern(list(line.pattern))
         painter.setPen(pen)
-        painter.drawPolyline(polygon(axes.across(line.x), axes.down(line.y)))
+        points = polygon(axes.across(line.x), axes.down(line.y))
+        for shift in _TWICE:
+            painter.translate(shift, shift)
+            painter.drawPolyline(points)
+            painter.translate(-shift, -shift)
     painter.restore()

@@ -6,7 +6,7 @@ import re
 
 from PySide6.QtCore import QEvent, QRectF, Qt, Signal
 from PySide6.QtGui import QColor, QEnterEvent, QFocusEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent, QPen
-from PySide6.QtWidgets import QHBoxLayout, QLabel, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QVBoxLayout, QWidget
 
 from gainbench.model import Sheet
 from gainbench.results import Finding
@@ -15,6 +15,7 @@ from gainbench_app.what_we_ask.finding_links import what_to_move
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.card import Card
 from gainbench_app.widgets.level_mark import WORDS, LevelMark
+from gainbench_app.widgets.wrapped_text import WrappedText
 
 _UNIT = re.compile(r"(?<=\d) (?=(?:%|°|[GMkmµ]?[A-Za-z]{1,3})\b|%)")
 _MICRO = re.compile(r"(\d )us\b")
@@ -38,12 +39,8 @@ class FindingRow(QWidget):
         line.addWidget(self.mark, 0, Qt.AlignmentFlag.AlignTop)
         column = QVBoxLayout()
         column.setSpacing(1)
-        self.title = QLabel()
-        self.title.setProperty("role", "head")
-        self.title.setWordWrap(True)
-        self.reason = QLabel()
-        self.reason.setProperty("role", "small")
-        self.reason.setWordWrap(True)
+        self.title = WrappedText(appearance, strong=True)
+        self.reason = WrappedText(appearance)
         column.addWidget(self.title)
         column.addWidget(self.reason)
         line.addLayout(column, 1)

@@ -27,7 +27,7 @@ from PySide6.QtGui import (
     QResizeEvent,
     QShowEvent,
 )
-from PySide6.QtWidgets import QWidget
+from PySide6.QtWidgets import QPushButton, QWidget
 
 from gainbench_app.theme import SMALL_PX, Theme, sized
 from gainbench_app.widgets.appearance import Appearance
@@ -235,6 +235,11 @@ class Figure(QWidget):
             self._cursor = cursor
         if self._stale:
             self._paint_stale(painter, panels)
+        painter.setFont(self.small_font())
+        painter.setPen(QColor(self.theme.muted))
+        for button in self.findChildren(QPushButton):
+            if button.isVisible():
+                painter.drawText(QRectF(button.geometry()), int(Qt.AlignmentFlag.AlignCenter), button.text())
 
     def _painted_background(self, panels: Sequence[Axes]) -> QPixmap:
         ratio = self.devicePixelRatioF()

@@ -68,7 +68,7 @@ class WordLine(QWidget):
         self._rows: list[list[_Placed]] = []
         self._fonts: dict[tuple[int, bool], _Hand] = {}
         self._line_px = line_px
-        self._least = lines
+        self._least = self._most = lines
         self._tells_moves = tells_moves
         self._moved: frozenset[str] = frozenset()
         self._settling = QTimer(self)
@@ -119,6 +119,8 @@ class WordLine(QWidget):
     def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802
         """Another width breaks lines elsewhere."""
         super().resizeEvent(event)
+        if event.size().width() != event.oldSize().width():
+            self._most = self._least
         self._fit()
 
     def changeEvent(self, event: QEvent) -> None:  # noqa: N802
@@ -129,9 +131,14 @@ class WordLine(QWidget):
             self._fit()
 
     def _fit(self) -> None:
-        """Lay the words out anew, and be as high as they need."""
+        """Lay the words out anew, and be as high as they need.
+
+        What they needed once stays theirs while the width does: everything around would move with each word that
+        comes and goes.
+        """
         self._rows = self._laid_out()
-        height = max(self._least, len(self._rows)) * self._line_px
+        self._most = max(self._most, len(self._rows))
+        height = self._most * self._line_px
         if height != self.height():
             self.setFixedHeight(height)
 
