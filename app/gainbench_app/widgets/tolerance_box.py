@@ -8,7 +8,7 @@ from PySide6.QtWidgets import QWidget
 
 from gainbench_app.widgets.value_box import ValueBox
 
-LEAST_PX, _MOST_PX = 58, 84
+LEAST_PX, _MOST_PX = 46, 84
 _PLUS_MINUS = "\N{PLUS-MINUS SIGN}"
 
 
