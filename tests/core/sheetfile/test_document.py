@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 from gainbench.errors import SheetError
 from gainbench.model import EvidenceLog, Experiment, LogColumn, SignalName
 from gainbench.results import Gains
-from gainbench.sheetfile import add_evidence, add_kept, digest, parse_sheet, remove_evidence, remove_kept
+from gainbench.sheetfile import add_evidence, add_kept, digest, move_kept, parse_sheet, remove_evidence, remove_kept
 
 FIRST = Gains(kp=1.0 / 3.0, ki=1e4 / 7.0)
 SECOND = Gains(kp=0.1, ki=2e2 / 3.0)
@@ -234,3 +234,36 @@ def test_a_log_that_is_not_there(demo, index):
     document = add_evidence(parse_sheet(demo, "x"), FIRST_LOG)
     with pytest.raises(SheetError, match=f"holds no log {index + 1}; it holds 1"):
         remove_evidence(document, index)
+
+
+def names(document):
+    return [one.name for one in document.sheet.kept]
+
+
+def test_a_kept_tuning_is_moved_with_its_spelling_and_comments(demo):
+    text = (
+        demo
+        + '\n[[kept]] # mine\nname = "z"\ncurrent = {kp = 1, ki=2}\nspeed = { kp = "1 A*s/rad", ki = 2 }\n# behind z\n'
+    )
+    document = add_kept(parse_sheet(text, "bench"), "last", current=FIRST, speed=SECOND)
+    assert names(document) == ["first light", "z", "last"]
+    moved = move_kept(document, "z", to=0)
+    assert names(moved) == ["z", "first light", "last"]
+    assert '[[kept]] # mine\nname = "z"\ncurrent = {kp = 1, ki=2}\n' in moved.text()
+    assert "# behind z\n" in moved.text()
+    assert "# the shelf\n" in moved.text()
+    assert {one.name: one for one in moved.sheet.kept} == {one.name: one for one in document.sheet.kept}
+    back = move_kept(moved, "z", to=1)
+    assert back.sheet == document.sheet
+    assert sorted(back.text().split()) == sorted(document.text().split())
+    assert move_kept(document, "last", to=0).text().endswith("\n")
+    assert not move_kept(document, "last", to=0).text().endswith("\n\n")
+
+
+def test_a_move_that_leads_nowhere_is_refused(demo):
+    document = parse_sheet(demo, "bench")
+    with pytest.raises(SheetError, match='no tuning "none"'):
+        move_kept(document, "none", to=0)
+    for to in (-1, 1):
+        with pytest.raises(SheetError, match="no place"):
+            move_kept(document, "first light", to=to)
