@@ -47,7 +47,7 @@ from gainbench_app.widgets.figure import Figure
 from gainbench_app.widgets.value_box import ValueBox
 from gainbench_resources import demo_sheet, demo_sheet_names
 
-_LEFT_PX, _RIGHT_PX = 334, 300
+_LEFT_PX, _RIGHT_PX = 344, 300
 _SHEET_ENDINGS = (".toml",)
 """Of files that can be dropped on the window."""
 

@@ -45,7 +45,7 @@ class EntryRow(QWidget):
     """Path, and the text; None where the entry is taken out."""
 
     def __init__(
-        self, entry: Entry, appearance: Appearance, *, box_width: int = 108, parent: QWidget | None = None
+        self, entry: Entry, appearance: Appearance, *, box_width: int = 118, parent: QWidget | None = None
     ) -> None:
         super().__init__(parent)
         self.entry = entry
