@@ -306,7 +306,5 @@ def constant_disagreements(machine: Machine) -> tuple[ConstantCheck, ...]:
 def _likely_slip(kind: MachineKind, ratio: float) -> str:
     size = abs(math.log(ratio))
     window = math.log1p(SLIP_WINDOW)
-    if size <= window:
-        return ""
     distance, slip = min((abs(size - abs(math.log(factor))), name) for factor, name in _SLIPS[kind])
     return slip if distance <= window else ""

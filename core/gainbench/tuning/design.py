@@ -5,7 +5,7 @@ from __future__ import annotations
 from gainbench.model import DesignMethod, LoopAims, SpeedAims, Stage
 from gainbench.plant import Plant
 from gainbench.results import LoopFigures, Refusal
-from gainbench.sampling import CurrentLoop, SpeedLoop
+from gainbench.sampling import CurrentLoop, Loop, SpeedLoop
 from gainbench.tuning.bandwidth import bandwidth_margin
 from gainbench.tuning.exact import crossover_margin
 from gainbench.tuning.formulas import (
@@ -45,18 +45,8 @@ def design_current(aims: LoopAims, plant: Plant, *, stage: Stage, loop: CurrentL
         If the method's targets are missing, or the method is none of this loop's; a sheet that was read is complete.
     """
     match aims.method:
-        case DesignMethod.CROSSOVER_MARGIN:
-            return crossover_margin(
-                loop,
-                crossover=_target(aims.crossover, "crossover"),
-                margin=_target(aims.phase_margin, "phase_margin"),
-            )
-        case DesignMethod.BANDWIDTH_MARGIN:
-            return bandwidth_margin(
-                loop,
-                bandwidth=_target(aims.bandwidth, "bandwidth"),
-                margin=_target(aims.phase_margin, "phase_margin"),
-            )
+        case DesignMethod.CROSSOVER_MARGIN | DesignMethod.BANDWIDTH_MARGIN:
+            return _on_the_loop(aims, loop)
         case DesignMethod.LAG_CANCELLATION:
             return current_lag_cancellation(plant, crossover=_target(aims.crossover, "crossover"))
         case DesignMethod.MAGNITUDE_OPTIMUM:
@@ -101,22 +91,8 @@ def design_speed(
         As :func:`design_current`.
     """
     match aims.method:
-        case DesignMethod.CROSSOVER_MARGIN:
-            if loop is None:
-                return _waits()
-            return crossover_margin(
-                loop,
-                crossover=_target(aims.crossover, "crossover"),
-                margin=_target(aims.phase_margin, "phase_margin"),
-            )
-        case DesignMethod.BANDWIDTH_MARGIN:
-            if loop is None:
-                return _waits()
-            return bandwidth_margin(
-                loop,
-                bandwidth=_target(aims.bandwidth, "bandwidth"),
-                margin=_target(aims.phase_margin, "phase_margin"),
-            )
+        case DesignMethod.CROSSOVER_MARGIN | DesignMethod.BANDWIDTH_MARGIN:
+            return _waits() if loop is None else _on_the_loop(aims, loop)
         case DesignMethod.LAG_CANCELLATION:
             return speed_lag_cancellation(plant, crossover=_target(aims.crossover, "crossover"))
         case DesignMethod.SYMMETRIC_OPTIMUM:
@@ -139,6 +115,14 @@ def design_speed(
         case DesignMethod.BY_HAND:
             return _by_hand(aims, plant, period=stage.speed_period)
     raise ValueError(f"{aims.method} is not a method of the speed loop")
+
+
+def _on_the_loop(aims: LoopAims, loop: Loop) -> Design:
+    """The two methods that are exact on the sampled loop."""
+    margin = _target(aims.phase_margin, "phase_margin")
+    if aims.method is DesignMethod.CROSSOVER_MARGIN:
+        return crossover_margin(loop, crossover=_target(aims.crossover, "crossover"), margin=margin)
+    return bandwidth_margin(loop, bandwidth=_target(aims.bandwidth, "bandwidth"), margin=margin)
 
 
 def _waits() -> Design:
