@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from gainbench.kernels.loop_grid import half_turns, loop_grid
+from gainbench.kernels.loop_grid import loop_grid
 from gainbench.plant import Plant
 from gainbench.results import Gains, LockedStep, LoopCurve, LoopFigures
 from gainbench.sampling import Hardware, Loop
@@ -52,38 +52,38 @@ def is_stable(loop: Loop, gains: Gains) -> bool:
     """
     if loop.plant.window > LARGEST_WINDOW:
         return _winds_inside(loop, gains)
-    return bool(np.all(_inside(_poles(loop.closed(gains)))))
+    return all(_inside(pole) for pole in _poles(loop.closed(gains)))
 
 
-def _poles(matrix: NDArray[np.float64]) -> NDArray[np.complex128]:
+def _poles(matrix: NDArray[np.float64]) -> list[complex]:
     """Eigenvalues; LAPACK by name, since its general wrapper costs twice the work on matrices of this size."""
     from scipy.linalg.lapack import dgeev
 
     real, imaginary, _, _, trouble = dgeev(matrix, compute_vl=0, compute_vr=0)
     if trouble != 0:
         raise np.linalg.LinAlgError("the eigenvalues of a loop did not converge")
-    return np.asarray(real + 1j * imaginary, dtype=np.complex128)
+    return list(map(complex, real.tolist(), imaginary.tolist()))
 
 
-def _inside(poles: NDArray[np.complex128]) -> NDArray[np.bool_]:
-    """Which poles, less one, are on or within the unit circle."""
-    excess = 2.0 * poles.real + poles.real**2 + poles.imag**2
-    return np.asarray(excess < 2.0 * POLE_TOLERANCE)
+def _inside(pole: complex) -> bool:
+    """Whether a pole, less one, is on or within the unit circle."""
+    return 2.0 * pole.real + pole.real * pole.real + pole.imag * pole.imag < 2.0 * POLE_TOLERANCE
 
 
 def _winds_inside(loop: Loop, gains: Gains) -> bool:
     from gainbench.kernels.winding import growth
 
-    poles = _poles(loop.plant.m)
-    slowest = int(np.argmin(np.abs(poles)))
-    taken_out = poles[slowest].imag == 0.0
-    slow = float(poles[slowest].real) if taken_out else math.nan
-    others = np.delete(poles, slowest) if taken_out else poles
+    others = _poles(loop.plant.m)
+    slowest = min(others, key=abs)
+    taken_out = slowest.imag == 0.0
+    slow = slowest.real if taken_out else math.nan
+    if taken_out:
+        others.remove(slowest)
     nothing = np.empty(0)
     grid = loop_grid(loop.plant.period, loop.plant.window, peaks=nothing, spreads=nothing)
-    turns = growth(loop.plant, gains.kp, gains.ki * loop.plant.period, loop.rule, slow, grid)
+    turns = growth(loop.plant, gains.kp, gains.ki * loop.plant.period, loop.rule, slow, grid.w)
     # Zeros within less poles within, of what is left: poles that were taken out leave a zero more.
-    outside = int(np.sum(~_inside(others))) + int(taken_out) + int(gains.ki != 0.0) - round(turns)
+    outside = sum(not _inside(pole) for pole in others) + int(taken_out) + int(gains.ki != 0.0) - round(turns)
     return outside == 0
 
 
@@ -163,9 +163,7 @@ def read_loop(loop: Loop, gains: Gains, *, stable: bool | None = None) -> LoopRe
     period = loop.plant.period
     peaks, spreads = sharp_modes(loop)
     grid = loop_grid(period, loop.plant.window, peaks=peaks, spreads=spreads)
-    numbers, frequency, response = loop_figures.loop_numbers(
-        loop.plant, gains.kp, gains.ki * period, loop.rule, grid, half_turns(grid, period)
-    )
+    numbers, frequency, response = loop_figures.loop_numbers(loop.plant, gains.kp, gains.ki * period, loop.rule, grid)
     frequency_hz = frequency / math.tau
     frequency_hz.setflags(write=False)
     response.setflags(write=False)
@@ -202,8 +200,7 @@ def sharp_modes(loop: Loop) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
             size = abs(1.0 + pole)
             if turn > 0.0 and size > 0.0 and abs(math.log(size)) < _SHARP * turn:
                 modes.append(complex(math.log(size), turn) / period)
-    found = np.array([[mode.imag, abs(mode.real)] for mode in modes]).reshape(-1, 2)
-    return np.ascontiguousarray(found[:, 0]), np.ascontiguousarray(found[:, 1])
+    return np.array([mode.imag for mode in modes]), np.array([abs(mode.real) for mode in modes])
 
 
 def locked_step(own: Hardware, plant: Plant, *, gains: Gains, rule: int) -> LockedStep:

@@ -15,7 +15,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
-from gainbench.kernels.loop_grid import loop_grid
+from gainbench.kernels.loop_grid import from_on, loop_grid
 from gainbench.margins import is_stable, sharp_modes
 from gainbench.results import Gains
 from gainbench.sampling import Loop
@@ -114,7 +114,7 @@ def reach_map(
     peaks, spreads = sharp_modes(loop)
     grid = loop_grid(period, loop.plant.window, peaks=peaks, spreads=spreads)
     least = float(min(first, far_below, *(0.5 * peaks)))
-    reduced, edge = stability_edge(loop.plant, grid[grid >= _BELOW * least], least)
+    reduced, edge = stability_edge(loop.plant, from_on(grid, _BELOW * least), least)
     crossover = np.geomspace(first, last, columns)
     crossover[-1] = last
     if peaks.size:

@@ -5,8 +5,6 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-import numpy as np
-
 from gainbench.results import LoopCurve
 
 
@@ -36,10 +34,9 @@ def crossings(curve: LoopCurve) -> tuple[Crossing, ...]:
     tuple of Crossing
         Empty where the gain stays on one side of 1.
     """
-    loop = curve.open_loop
-    above = loop.real**2 + loop.imag**2 > 1.0
-    edges = np.flatnonzero(above[1:] != above[:-1])
-    return tuple(_crossing(curve, int(edge)) for edge in edges)
+    from gainbench.kernels.loop_curve import edges_of_one
+
+    return tuple(_crossing(curve, edge) for edge in edges_of_one(curve.open_loop).tolist())
 
 
 def _crossing(curve: LoopCurve, edge: int) -> Crossing:

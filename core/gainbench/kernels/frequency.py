@@ -194,26 +194,13 @@ def pi_at(kp: float, ki_period: float, rule: int, w: float, period: float) -> co
 
 
 @compiled
-def loop_turned(
-    plant: SampledPlant,
-    kp: float,
-    ki_period: float,
-    rule: int,
-    half: float,
-    level: float,
-    work: NDArray[np.complex128],
-) -> complex:
-    """The open loop, ``plant.m`` upper Hessenberg; sine and cosine of w T/2 tell where."""
-    return plant_turned(plant, half, level, work) * (kp + ki_period * integral_turned(half, level, rule))
-
-
-@compiled
 def loop_at(
     plant: SampledPlant, kp: float, ki_period: float, rule: int, w: float, work: NDArray[np.complex128]
 ) -> complex:
     """The open loop at one frequency; ``plant.m`` is upper Hessenberg."""
     turn = 0.5 * w * plant.period
-    return loop_turned(plant, kp, ki_period, rule, math.sin(turn), math.cos(turn), work)
+    half, level = math.sin(turn), math.cos(turn)
+    return plant_turned(plant, half, level, work) * (kp + ki_period * integral_turned(half, level, rule))
 
 
 @compiled

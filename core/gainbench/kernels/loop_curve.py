@@ -8,7 +8,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gainbench.kernels.compiled import compiled
-from gainbench.kernels.frequency import loop_at, loop_turned, workspace
+from gainbench.kernels.frequency import integral_turned, loop_at, workspace
+from gainbench.kernels.frequency_batch import plant_over
+from gainbench.kernels.loop_grid import Grid
 from gainbench.kernels.loop_records import SampledPlant
 
 TURN = 0.3
@@ -43,15 +45,17 @@ def trace_loop(
     kp: float,
     ki_period: float,
     rule: int,
-    w: NDArray[np.float64],
-    turned: NDArray[np.float64],
+    grid: Grid,
 ) -> tuple[NDArray[np.float64], NDArray[np.complex128]]:
     """The open loop on the grid, with points put in where neighbours are far apart.
 
-    ``plant`` as :func:`gainbench.kernels.frequency.hessenberg` leaves it; ``turned`` as
-    :func:`gainbench.kernels.loop_grid.half_turns` gives it for the grid ``w``.
+    ``plant`` as :func:`gainbench.kernels.frequency.hessenberg` leaves it.
     """
     work = workspace(plant)
+    w, turned = grid.w, grid.turned
+    known = plant_over(plant, turned)
+    for k in range(w.size):
+        known[k] *= kp + ki_period * integral_turned(turned[0, k], turned[1, k], rule)
     room = 4 * w.size
     frequency = np.empty(room)
     loop = np.empty(room, dtype=np.complex128)
@@ -60,11 +64,11 @@ def trace_loop(
     waiting_l = np.empty(HALVINGS + 2, dtype=np.complex128)
     depth = np.empty(HALVINGS + 2, dtype=np.int64)
     frequency[0] = w[0]
-    loop[0] = loop_turned(plant, kp, ki_period, rule, turned[0, 0], turned[1, 0], work)
+    loop[0] = known[0]
     count = 1
     for k in range(1, w.size):
         waiting_w[0] = w[k]
-        waiting_l[0] = loop_turned(plant, kp, ki_period, rule, turned[0, k], turned[1, k], work)
+        waiting_l[0] = known[k]
         depth[0] = 0
         top = 0
         while top >= 0:
@@ -83,3 +87,18 @@ def trace_loop(
                 count += 1
                 top -= 1
     return frequency[:count].copy(), loop[:count].copy()
+
+
+@compiled
+def edges_of_one(loop: NDArray[np.complex128]) -> NDArray[np.int64]:
+    """The points after which a curve goes from one side of \\|L\\| = 1 to the other."""
+    out = np.empty(loop.size, dtype=np.int64)
+    count = 0
+    before = False
+    for k in range(loop.size):
+        above = loop[k].real * loop[k].real + loop[k].imag * loop[k].imag > 1.0
+        if k > 0 and above != before:
+            out[count] = k - 1
+            count += 1
+        before = above
+    return out[:count]

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from gainbench.kernels.compiled import compiled
 from gainbench.kernels.frequency import hessenberg, loop_at, workspace
 from gainbench.kernels.loop_curve import trace_loop
+from gainbench.kernels.loop_grid import Grid
 from gainbench.kernels.loop_records import LoopNumbers, SampledPlant
 
 SIZE = 0
@@ -253,13 +254,9 @@ def loop_numbers(
     kp: float,
     ki_period: float,
     rule: int,
-    grid: NDArray[np.float64],
-    turned: NDArray[np.float64],
+    grid: Grid,
 ) -> tuple[LoopNumbers, NDArray[np.float64], NDArray[np.complex128]]:
-    """Figures and curve of a loop over its grid and the points between; figures mean something for a stable one.
-
-    ``turned`` as :func:`gainbench.kernels.loop_grid.half_turns` gives it for the grid.
-    """
+    """Figures and curve of a loop over its grid and the points between; figures mean something for a stable one."""
     reduced = hessenberg(plant)
-    w, loop = trace_loop(reduced, kp, ki_period, rule, grid, turned)
+    w, loop = trace_loop(reduced, kp, ki_period, rule, grid)
     return numbers_of(reduced, kp, ki_period, rule, w, loop), w, loop

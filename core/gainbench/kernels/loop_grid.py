@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -27,12 +28,21 @@ _SHARES = np.concatenate((10.0 ** np.concatenate((_TAIL, _EVEN)), [1.0 - LAST_GA
 _SHARES.setflags(write=False)
 
 
-def half_turns(grid: NDArray[np.float64], period: float) -> NDArray[np.float64]:
-    """Sine and cosine of w T/2 on a grid, by numpy at once: half the cost of a frequency is in them.
+class Grid(NamedTuple):
+    """Frequencies of one loop."""
+
+    w: NDArray[np.float64]
+    """[rad/s], shape (n,)."""
+    turned: NDArray[np.float64]
+    """Sine and cosine of w T/2, half the cost of a frequency, shape (2, n)."""
+
+
+def half_turns(w: NDArray[np.float64], period: float) -> NDArray[np.float64]:
+    """Sine and cosine of w T/2, by numpy at once.
 
     Parameters
     ----------
-    grid : ndarray, shape (n,)
+    w : ndarray, shape (n,)
         Frequencies [rad/s].
     period : float
         Of the loop [s].
@@ -40,17 +50,20 @@ def half_turns(grid: NDArray[np.float64], period: float) -> NDArray[np.float64]:
     Returns
     -------
     ndarray, shape (2, n)
+        Read-only, so that kernels meet one kind of array.
     """
-    turn = grid * (0.5 * period)
-    out = np.empty((2, grid.size))
+    turn = w * (0.5 * period)
+    out = np.empty((2, w.size))
     np.sin(turn, out=out[0])
     np.cos(turn, out=out[1])
+    out.setflags(write=False)
     return out
 
 
-def loop_grid(
-    period: float, window: int, *, peaks: NDArray[np.float64], spreads: NDArray[np.float64]
-) -> NDArray[np.float64]:
+_TURNED = half_turns(_SHARES, math.pi)
+
+
+def loop_grid(period: float, window: int, *, peaks: NDArray[np.float64], spreads: NDArray[np.float64]) -> Grid:
     """Frequencies from far below to the Nyquist frequency, that one included.
 
     Around each peak, folded below the Nyquist frequency, points stand at distances that grow from its half width.
@@ -68,12 +81,12 @@ def loop_grid(
 
     Returns
     -------
-    ndarray, shape (m,)
-        Rising [rad/s].
+    Grid
+        Rising.
     """
     nyquist = math.pi / period
     if peaks.size == 0 and window <= LARGEST_WINDOW:
-        return _SHARES * nyquist
+        return Grid(_SHARES * nyquist, _TURNED)
     found = [_SHARES]
     if window > LARGEST_WINDOW:
         lobes = POINTS_PER_PERIOD * window
@@ -86,4 +99,13 @@ def loop_grid(
         found.append(around[(around > 10.0**-DECADES) & (around < 1.0 - LAST_GAP)])
     shares = np.sort(np.concatenate(found))
     apart = np.concatenate(([True], shares[1:] > shares[:-1] * (1.0 + 1e-9)))
-    return np.asarray(shares[apart] * nyquist)
+    w = np.asarray(shares[apart] * nyquist)
+    return Grid(w, half_turns(w, period))
+
+
+def from_on(grid: Grid, lowest: float) -> Grid:
+    """The part of a grid at and above a frequency [rad/s]."""
+    first = int(np.searchsorted(grid.w, lowest))
+    turned = np.ascontiguousarray(grid.turned[:, first:])
+    turned.setflags(write=False)
+    return Grid(grid.w[first:], turned)

@@ -32,7 +32,7 @@ from gainbench.kernels.response_records import (
     Step,
     Tally,
 )
-from gainbench.kernels.series import build_series, series_energy, sign_kept
+from gainbench.kernels.series import build_series, charge_to_zero, series_energy, sign_kept
 from gainbench.kernels.travel import travel
 
 REFERENCE = 0
@@ -99,13 +99,21 @@ def glide(
     return (SURE if kept < 0 else TURNS), y, -voltage * change(step.charge, flow.elastic, x, u)
 
 
-@compiled
+@inlined
 def turning_energy(
-    motion: Motion, segment: int, flow: Flow, drag: Drag, heading: Heading, x: PlantState, voltage: float
+    motion: Motion, step: Step, flow: Flow, drag: Drag, heading: Heading, x: PlantState, y: PlantState, voltage: float
 ) -> float:
-    """Energy given back over a segment in one mode in which the current changes its sign [J]."""
+    """Energy given back over a step in one mode, from x to y, in which the current changes its sign [J]."""
     u = inputs_of(drag, heading, voltage)
-    build_series(motion.series, flow, resting_bodies(flow, heading), x, u, motion.width[segment])
+    build_series(motion.series, flow, resting_bodies(flow, heading), x, u, step.width)
+    pushed = flow.iv * voltage
+    slope = flow.ii * x.current + flow.iw * x.speed + pushed
+    slope_after = flow.ii * y.current + flow.iw * y.speed + pushed
+    if x.current * y.current < 0.0 and slope * slope_after > 0.0:
+        charge = charge_to_zero(motion.series, y.current)
+        if voltage * x.current > 0.0:
+            charge = change(step.charge, flow.elastic, x, u) - charge
+        return -voltage * charge
     return series_energy(motion.series, voltage, 1.0)
 
 
@@ -223,7 +231,7 @@ def respond(
             if came == SURE and not fresh:
                 x = y
             elif came == TURNS and not fresh and motion.fine == 0:
-                back = turning_energy(motion, int(FIRST), flow, drag, heading, x, voltage)
+                back = turning_energy(motion, steps.first, flow, drag, heading, x, y, voltage)
                 x = y
             else:
                 heading, x, back = travel(motion, flow, drag, int(FIRST), x, voltage)
@@ -237,7 +245,7 @@ def respond(
         if came == SURE and not fresh:
             x = y
         elif came == TURNS and not fresh and motion.fine == 0:
-            back = turning_energy(motion, int(SECOND), flow, drag, heading, x, voltage)
+            back = turning_energy(motion, steps.second, flow, drag, heading, x, y, voltage)
             x = y
         else:
             heading, x, back = travel(motion, flow, drag, int(SECOND), x, voltage)

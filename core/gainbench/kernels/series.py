@@ -11,6 +11,8 @@ from gainbench.kernels.response_records import Flow, Inputs, PlantState
 
 HALVINGS = 52
 """Of a piece, to find an instant in it: to the rounding of the instant itself."""
+NEAR = 1e-8
+"""Share of a piece: a step of Newton's method below it leaves an error of its square."""
 SAME_INSTANT = 1e-15
 """Share of a piece below which the search for a zero ends."""
 
@@ -109,6 +111,36 @@ def zero_between(series: NDArray[np.float64], low: float, high: float) -> float:
             break
         share = closer if low < closer < high else 0.5 * (low + high)
     return share
+
+
+@compiled
+def charge_to_zero(series: NDArray[np.float64], after: float) -> float:
+    """Charge up to the one zero of a current that is monotone over the piece and ends at ``after`` [A s].
+
+    Newton's method from the zero of the parabola through both ends and the first slope. The charge does not change in
+    first order with the instant, so that a step below ``NEAR`` is the last.
+    """
+    before, first = series[0, 0], series[1, 0]
+    bend = after - before - first
+    root = first * first - 4.0 * bend * before
+    share = -2.0 * before / (first + (np.sqrt(root) if first > 0.0 else -np.sqrt(root))) if root > 0.0 else 0.5
+    low, high = 0.0, 1.0
+    for _ in range(HALVINGS):
+        value = slope = 0.0
+        for term in range(series.shape[0] - 1, -1, -1):
+            slope = slope * share + value
+            value = value * share + series[term, 0]
+        if (value > 0.0) == (after > 0.0):
+            high = share
+        else:
+            low = share
+        closer = share - value / slope if slope != 0.0 else -1.0
+        if not low <= closer <= high:
+            closer = 0.5 * (low + high)
+        step, share = closer - share, closer
+        if abs(step) < NEAR:
+            break
+    return value_at(series, int(np.int64(CHARGE)), share)
 
 
 @compiled

@@ -21,8 +21,10 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from gainbench.kernels.compiled import compiled
+from gainbench.kernels.compiled import compiled, inlined
 from gainbench.kernels.frequency import hessenberg, plant_at, workspace
+from gainbench.kernels.frequency_batch import plant_over
+from gainbench.kernels.loop_grid import Grid
 from gainbench.kernels.loop_records import SampledPlant
 
 TURN = 0.35
@@ -51,14 +53,19 @@ def slope(w: float, period: float) -> float:
     return -0.5 / math.tan(0.5 * w * period)
 
 
-@compiled
-def needed(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> complex:
-    """-1/G: the controller that puts a closed-loop pole on the circle at ``w``."""
-    response = plant_at(plant, w, work)
+@inlined
+def against(response: complex) -> complex:
+    """-1/G of the plant's response."""
     size = response.real * response.real + response.imag * response.imag
     if not size > 0.0:
         return complex(math.inf, 0.0)
     return complex(-response.real / size, response.imag / size)
+
+
+@compiled
+def needed(plant: SampledPlant, w: float, work: NDArray[np.complex128]) -> complex:
+    """-1/G: the controller that puts a closed-loop pole on the circle at ``w``."""
+    return against(plant_at(plant, w, work))
 
 
 @compiled
@@ -76,24 +83,26 @@ def apart(first: complex, second: complex) -> bool:
 
 
 @compiled
-def stability_edge(plant: SampledPlant, grid: NDArray[np.float64], lowest: float) -> tuple[SampledPlant, Edge]:
+def stability_edge(plant: SampledPlant, on: Grid, lowest: float) -> tuple[SampledPlant, Edge]:
     """The reduced plant and its edge on a grid, with points put in above ``lowest`` where neighbours are far apart.
 
-    ``grid`` rises and ends with the Nyquist frequency.
+    The grid rises and ends with the Nyquist frequency.
     """
     reduced = hessenberg(plant)
     work = workspace(reduced)
     period = plant.period
+    grid = on.w
+    known = plant_over(reduced, on.turned)
     room = 4 * grid.size
     w = np.empty(room)
     control = np.empty(room, dtype=np.complex128)
     waiting_w = np.empty(HALVINGS + 2)
     waiting = np.empty(HALVINGS + 2, dtype=np.complex128)
     depth = np.empty(HALVINGS + 2, dtype=np.int64)
-    w[0], control[0] = grid[0], needed(reduced, grid[0], work)
+    w[0], control[0] = grid[0], against(known[0])
     count = 1
     for k in range(1, grid.size - 1):
-        waiting_w[0], waiting[0], depth[0] = grid[k], needed(reduced, grid[k], work), 0
+        waiting_w[0], waiting[0], depth[0] = grid[k], against(known[k]), 0
         top = 0
         while top >= 0:
             spare = room - count - (grid.size - k) - top
@@ -112,4 +121,4 @@ def stability_edge(plant: SampledPlant, grid: NDArray[np.float64], lowest: float
     for k in range(count):
         x[k] = control[k].real
         y[k] = control[k].imag / slope(w[k], period)
-    return reduced, Edge(w[:count].copy(), x, y, needed(reduced, grid[grid.size - 1], work).real)
+    return reduced, Edge(w[:count].copy(), x, y, against(known[grid.size - 1]).real)

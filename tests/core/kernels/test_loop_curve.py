@@ -7,8 +7,8 @@ import math
 import numpy as np
 
 from gainbench.kernels.frequency import hessenberg
-from gainbench.kernels.loop_curve import far, trace_loop
-from gainbench.kernels.loop_grid import half_turns, loop_grid
+from gainbench.kernels.loop_curve import edges_of_one, far, trace_loop
+from gainbench.kernels.loop_grid import loop_grid
 from gainbench.kernels.loop_records import SampledPlant
 from quantities import assert_quantity
 
@@ -34,10 +34,18 @@ def test_a_sharp_resonance_is_followed_through_its_turn():
         0.5, 0.0, 0.0, PERIOD, 0, 1, 1.0, 1.0,
     )  # fmt: skip
     grid = loop_grid(PERIOD, 1, peaks=np.array([turn / PERIOD]), spreads=np.array([decay / PERIOD]))
-    w, loop = trace_loop(hessenberg(plant), 1.0, 0.0, 0, grid, half_turns(grid, PERIOD))
-    assert w.size > grid.size
+    w, loop = trace_loop(hessenberg(plant), 1.0, 0.0, 0, grid)
+    assert w.size > grid.w.size
     assert np.all(np.diff(w) > 0.0)
     close = np.abs(w - turn / PERIOD) < 3.0 * decay / PERIOD
     assert close.sum() >= 10
     # At resonance the pair adds 1e-3 / (2 decay) = 2.5.
     assert_quantity(np.abs(loop[close] - 0.5).max(), 2.5, rtol=0.05, unit="1", why="points stand beside the summit")
+
+
+def test_edges_are_where_the_gain_goes_through_one():
+    loop = np.array([2.0, 1.5j, 0.5, -0.2, -3.0, 1.0, 0.1], dtype=complex)
+    loop.setflags(write=False)
+    assert edges_of_one(loop).tolist() == [1, 3, 4]
+    assert edges_of_one(loop[:2]).size == 0
+    assert edges_of_one(loop[:0]).size == 0

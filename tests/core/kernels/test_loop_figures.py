@@ -19,7 +19,7 @@ from gainbench.kernels.loop_figures import (
     root,
     summit,
 )
-from gainbench.kernels.loop_grid import half_turns, loop_grid
+from gainbench.kernels.loop_grid import Grid, half_turns, loop_grid
 from gainbench.kernels.loop_records import SampledPlant
 from quantities import assert_quantity
 
@@ -28,7 +28,7 @@ ROUNDING = "roots refined to rounding"
 
 
 def figures_of(plant, kp, ki_period, grid):
-    return loop_figures.loop_numbers(plant, kp, ki_period, 0, grid, half_turns(grid, plant.period))
+    return loop_figures.loop_numbers(plant, kp, ki_period, 0, Grid(grid.w, half_turns(grid.w, plant.period)))
 
 
 def integrator(gain_period: float, *, period: float = 1.0, shift: int = 1) -> SampledPlant:
@@ -116,7 +116,7 @@ def test_gain_reduction_of_a_conditionally_stable_loop():
     a = 20.0
     plant = SampledPlant(m, np.array([1.0, 2.0 * a, a * a]), b, nothing, nothing, 0.0, 0.0, 0.0, period, 0, 1, 1.0, 1.0)
     gain = 1e-3
-    numbers, _, _ = figures_of(plant, gain, 0.0, GRID / period)
+    numbers, _, _ = figures_of(plant, gain, 0.0, loop_grid(period, 1, peaks=np.empty(0), spreads=np.empty(0)))
     w = np.geomspace(1e-3, math.pi / period, 2_000_001)
     d = np.exp(1j * w * period) - 1.0
     loop = gain * (1.0 + a * d) ** 2 / d**3

@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 
 from drives import CURRENT_GAINS, DUTY, ENCODER, FIRMWARE, RIGID, SINE, SPEED_GAINS, matrix_of
+from gainbench.kernels.bodies import inputs_of
 from gainbench.kernels.motion import prepare_motion, read_flow, read_step
 from gainbench.kernels.response import (
     CURRENT,
@@ -21,6 +22,7 @@ from gainbench.kernels.response import (
     voltage_room,
 )
 from gainbench.kernels.response_records import Drag, Heading, PlantState, Script
+from gainbench.kernels.series import build_series, series_energy
 from gainbench.simulate import schedule
 from gainbench.simulate.preparation import prepare_run
 
@@ -95,10 +97,22 @@ def test_a_gliding_step_says_whether_something_happened():
 
 def test_energy_of_a_step_in_which_the_current_turns():
     turning = PlantState(0.2, 100.0, 0.0, 0.0, 0.0, 0.0)
-    motion, flow, _ = glided(turning, -8.0)
-    got = turning_energy(motion, 1, flow, FREE, Heading(1, 1), turning, -8.0)
+    motion, flow, (_, y, _) = glided(turning, -8.0)
+    step = read_step(motion, 1, 0, 0)
+    got = turning_energy(motion, step, flow, FREE, Heading(1, 1), turning, y, -8.0)
     # The current falls by (8 + 5.2 + 0.1)/0.45 mH = 29.6 A/ms: a triangle of 6.8 us.
     assert got == pytest.approx(8.0 * 0.2 * 0.2 / (2.0 * 29.6e3), rel=1e-2)
+
+
+@pytest.mark.parametrize("first", [-3.0, -0.2, 0.1, 1.2, 3.0])
+@pytest.mark.parametrize("voltage", [-30.0, -8.0, 3.0, 30.0])
+def test_energy_is_that_of_the_search_through_the_whole_step(first, voltage):
+    x = PlantState(first, 100.0, 0.0, 0.0, 0.0, 0.0)
+    motion, flow, (came, y, _) = glided(x, voltage)
+    if came == TURNS:
+        got = turning_energy(motion, read_step(motion, 1, 0, 0), flow, FREE, Heading(1, 1), x, y, voltage)
+        build_series(motion.series, flow, 0, x, inputs_of(FREE, Heading(1, 1), voltage), 50e-6)
+        assert got == pytest.approx(series_energy(motion.series, voltage, 1.0), rel=1e-12, abs=1e-18)
 
 
 def test_a_run_fills_every_tick_and_adds_up():

@@ -90,12 +90,12 @@ def test_points_are_put_in_where_the_plant_turns_and_only_above_the_lowest():
     )
     grid = loop_grid(PERIOD, 1, peaks=NOTHING, spreads=NOTHING)
     edge = stability_edge(plant, grid, 1.0)[1]
-    assert edge.w.size > grid.size + 10
+    assert edge.w.size > grid.w.size + 10
     assert np.all(np.diff(edge.w) > 0.0)
     control = edge.x + 1j * edge.y * np.array([slope(w, PERIOD) for w in edge.w])
     assert not any(apart(first, second) for first, second in itertools.pairwise(control))
     left = stability_edge(plant, grid, 2.0 * turn / PERIOD)[1]
-    assert np.array_equal(left.w, grid[:-1])
+    assert np.array_equal(left.w, grid.w[:-1])
 
 
 def test_what_is_apart():

@@ -38,7 +38,7 @@ def plant_of(window, *, feedforward):
 @pytest.mark.parametrize("ki", [0.0, 2.0])
 def test_the_count_of_unstable_poles(window, feedforward, ki):
     plant = plant_of(window, feedforward=feedforward)
-    grid = loop_grid(plant.period, window, peaks=NOTHING, spreads=NOTHING)
+    grid = loop_grid(plant.period, window, peaks=NOTHING, spreads=NOTHING).w
     own = np.linalg.eigvals(plant.m)
     slow = own[np.argmin(np.abs(own))]
     assert slow.imag == 0.0
