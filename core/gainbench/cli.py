@@ -346,9 +346,13 @@ def run(arguments: Sequence[str]) -> int:
 
 def _say_if_slow(arguments: Sequence[str]) -> None:
     """Tell someone who waits at a terminal what for, once per installation."""
-    from gainbench.assess import is_compiled
-
-    if sys.stderr.isatty() and not {"-h", "--help", "--version"} & set(arguments) and not is_compiled():
+    if not sys.stderr.isatty() or {"-h", "--help", "--version"} & set(arguments):
+        return
+    if arguments[:1] == ["identify"]:
+        from gainbench.evidence.identify import is_compiled
+    else:
+        from gainbench.assess import is_compiled
+    if not is_compiled():
         sys.stderr.write("gainbench: compiling for this machine, once: about a minute\n")
 
 

@@ -66,15 +66,23 @@ def some_benches(count: int, rng: np.random.Generator) -> Benches:
     )
 
 
-def stepped_voltage(count: int, rows: int, rate: float, *, rng: np.random.Generator, share: float = 0.8) -> Array:
-    """Voltages that step at random to random levels, each held for 40 to 250 ms, shape (count, rows)."""
+def stepped_voltage(
+    count: int,
+    rows: int,
+    rate: float,
+    *,
+    rng: np.random.Generator,
+    share: float = 0.8,
+    held: tuple[float, float] = (0.04, 0.25),
+) -> Array:
+    """Voltages that step at random to random levels, each held for a while [s], shape (count, rows)."""
     found = np.empty((count, rows))
     for one in range(count):
         at = 0
         while at < rows:
-            held = int(rng.uniform(0.04, 0.25) * rate)
-            found[one, at : at + held] = share * SUPPLY * rng.uniform(-1.0, 1.0)
-            at += held
+            length = int(rng.uniform(*held) * rate)
+            found[one, at : at + length] = share * SUPPLY * rng.uniform(-1.0, 1.0)
+            at += length
     return found
 
 

@@ -14,9 +14,12 @@ from gainbench.model import Rig, Sheet
 from gainbench.plant import back_emf_candidates, refer, winding_size
 from gainbench.units import Dimension, format_quantity
 
-_DIGITS = 5
+_SHARP = 0.005
+"""Tolerance below which a value is written with one digit more."""
 _SMALL, _LARGE = 1e-3, 1e5
 """Numbers beyond which the unit that the user has no longer suits."""
+_ACCEPTED = "accepted: "
+"""In a log's note, before what came from it."""
 _WIDEST = 0.99
 """Share above which a tolerance would reach zero."""
 _UNIT = re.compile(r"^\s*[-+]?[\d.,]+(?:[eE][-+]?\d+)?\s*(?P<unit>.*?)\s*$")
@@ -97,11 +100,13 @@ def accept(sheet: Sheet, found: Identification, *, typed: Typed) -> Acceptance:
         values[entry.path] = _spelled(entry, typed(entry.path))
         if 0.0 < entry.share <= _WIDEST:
             values[f'tolerance."{entry.path}"'] = f"{100.0 * entry.share:.2g} %"
-    words = "accepted: " + ", ".join(name.words for name in used)
     for index, log in enumerate(sheet.evidence):
         if used:
-            earlier = log.note.partition("accepted: ")[0].rstrip("; ")
-            values[f"evidence[{index}].note"] = f"{earlier}; {words}" if earlier else words
+            head, _, before = log.note.partition(_ACCEPTED)
+            taken = dict.fromkeys([*(one for one in before.split(", ") if one), *(name.words for name in used)])
+            words = _ACCEPTED + ", ".join(taken)
+            head = head.rstrip("; ")
+            values[f"evidence[{index}].note"] = f"{head}; {words}" if head else words
     return Acceptance(values=values, left_out=tuple(name for name in estimates if name not in used))
 
 
@@ -184,10 +189,11 @@ def _both_sides(key: str, value: float, share: float, sides: tuple[float, float,
 def _spelled(entry: _Entry, before: str | None) -> str:
     """A value in the unit that the user has it in."""
     dimension = _DIMENSIONS[entry.path]
+    digits = 4 if entry.share >= _SHARP else 5
     match = _UNIT.match(before or "")
     if match is not None and match["unit"]:
         with contextlib.suppress(UnitError):
-            text = format_quantity(entry.value, match["unit"], dimension, digits=_DIGITS)
+            text = format_quantity(entry.value, match["unit"], dimension, digits=digits)
             if entry.value == 0.0 or _SMALL <= abs(float(text.partition(" ")[0])) < _LARGE:
                 return text
-    return format_quantity(entry.value, dimension.unit, dimension, digits=_DIGITS)
+    return format_quantity(entry.value, dimension.unit, dimension, digits=digits)

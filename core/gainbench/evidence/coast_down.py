@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import itertools
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -56,6 +57,43 @@ def coast_down(record: Record) -> Outcome:
             f"{record.name}: a coast-down takes a column of speed or angle, and this log has none; map one to it in"
             " [evidence.columns]"
         )
+    fall = falling(record)
+    return _fitted(fall.signal, fall.speed, fall.bounds, fall.work.step, fall.is_angle)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Fall:
+    """What of a record coasts, each piece turned so that it falls from a positive speed."""
+
+    work: Record
+    """The record, thinned where it is long."""
+    is_angle: bool
+    signal: Array
+    """Angle [rad] or speed [rad/s] as recorded, shape (n,)."""
+    speed: Array
+    """Smoothed [rad/s], shape (n,)."""
+    bounds: NDArray[np.int64]
+    """First sample of each piece, and n at the end."""
+
+
+def falling(record: Record) -> Fall:
+    """Find what coasts in a record: each piece from its highest speed on, without the very last of it.
+
+    Parameters
+    ----------
+    record : Record
+        With an angle [rad] or a speed [rad/s].
+
+    Returns
+    -------
+    Fall
+        SI.
+
+    Raises
+    ------
+    LogError
+        If nothing falls.
+    """
     is_angle = not record.has(SignalName.SPEED)
     name = SignalName.ANGLE if is_angle else SignalName.SPEED
     work = thin(record, -(-record.size // MOST_ROWS))
@@ -77,7 +115,13 @@ def coast_down(record: Record) -> Outcome:
             " more, with the terminals open"
         )
     bounds = np.concatenate(([0], np.cumsum([piece.size for piece in pieces]))).astype(np.int64)
-    return _fitted(np.concatenate(pieces), np.concatenate(smooth), bounds, step, is_angle)
+    return Fall(
+        work=work,
+        is_angle=is_angle,
+        signal=np.concatenate(pieces),
+        speed=np.concatenate(smooth),
+        bounds=bounds,
+    )
 
 
 def _fall(speed: Array, highest: float) -> tuple[int, int, float]:

@@ -19,7 +19,7 @@ _BYTES_A_VALUE = 32
 """What one number takes while a log is read: in the table, as an array, and in what is done to it."""
 _SHARE_OF_MEMORY = 0.6
 _MOST_NAMED = 12
-_BY_PLACE = re.compile(r"column ([1-9]\d{0,5})")
+BY_PLACE = re.compile(r"column ([1-9]\d{0,5})")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -84,7 +84,7 @@ def find_column(columns: Sequence[FileColumn], wanted: str, *, name: str) -> int
         if found:
             places = " and ".join(f'"column {index + 1}"' for index in found[:_MOST_NAMED])
             raise LogError(f'{name}: more than one column is called "{text}": name it by its place, {places}')
-    place = _BY_PLACE.fullmatch(text)
+    place = BY_PLACE.fullmatch(text)
     if place is not None and int(place[1]) <= len(columns):
         return int(place[1]) - 1
     names = [column.name for column in columns if column.numeric]

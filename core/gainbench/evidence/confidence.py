@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import itertools
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,6 +22,7 @@ _SHORTEST_BLOCK = 4
 _HIGHEST = 0.35
 """Cycles a sample above which softened signals hold next to nothing."""
 _TURNS = 6
+_FEWEST_LINES = 8
 _BAND = 24
 """Lines of the spectrum that are averaged, at least."""
 
@@ -141,22 +143,11 @@ def disturbance_spectrum(disturbance: Array, keep: float, *, at: Array) -> Array
     -------
     ndarray, shape (m,)
     """
-    from scipy.signal.windows import hann
-
-    n = disturbance.size
-    taper = hann(n, sym=False)
-    power = np.abs(np.fft.rfft(disturbance * taper)) ** 2 / np.sum(taper**2)
-    frequency = np.asarray(np.fft.rfftfreq(n), dtype=np.float64)
-    below = (frequency > 1.5 / n) & (frequency < (_HIGHEST if keep > 0.0 else 0.5))
-    frequency, power = frequency[below], power[below]
-    if power.size < 8 or not power.max() > 0.0:
+    frequency, power = _lines(disturbance, keep)
+    if power.size < _FEWEST_LINES or not power.max() > 0.0:
         return np.full(at.shape, float(np.mean(disturbance**2)))
-    shapes = _shapes(frequency, keep)
-    found = np.maximum(not_negative(shapes, power), 1e-9 * power.mean())
-    for _ in range(_TURNS):
-        weight = 1.0 / np.maximum(shapes @ found, 1e-15 * power.max())
-        found = not_negative(shapes * weight[:, None], power * weight)
-    ratio = power / np.maximum(shapes @ found, 1e-15 * power.max())
+    found = _parts(frequency, power, keep)
+    ratio = power / np.maximum(_shapes(frequency, keep) @ found, 1e-15 * power.max())
     edges = [0]
     while edges[-1] < ratio.size:
         edges.append(min(ratio.size, edges[-1] + max(_BAND, edges[-1] // 2)))
@@ -165,6 +156,68 @@ def disturbance_spectrum(disturbance: Array, keep: float, *, at: Array) -> Array
     means = np.add.reduceat(ratio, edges[:-1]) / np.diff(edges)
     middles = np.array([frequency[first:last].mean() for first, last in itertools.pairwise(edges)])
     return np.asarray((_shapes(at, keep) @ found) * np.interp(at, middles, means))
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Parts:
+    """What a disturbance is made of."""
+
+    variances: Array
+    """Of what entered with the drive, as noise on a measured state and as noise on a measured angle, in the square of
+    the disturbance's unit, shape (3,)."""
+    spare: float
+    """Degrees of freedom behind the first of them: it is told from the few lines that it stands out in."""
+
+
+def disturbance_parts(disturbance: Array, keep: float) -> Parts:
+    """How much of a disturbance entered with the drive, as noise on a measured state, as noise on a measured angle.
+
+    Parameters
+    ----------
+    disturbance : ndarray, shape (n,)
+        In any unit.
+    keep : float
+        Share of the model's state that is left after one sample, a pure number.
+
+    Returns
+    -------
+    Parts
+        All zero where there is nothing to tell them from.
+    """
+    frequency, power = _lines(disturbance, keep)
+    if power.size < _FEWEST_LINES or not power.max() > 0.0:
+        return Parts(variances=np.zeros(3), spare=0.0)
+    found = _parts(frequency, power, keep)
+    # Whittle's information on the logarithms; a line has two degrees of freedom.
+    shares = _shapes(frequency, keep) * found
+    shares /= np.maximum(shares.sum(axis=1, keepdims=True), 1e-300)
+    known = shares[:, found > 0.0]
+    if found[0] <= 0.0:
+        return Parts(variances=found, spare=0.0)
+    variance = float(np.linalg.inv(known.T @ known + 1e-9 * np.eye(known.shape[1]))[0, 0])
+    return Parts(variances=found, spare=2.0 / variance)
+
+
+def _lines(disturbance: Array, keep: float) -> tuple[Array, Array]:
+    """Frequencies in cycles a sample, and the tapered lines of the whole record there."""
+    from scipy.signal.windows import hann
+
+    n = disturbance.size
+    taper = hann(n, sym=False)
+    power = np.abs(np.fft.rfft(disturbance * taper)) ** 2 / np.sum(taper**2)
+    frequency = np.asarray(np.fft.rfftfreq(n), dtype=np.float64)
+    below = (frequency > 1.5 / n) & (frequency < (_HIGHEST if keep > 0.0 else 0.5))
+    return frequency[below], np.asarray(power[below], dtype=np.float64)
+
+
+def _parts(frequency: Array, power: Array, keep: float) -> Array:
+    """Whittle's fit of the three shapes to the lines."""
+    shapes = _shapes(frequency, keep)
+    found = np.maximum(not_negative(shapes, power), 1e-9 * power.mean())
+    for _ in range(_TURNS):
+        weight = 1.0 / np.maximum(shapes @ found, 1e-15 * power.max())
+        found = not_negative(shapes * weight[:, None], power * weight)
+    return np.asarray(found)
 
 
 def not_negative(columns: Array, target: Array) -> Array:

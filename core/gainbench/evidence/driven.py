@@ -2,24 +2,28 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
+
 import numpy as np
 from numpy.typing import NDArray
 
 from gainbench.errors import LogError
-from gainbench.evidence.estimate import EstimateName, Ratio, Told
+from gainbench.evidence.estimate import Estimate, EstimateName, Ratio, Told
 from gainbench.evidence.friction_curve import friction_curve, with_sign_of
 from gainbench.evidence.outcome import Outcome
 from gainbench.evidence.prepared import Record
 from gainbench.evidence.regression import regress
 from gainbench.evidence.shaft_fit import fit_shaft
 from gainbench.evidence.smoothing import speed_of
-from gainbench.evidence.telling import tell
+from gainbench.evidence.telling import tell, without
 from gainbench.evidence.winding_fit import fit_winding
 from gainbench.model import SignalName
 from gainbench.plant import Plant
 
 Array = NDArray[np.float64]
 
+_WIDEST = 0.5
+"""Share of a value that its doubt may be for it to be told."""
 _GUESSED = 0.2
 """Share to which a correction that rests on the sheet's values is trusted."""
 
@@ -36,7 +40,7 @@ def has_motion(record: Record) -> bool:
     return record.has(SignalName.SPEED) or record.has(SignalName.ANGLE)
 
 
-def driven(record: Record, plant: Plant) -> Outcome:
+def driven(record: Record, plant: Plant, *, earlier: Mapping[EstimateName, Estimate] | None = None) -> Outcome:
     """Identify from a driven run.
 
     With torque, or with current and the torque constant: inertia, friction evenly and by direction, offset. With
@@ -49,6 +53,8 @@ def driven(record: Record, plant: Plant) -> Outcome:
         With an angle [rad] or a speed [rad/s], and voltage [V], current [A] or torque [N m].
     plant : Plant
         As the sheet has it: for what the log cannot tell, and to begin from.
+    earlier : mapping, optional
+        What other logs tell, SI: before the sheet for what this one cannot tell.
 
     Returns
     -------
@@ -83,11 +89,18 @@ def driven(record: Record, plant: Plant) -> Outcome:
             return unsigned_current(record, unsigned)
     per = None if drives[0] is SignalName.TORQUE else EstimateName.TORQUE_CONSTANT
     shaft = fit_shaft(record, record.signals[drives[0]], per=per)
+    offset = 0.0
+    if shaft.against and not record.has(SignalName.CURRENT, SignalName.VOLTAGE):
+        refuse_signs(record.name, drives[0].value, "motion")
     if record.has(SignalName.CURRENT, SignalName.VOLTAGE):
         start = np.array([plant.resistance, plant.inductance])
         late = shaft.late / record.step if drives[0] is SignalName.CURRENT else 0.0
-        winding = fit_winding(record, turning=True, start=start, late=late)
+        share = plant.inductance * plant.torque * plant.back_emf / (plant.resistance**2 * plant.inertia)
+        winding = fit_winding(record, turning=True, start=start, late=late, share=share, earlier=earlier)
+        if shaft.against or winding.against:
+            refuse_signs(record.name, *_wrong(winding.against, against=shaft.against))
         electrical = winding.values
+        offset = winding.offset / float(winding.values[0])
         fitted.append(winding.fitted)
         linear.append(winding.linear)
         remarks += winding.remarks
@@ -95,15 +108,87 @@ def driven(record: Record, plant: Plant) -> Outcome:
         constant = _torque_constant(record)
         fitted.append(constant)
         linear.append(constant)
-    mechanical = shaft.fitted
+    mechanical, by_regression = shaft.fitted, shaft.linear
+    if per is not None and offset:
+        mechanical, said = _without_offset(mechanical, offset)
+        by_regression, _ = _without_offset(by_regression, offset)
+        remarks += said
     if per is not None:
         mechanical = tuple(_between_samples(told, electrical, plant, step=record.step) for told in mechanical)
     return Outcome(
         fitted=(*fitted, *mechanical),
-        linear=(*linear, *shaft.linear),
+        linear=(*linear, *by_regression),
         fit_percent=shaft.fit_percent,
         remarks=(*remarks, *shaft.remarks),
     )
+
+
+def _without_offset(told: Sequence[Told], offset: float) -> tuple[tuple[Told, ...], list[str]]:
+    """The same without what an offset of the current [A] would be most of: constant torques in either direction."""
+    constant = {
+        EstimateName.TORQUE_OFFSET,
+        EstimateName.COULOMB_FRICTION_FORWARD,
+        EstimateName.COULOMB_FRICTION_BACKWARD,
+    }
+    found, lost = [], []
+    for one in told:
+        covariance = one.covariance.copy()
+        keep = []
+        for index, ratio in enumerate(one.ratios):
+            if ratio.of in constant:
+                covariance[index, index] += offset**2
+                if 2.0 * abs(offset) > _WIDEST * abs(float(one.values[index])):
+                    lost.append(ratio.of.words)
+                    continue
+            keep.append(index)
+        found.append(
+            Told(
+                ratios=tuple(one.ratios[index] for index in keep),
+                values=one.values[keep],
+                covariance=covariance[np.ix_(keep, keep)],
+                spare=one.spare,
+            )
+        )
+    remarks = [
+        f"an offset of the current by {abs(offset):.3g} A would be most of it: {one} is not told" for one in lost
+    ]
+    return tuple(found), remarks
+
+
+def refuse_signs(name: str, *signals: str) -> None:
+    """Say which column has the wrong sign.
+
+    Parameters
+    ----------
+    name : str
+        The file's name.
+    *signals : str
+        One signal, or those of which one has it.
+
+    Raises
+    ------
+    LogError
+        Always.
+    """
+    one = len(signals) == 1
+    which = f"the {signals[0]} has" if one else f"the {' or the '.join(signals)} has"
+    raise LogError(
+        f"{name}: {which} the wrong sign: resistance, constant or inertia come out negative with it; positive current"
+        " has to accelerate towards positive speed, and positive voltage to drive positive current. Give"
+        f" {'its' if one else 'one'} column scale = -1 in [evidence.columns]"
+    )
+
+
+def _wrong(negative: tuple[EstimateName, ...], *, against: bool) -> tuple[str, ...]:
+    """Which signal turns the signs of just these: of v = R i + Ke w, and of the acceleration over the current."""
+    resistance, constant = (one in negative for one in (EstimateName.RESISTANCE, EstimateName.BACK_EMF_CONSTANT))
+    if resistance and constant and not against:
+        return ("voltage",)
+    if constant and against and not resistance:
+        return ("speed or angle",)
+    if resistance and against and not constant:
+        return ("current",)
+    return ("voltage", "current", "motion")
 
 
 def _between_samples(told: Told, electrical: Array, plant: Plant, *, step: float) -> Told:
@@ -164,22 +249,12 @@ def _by_voltage(record: Record, plant: Plant) -> Outcome:
     )
     # The current lags behind the voltage that is left: to first order the inertia looks smaller by Kt Ke L/R^2.
     hidden = gain * plant.back_emf * plant.inductance / plant.resistance
-    kept = [_heavier(_leave_out(told, viscous), hidden) for told in shaft.fitted]
-    begun = [_heavier(_leave_out(told, viscous), hidden) for told in shaft.linear]
+    kept = [_heavier(without(told, viscous), hidden) for told in shaft.fitted]
+    begun = [_heavier(without(told, viscous), hidden) for told in shaft.linear]
     # The winding's own lag looks like a dead time.
     own = abs(shaft.late - plant.inductance / plant.resistance) < 1.5 * record.step
     remarks = [one for one in shaft.remarks if "viscous" not in one and not (own and one.startswith("dead time"))]
     return Outcome(fitted=tuple(kept), linear=tuple(begun), fit_percent=shaft.fit_percent, remarks=(remark, *remarks))
-
-
-def _leave_out(told: Told, names: set[EstimateName]) -> Told:
-    kept = [index for index, ratio in enumerate(told.ratios) if ratio.of not in names]
-    return Told(
-        ratios=tuple(told.ratios[index] for index in kept),
-        values=told.values[kept],
-        covariance=told.covariance[np.ix_(kept, kept)],
-        spare=told.spare,
-    )
 
 
 def _heavier(told: Told, hidden: float) -> Told:

@@ -25,10 +25,15 @@ COHERENT = 0.95
 """Coherence from which on a measured response is held against the predicted one."""
 _LINES = 12
 """Neighbouring lines of a band, at least."""
-_SHARE = 0.1
+_SHARE = 0.14
 """Of its frequency that a band spans, where that is more."""
 _ROUGH = 0.3
 """Share of a source's power over a band that no straight line explains, from which on it is rough."""
+_DEAR = 3.0
+"""Times by which the record's ends may raise the variance of a response where they are told from it; above that, as at
+the end of a chirp, they are left in."""
+_MUCH_BETTER = 2.0
+"""Times by which they must lower what is left of the answer to be told in spite of that."""
 _LEAST = 5e-3
 """Share of the strongest band below which a band was not excited."""
 _PER_RATE = 1e-3
@@ -42,6 +47,25 @@ class Path(StrEnum):
     SPEED_PLANT = "current reference to speed"
     CURRENT_LOOP = "current reference to current"
     CURRENT_PLANT = "voltage to current"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class MeasuredResponse:
+    """A frequency response as a log tells it."""
+
+    name: str
+    """Of the log."""
+    path: Path
+    frequency_hz: Array
+    """Where the input was excited, rising [Hz], shape (n,)."""
+    measured: Complex
+    """In the output's unit over the input's, shape (n,)."""
+    coherence: Array
+    """0 to 1, shape (n,)."""
+    rate: float
+    """Of the rows that were taken [Hz]."""
+    loop_rate: float
+    """Of the ticks of the loop [Hz]."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -90,8 +114,29 @@ def check_frequency_response(sheet: Sheet, log: Log) -> FrequencyCheck:
     R. Pintelon, J. Schoukens, System Identification: A Frequency Domain Approach, 2nd ed., 2012, chapter 7, for the
     local polynomial method (from memory).
     """
-    record = prepare(log)
-    assessment = assess(sheet, simulated=False)
+    return check_measured_response(sheet, measured_response(sheet, prepare(log)))
+
+
+def measured_response(sheet: Sheet, record: Record) -> MeasuredResponse:
+    """Estimate a frequency response from a log, without a prediction: see :func:`check_frequency_response`.
+
+    Parameters
+    ----------
+    sheet : Sheet
+        Of its stage come the ticks of the loops, and the sensor where the log has an angle.
+    record : Record
+        The log on its even grid.
+
+    Returns
+    -------
+    MeasuredResponse
+        SI.
+
+    Raises
+    ------
+    LogError
+        If the columns make no pair, or nothing was excited.
+    """
     path, excited, given, answer = _signals(record, sheet)
     stage = sheet.rig.stage
     loop_rate = stage.speed_rate if path in (Path.SPEED_LOOP, Path.SPEED_PLANT) else stage.current_rate
@@ -100,8 +145,42 @@ def check_frequency_response(sheet: Sheet, log: Log) -> FrequencyCheck:
         excited[picked], given[picked], answer[picked], rate=rate, below=0.5 * min(rate, loop_rate)
     )
     if frequency.size == 0:
-        raise LogError(f"{log.name}: nothing was excited in it: its input is constant")
-    predicted = _predicted(path, assessment, log.name, frequency=2.0 * np.pi * frequency)
+        raise LogError(f"{record.name}: nothing was excited in it: its input is constant")
+    return MeasuredResponse(
+        name=record.name,
+        path=path,
+        frequency_hz=frequency,
+        measured=measured,
+        coherence=coherence,
+        rate=rate,
+        loop_rate=loop_rate,
+    )
+
+
+def check_measured_response(sheet: Sheet, response: MeasuredResponse) -> FrequencyCheck:
+    """Predict what was measured from the sheet, and hold both against each other.
+
+    Parameters
+    ----------
+    sheet : Sheet
+        Its aims give the gains that the log should have been recorded with.
+    response : MeasuredResponse
+        From :func:`measured_response`.
+
+    Returns
+    -------
+    FrequencyCheck
+        SI.
+
+    Raises
+    ------
+    LogError
+        If the sheet has no stable loop to compare with.
+    """
+    path, rate, loop_rate = response.path, response.rate, response.loop_rate
+    frequency, measured, coherence = response.frequency_hz, response.measured, response.coherence
+    assessment = assess(sheet, simulated=False)
+    predicted = _predicted(path, assessment, response.name, frequency=2.0 * np.pi * frequency)
     sure = coherence > COHERENT
     remarks = [f"{path.value}: {int(sure.sum())} of {frequency.size} frequencies with a coherence above {COHERENT:g}"]
     percent = None
@@ -221,16 +300,30 @@ def _local(source: Complex, answer: Complex, x: Array) -> tuple[complex, float]:
     smooth = np.stack((np.ones_like(source), x.astype(np.complex128)), axis=1)
     rough = source - smooth @ np.linalg.lstsq(smooth, source, rcond=None)[0]
     columns = np.stack((source, x * source, x**2 * source), axis=1)
+    values, rest = _laid_on(columns, answer)
     if np.sum(np.abs(rough) ** 2) > _ROUGH * np.sum(np.abs(source) ** 2):
-        columns = np.hstack((columns, smooth))
+        whole = np.hstack((columns, smooth))
+        with_ends, less = _laid_on(whole, answer)
+        better = np.sum(np.abs(rest) ** 2) > _MUCH_BETTER * np.sum(np.abs(less) ** 2)
+        if better or _doubt(whole) < _DEAR * _doubt(columns):
+            columns, values, rest = whole, with_ends, less
+    own = answer - columns[:, 3:] @ values[3:]
+    free = max(1, x.size - columns.shape[1])
+    noise, power = float(np.sum(np.abs(rest) ** 2)) / free, float(np.mean(np.abs(own) ** 2))
+    return complex(values[0]), float(np.clip(1.0 - noise / power, 0.0, 1.0)) if power > 0.0 else 0.0
+
+
+def _laid_on(columns: Complex, answer: Complex) -> tuple[Complex, Complex]:
+    """Least squares of an answer over columns, and what is left of it."""
     size = np.sqrt(np.mean(np.abs(columns) ** 2, axis=0))
     size[size == 0.0] = 1.0
     values = np.linalg.lstsq(columns / size, answer, rcond=1e-9)[0] / size
-    rest = answer - columns @ values
-    own = answer - columns[:, 3:] @ values[3:]
-    free = max(1, x.size - columns.shape[1])
-    noise, whole = float(np.sum(np.abs(rest) ** 2)) / free, float(np.mean(np.abs(own) ** 2))
-    return complex(values[0]), float(np.clip(1.0 - noise / whole, 0.0, 1.0)) if whole > 0.0 else 0.0
+    return values, answer - columns @ values
+
+
+def _doubt(columns: Complex) -> float:
+    """Variance of the first coefficient for noise of unit variance."""
+    return float(np.linalg.pinv(columns.conj().T @ columns, rcond=1e-15, hermitian=True)[0, 0].real)
 
 
 def _bands(frequency: Array) -> list[tuple[int, int]]:
@@ -238,7 +331,11 @@ def _bands(frequency: Array) -> list[tuple[int, int]]:
     edges: list[tuple[int, int]] = []
     first = 1
     while first + _LINES <= frequency.size:
-        last = min(frequency.size, first + max(_LINES, int(_SHARE * first)))
+        width = max(_LINES, int(_SHARE * first))
+        last = first + width
+        # What is left above the last band is part of it, where it is no band of its own.
+        if last + width > frequency.size:
+            last = frequency.size
         edges.append((first, last))
         first = last
     return edges

@@ -9,8 +9,8 @@ from gainbench.evidence.estimate import EstimateName, Ratio, Told
 from gainbench.evidence.outcome import Outcome
 from gainbench.evidence.prepared import Record, thin
 from gainbench.evidence.regression import regress
-from gainbench.evidence.shaft_fit import MOST_ROWS, ShaftRows, shaft_rows, without
-from gainbench.evidence.telling import tell
+from gainbench.evidence.shaft_fit import MOST_ROWS, ShaftRows, shaft_rows
+from gainbench.evidence.telling import tell, without
 from gainbench.model import SignalName
 
 Array = NDArray[np.float64]
@@ -20,6 +20,8 @@ _QUIET = 4.0
 _SHARE = 0.03
 """Of the largest acceleration up to which it is steady in any case."""
 _FEWEST = 20
+_UNSIGNED_FIT = 60.0
+"""Fit in percent below which a current that was given the sign of the speed is not the one that flowed."""
 _ZERO = 0.02
 
 
@@ -88,12 +90,15 @@ def friction_curve(record: Record, drive: Array, *, per: EstimateName | None, si
         columns.append(rows.acceleration[keep])
     target = rows.drive[keep]
     found = regress(target, np.array(columns))
+    if not signed and found.fit_percent < _UNSIGNED_FIT:
+        words = "the current has no sign, and this run brakes with it: it tells nothing; log the current with its sign"
+        return Outcome(fit_percent=found.fit_percent, remarks=(words,))
     size = float(np.sqrt(np.mean(target**2)))
     speed = float(np.sqrt(np.mean(rows.speed[keep] ** 2)))
     floors = np.array([_ZERO * size / speed, *[_ZERO * size] * (1 + int(both)), *([0.0] if signed else [])])
     ratios = tuple(Ratio(of=one, per=per) for one in names)
     told, untold = tell(ratios, found.values, found.covariance, spare=found.spare, floors=floors)
-    told = without(told, EstimateName.INERTIA)
+    told = without(told, [EstimateName.INERTIA])
     remarks = [one for one in untold if "inertia" not in one]
     fitted: list[Told] = [told]
     if both:

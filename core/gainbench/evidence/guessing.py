@@ -21,6 +21,27 @@ _UNIT_WORDS = {
 }  # fmt: skip
 """Units as loggers spell them, in small letters, and as a sheet does."""
 _UNIT_LIKE = frozenset(["", "-", "1", "%", "ticks", "tick", "counts", "count", "cnt", "inc", "incr", "lsb", "digits"])
+COUNTED = frozenset(["%", "ticks", "tick", "counts", "count", "cnt", "inc", "incr", "lsb", "digits"])
+"""What a column counts that holds no physical unit."""
+_COUNTED_WORDS = frozenset(["duty", "dutycycle", "pwm", "adc", "raw", "lsb", "counts", "ticks", "tastgrad"])
+_OTHER_WORDS = frozenset(
+    [
+        "bus",
+        "vbus",
+        "ubus",
+        "dc",
+        "vdc",
+        "udc",
+        "link",
+        "supply",
+        "battery",
+        "batt",
+        "zwischenkreis",
+        "versorgung",
+        "id",
+    ]
+)
+"""Words of a name that speak of a voltage or a current beside the machine's own."""
 _UNIT_DIMENSIONS = tuple(one for one in Dimension if one not in {Dimension.NUMBER, Dimension.TEMPERATURE})
 _IN_BRACKETS = re.compile(r"^(?P<name>.*?)\s*(?:\[(?P<square>[^\]]*)\]|\((?P<round>[^)]*)\))\s*$")
 _BEHIND_A_MARK = re.compile(r"^(?P<name>[^/]+?)\s*(?:/|,|\s+in\s+)\s*(?P<unit>\S+)$")
@@ -227,6 +248,8 @@ def guess_column(name: str, found: str, *, others: Sequence[str] = ()) -> Column
     signal = next((one for one in map(_by_words, words) if one is not None), None)
     fitting = [one for one, dimension in SIGNAL_DIMENSIONS.items() if unit and _fits(unit, dimension)]
     reference = any(word in _REFERENCE for group in words for word in group)
+    if any(word in _OTHER_WORDS or word in _COUNTED_WORDS for group in words for word in group):
+        return None
     if signal is None and fitting:
         signal = fitting[0]
     if signal is None or (fitting and signal not in fitting):
@@ -238,6 +261,11 @@ def guess_column(name: str, found: str, *, others: Sequence[str] = ()) -> Column
             return None
         signal = _REFERENCES[signal]
     return ColumnGuess(signal=signal, unit=unit)
+
+
+def counted_word(name: str) -> str:
+    """The word of a column's name that says that it holds a duty or counts; empty where none does."""
+    return next((word for word in _words(name) if word in _COUNTED_WORDS), "")
 
 
 def _words(text: str) -> list[str]:

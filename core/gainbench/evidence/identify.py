@@ -8,27 +8,49 @@ from gainbench.errors import LogError
 from gainbench.evidence.coast_down import coast_down
 from gainbench.evidence.combining import Known, combine
 from gainbench.evidence.driven import driven
+from gainbench.evidence.elasticity import elastic_remark
 from gainbench.evidence.estimate import EstimateName, Identification, RunReport
 from gainbench.evidence.frequency_response import check_frequency_response
 from gainbench.evidence.locked_rotor import locked_rotor
 from gainbench.evidence.log import Log
 from gainbench.evidence.no_load import no_load
 from gainbench.evidence.outcome import Outcome
-from gainbench.evidence.prepared import prepare
+from gainbench.evidence.plausible import off_the_sheet
+from gainbench.evidence.prepared import prepare, without_clipped
 from gainbench.evidence.step_check import check_step
+from gainbench.kernels.code_cache import code_cache
 from gainbench.model import EvidenceLog, Experiment, Sheet
 from gainbench.plant import Plant, refer
 
+_KERNELS = ("identify_reduce",)
+"""What every fit takes, and compiles last."""
+_TURNS = (
+    (Experiment.LOCKED_ROTOR,),
+    (Experiment.DRIVEN,),
+    (Experiment.NO_LOAD, Experiment.COAST_DOWN),
+    (Experiment.STEP_CHECK, Experiment.FREQUENCY_RESPONSE),
+)
 _FEWEST = 60
 """Rows of a log below which nothing is told from it."""
+
+
+def is_compiled() -> bool:
+    """Whether the machine code of the kernels is on disk, so that the first identification takes no half minute.
+
+    Returns
+    -------
+    bool
+    """
+    return all(code_cache(name).is_dir() for name in _KERNELS)
 
 
 def identify(sheet: Sheet, logs: Sequence[Log]) -> Identification:
     """Identify from the logs of a sheet.
 
-    Each log is fitted by itself; what they tell is put together by weight. Estimates are SI, in the terms of the
-    equations: q axis and peak amperes for pm-sine, between two terminals for pm-block, inertia and frictions as totals
-    at the motor shaft.
+    Each log is fitted by itself, with what the logs of experiments before it tell in place of what it cannot tell (a
+    locked rotor's resistance for a no-load run's constant); what they tell is put together by weight. Estimates are SI,
+    in the terms of the equations: q axis and peak amperes for pm-sine, between two terminals for pm-block, inertia and
+    frictions as totals at the motor shaft.
 
     Parameters
     ----------
@@ -54,11 +76,54 @@ def identify(sheet: Sheet, logs: Sequence[Log]) -> Identification:
         )
     if len(logs) != len(sheet.evidence):
         raise ValueError(f"{len(logs)} logs for {len(sheet.evidence)} tables of evidence")
+    found: dict[int, Outcome] = {}
+    for turn in fit_turns(sheet.evidence):
+        earlier = list(found.values())
+        found |= {place: told_by(sheet, sheet.evidence[place], logs[place], earlier=earlier) for place in turn}
+    return put_together(sheet, logs, [found[place] for place in range(len(logs))])
+
+
+def fit_turns(evidence: Sequence[EvidenceLog]) -> tuple[tuple[int, ...], ...]:
+    """In which turns to fit the logs of a sheet: those that tell most by themselves first, for the others to use.
+
+    Logs of one turn do not use each other, so that their order in the sheet does not matter.
+
+    Parameters
+    ----------
+    evidence : sequence of EvidenceLog
+        Of the sheet.
+
+    Returns
+    -------
+    tuple of tuples of int
+        Places in ``evidence``, each once.
+    """
+    turns = (tuple(place for place, entry in enumerate(evidence) if entry.experiment in turn) for turn in _TURNS)
+    return tuple(turn for turn in turns if turn)
+
+
+def put_together(sheet: Sheet, logs: Sequence[Log], outcomes: Sequence[Outcome]) -> Identification:
+    """Put together by weight what each log of a sheet tells by itself.
+
+    Parameters
+    ----------
+    sheet : Sheet
+        With its evidence.
+    logs : sequence of Log
+        In the order of ``sheet.evidence``.
+    outcomes : sequence of Outcome
+        Of :func:`told_by`, in the same order.
+
+    Returns
+    -------
+    Identification
+        SI.
+    """
     plant = refer(sheet.rig)
-    outcomes = [_outcome(sheet, plant, entry, log) for entry, log in zip(sheet.evidence, logs, strict=True)]
-    known = Known(torque_constant=plant.torque, inertia=plant.inertia, torque_factor=plant.torque / plant.back_emf)
+    known = _known(plant)
     fitted = combine([told for one in outcomes for told in one.fitted], known)
     linear = combine([told for one in outcomes for told in one.linear], known)
+    off = off_the_sheet(fitted.estimates, sheet, plant)
     return Identification(
         estimates=fitted.estimates,
         regression=linear.estimates,
@@ -67,11 +132,20 @@ def identify(sheet: Sheet, logs: Sequence[Log]) -> Identification:
                 log=entry.log,
                 experiment=entry.experiment,
                 fit_percent=outcome.fit_percent,
-                remarks=(*log.remarks, *outcome.remarks, *_borrowed(outcome, fitted.borrowed, known)),
+                remarks=(
+                    *log.remarks,
+                    *outcome.remarks,
+                    *_borrowed(outcome, fitted.borrowed, known),
+                    *(off if outcome.fitted else ()),
+                ),
             )
             for entry, log, outcome in zip(sheet.evidence, logs, outcomes, strict=True)
         ),
     )
+
+
+def _known(plant: Plant) -> Known:
+    return Known(torque_constant=plant.torque, inertia=plant.inertia, torque_factor=plant.torque / plant.back_emf)
 
 
 def _borrowed(outcome: Outcome, borrowed: tuple[EstimateName, ...], known: Known) -> list[str]:
@@ -85,12 +159,38 @@ def _borrowed(outcome: Outcome, borrowed: tuple[EstimateName, ...], known: Known
     return words
 
 
-def _outcome(sheet: Sheet, plant: Plant, entry: EvidenceLog, log: Log) -> Outcome:
+def told_by(sheet: Sheet, entry: EvidenceLog, log: Log, *, earlier: Sequence[Outcome] = ()) -> Outcome:
+    """What one log tells, by its experiment.
+
+    Parameters
+    ----------
+    sheet : Sheet
+        With values to begin from.
+    entry : EvidenceLog
+        What the log is.
+    log : Log
+        As read.
+    earlier : sequence of Outcome
+        Of logs that were fitted before: where this log cannot tell a resistance or an inductance, what they tell
+        stands in for the sheet's, with its doubt.
+
+    Returns
+    -------
+    Outcome
+        SI.
+
+    Raises
+    ------
+    LogError
+        If the log does not do for its experiment.
+    """
     if entry.experiment is Experiment.STEP_CHECK:
         return check_step(sheet, log).outcome
     if entry.experiment is Experiment.FREQUENCY_RESPONSE:
         return check_frequency_response(sheet, log).outcome
-    record = prepare(log)
+    plant = refer(sheet.rig)
+    before = combine([told for one in earlier for told in one.fitted], _known(plant)).estimates
+    record = without_clipped(prepare(log))
     if record.size < _FEWEST:
         raise LogError(
             f"{log.name}: too short to identify from: it has {record.size} rows in unbroken pieces, it takes at least"
@@ -100,12 +200,17 @@ def _outcome(sheet: Sheet, plant: Plant, entry: EvidenceLog, log: Log) -> Outcom
     if entry.experiment is Experiment.LOCKED_ROTOR:
         found = locked_rotor(record, plant)
     elif entry.experiment is Experiment.NO_LOAD:
-        found = no_load(record, plant)
+        found = no_load(record, plant, earlier=before)
     elif entry.experiment is Experiment.COAST_DOWN:
         found = coast_down(record)
     else:
-        found = driven(record, plant)
+        found = driven(record, plant, earlier=before)
+    turned = entry.experiment is not Experiment.LOCKED_ROTOR
+    elastic = elastic_remark(record, plant) if turned and found.fitted else ""
     repaired = record.remarks[len(log.remarks) :]
     return Outcome(
-        fitted=found.fitted, linear=found.linear, fit_percent=found.fit_percent, remarks=(*repaired, *found.remarks)
+        fitted=found.fitted,
+        linear=found.linear,
+        fit_percent=found.fit_percent,
+        remarks=(*repaired, *found.remarks, *([elastic] if elastic else [])),
     )

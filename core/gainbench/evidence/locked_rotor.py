@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from gainbench.errors import LogError
-from gainbench.evidence.driven import has_motion, smoothed_speed
+from gainbench.evidence.driven import has_motion, refuse_signs, smoothed_speed
 from gainbench.evidence.outcome import Outcome
 from gainbench.evidence.prepared import Record
 from gainbench.evidence.winding_fit import fit_winding
@@ -44,6 +44,8 @@ def locked_rotor(record: Record, plant: Plant) -> Outcome:
             " [evidence.columns]. The voltage must be that at the terminals: the supply's own rise is part of it"
         )
     winding = fit_winding(record, turning=False, start=np.array([plant.resistance, plant.inductance]))
+    if winding.against:
+        refuse_signs(record.name, "voltage", "current")
     remarks = list(winding.remarks)
     if has_motion(record):
         moved = float(np.percentile(np.abs(smoothed_speed(record)), 95.0)) * plant.back_emf

@@ -14,6 +14,8 @@ from numpy.typing import NDArray
 from gainbench.errors import LogError
 from gainbench.evidence.columns import FileColumn, Raw, most_rows, refuse_too_large
 from gainbench.evidence.guessing import split_name
+from gainbench.evidence.matlab_check import check_elements
+from gainbench.evidence.told_rate import period_of
 
 MAGIC = b"MATLAB 5.0 MAT-file"
 HDF5 = (b"MATLAB 7.3 MAT-file", b"\x89HDF\r\n\x1a\n")
@@ -28,17 +30,20 @@ _MOST_PACKED = 1032
 """How many bytes deflate can pack into one."""
 # What scipy raises at a damaged file; MatReadError and zlib's own error are of no common kind.
 _TROUBLE = (ArithmeticError, AssertionError, AttributeError, BufferError, EOFError, LookupError, MemoryError, OSError)
-_MORE_TROUBLE = (RuntimeError, TypeError, ValueError, struct.error, zlib.error)
+_MORE_TROUBLE = (NameError, RuntimeError, TypeError, ValueError, struct.error, zlib.error)
 
 
 class MatlabTable:
     """A .mat log whose variables were read."""
 
-    __slots__ = ("_arrays", "_path", "columns", "rows")
+    __slots__ = ("_arrays", "_path", "columns", "period", "rows")
 
     def __init__(self, path: Path) -> None:
         self._path = path
-        self._arrays = _vectors(_loaded(path))
+        variables = _loaded(path)
+        self._arrays = _vectors(variables)
+        self.period: float | None = period_of(_scalars(variables))
+        """As a single number beside the vectors tells it [s]; None where there is none."""
         if not self._arrays:
             raise LogError(f"{path.name}: no usable columns: it holds no vector of numbers with two or more of them")
         self.columns: tuple[FileColumn, ...] = tuple(
@@ -79,10 +84,14 @@ def _loaded(path: Path) -> dict[str, Any]:
     if start.startswith(HDF5) or start[512:].startswith(HDF5[1]):
         raise LogError(f"{path.name}: a .mat file of version 7.3 is not read; save it again with save(..., '-v7')")
     try:
-        shapes = whosmat(path, appendmat=False)
-        refuse_too_large(float(sum(np.prod(shape, dtype=float) for _, shape, _ in shapes)), 1, name=path.name)
+        refuse_too_large(path.stat().st_size / _VALUE_BYTES, 1, name=path.name)
         if start.startswith(MAGIC) and path.stat().st_size * _MOST_PACKED > most_rows(1) * _VALUE_BYTES:
             refuse_too_large(_unpacked_bytes(path, most_rows(1) * _VALUE_BYTES) / _VALUE_BYTES, 1, name=path.name)
+        if 0 not in start[:4]:
+            # A file of version 4 begins with a small number, all others with a text.
+            check_elements(path)
+        shapes = whosmat(path, appendmat=False)
+        refuse_too_large(float(sum(np.prod(shape, dtype=float) for _, shape, _ in shapes)), 1, name=path.name)
         found: dict[str, Any] = loadmat(path, appendmat=False, chars_as_strings=False, squeeze_me=False)
     except (*_TROUBLE, *_MORE_TROUBLE, MatReadError) as error:
         detail = str(error).partition("\n")[0] or type(error).__name__
@@ -127,6 +136,20 @@ def _vectors(variables: dict[str, Any]) -> dict[str, NDArray[Any]]:
                 for index in range(min(tall.shape[1], _MOST_COLUMNS)):
                     label = f"{name}(:,{index + 1})" if tall is array else f"{name}({index + 1},:)"
                     found[label] = tall[:, index]
+    return found
+
+
+def _scalars(variables: dict[str, Any]) -> dict[str, float]:
+    """Every single number by its name, in structures as well."""
+    found: dict[str, float] = {}
+    waiting = [(name, value, 0) for name, value in variables.items()]
+    while waiting:
+        name, value, depth = waiting.pop(0)
+        array = np.asarray(value)
+        if array.dtype.names is not None and array.size == 1 and depth < _DEEPEST:
+            waiting += [(f"{name}.{key}", array[key].ravel()[0], depth + 1) for key in array.dtype.names]
+        elif array.dtype.kind in "iuf" and array.size == 1:
+            found[name] = float(array.ravel()[0])
     return found
 
 

@@ -56,9 +56,21 @@ class MotionModel:
     shape: Shape
     size: Array
     """Of the parameters, shape (p,)."""
+    follow: tuple[float, float] = (0.0, 0.0)
+    """Shares of what was measured beside the output by which speed and angle are moved after every sample: a predictor
+    from sample to sample. Zero twice lets the motion run freely."""
+
+    @property
+    def follows(self) -> bool:
+        """Whether it is a predictor from sample to sample."""
+        return self.follow != (0.0, 0.0)
 
     def keep(self, values: Array) -> float:
         """As :class:`gainbench.evidence.output_error.Model`; values in each parameter's unit."""
+        return 0.0 if self.follows else self.state_keep(values)
+
+    def state_keep(self, values: Array) -> float:
+        """Share of the speed that is left after one sample, with these parameters [each its own unit]."""
         inertia = 1.0 if self.drive is None else float(values[0])
         friction = values if self.drive is None else values[1:]
         viscous = float(np.mean((self.shape.rows @ friction[: self.shape.count])[[0, 2]]))
@@ -70,8 +82,11 @@ class MotionModel:
 
     @property
     def measured(self) -> Array:
-        """As :class:`gainbench.evidence.output_error.Model`: speed, or mean speed since the sample before."""
-        return self._grown(self.recorded, self.pieces) if self.is_angle else self.recorded
+        """As :class:`gainbench.evidence.output_error.Model`: speed, or mean speed since the sample before.
+
+        A predictor is compared by the angle itself.
+        """
+        return self._grown(self.recorded, self.pieces) if self.is_angle and not self.follows else self.recorded
 
     def _grown(self, values: Array, bounds: NDArray[np.int64]) -> Array:
         """Mean speed since the sample before; the first sample of a segment has none and counts as 0."""
@@ -102,11 +117,14 @@ class MotionModel:
         sets[:, 1:] = friction @ self.shape.rows.T
         begin = np.zeros((count + 2, bounds.size - 1, 2))
         begin[:, :, 0] = starts[:, 0]
+        if self.is_angle and self.follows:
+            begin[:, :, 1] = self.recorded[bounds[:-1]]
         lift = 1e-6 * max(float(np.abs(self.speed).max()), 1e-12)
         begin[-1, :, 0] += lift
         out = np.empty((count + 2, self.recorded.size))
-        run_motion(torque, self.step, sets, source, bounds, begin, self.is_angle, out)
-        if self.is_angle:
+        follow = np.array(self.follow)
+        run_motion(torque, self.step, sets, source, bounds, begin, self.is_angle, self.recorded, follow, out)
+        if self.is_angle and not self.follows:
             out = self._grown(out, bounds)
             # What the log has at the first sample of a segment is put out as it is, so that it weighs nothing.
             out[:, bounds[:-1]] = self.measured[bounds[:-1]]

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 import numpy as np
 from numpy.typing import NDArray
 
 from gainbench.errors import LogError
 from gainbench.evidence.driven import has_motion, smoothed_speed
-from gainbench.evidence.estimate import EstimateName, Ratio, Told
+from gainbench.evidence.estimate import Estimate, EstimateName, Ratio, Told
 from gainbench.evidence.friction_curve import friction_curve, with_sign_of
 from gainbench.evidence.outcome import Outcome
 from gainbench.evidence.prepared import Record, thin
@@ -20,20 +22,24 @@ from gainbench.plant import Plant
 Array = NDArray[np.float64]
 
 _FEWEST = 20
+_GUESSED = 0.2
+"""Share to which the sheet's resistance is trusted."""
 
 
-def no_load(record: Record, plant: Plant) -> Outcome:
+def no_load(record: Record, plant: Plant, *, earlier: Mapping[EstimateName, Estimate] | None = None) -> Outcome:
     """Identify from a run without a load.
 
     Friction from torque, or from current and the torque constant, over its steady parts. The back-EMF constant from
-    ``v - R i = Ke w`` with the sheet's resistance, whose drop is small without a load.
+    ``v - R i = Ke w`` with the resistance that other logs tell, or the sheet's, whose drop is small without a load.
 
     Parameters
     ----------
     record : Record
         With an angle [rad] or a speed [rad/s], and torque [N m] or current [A], or voltage [V], or both.
     plant : Plant
-        As the sheet has it: its resistance is used.
+        As the sheet has it: its resistance is used where no other log tells one.
+    earlier : mapping, optional
+        What other logs tell, SI.
 
     Returns
     -------
@@ -67,20 +73,25 @@ def no_load(record: Record, plant: Plant) -> Outcome:
         percent = found.fit_percent
     if record.has(SignalName.VOLTAGE):
         current = record.signals.get(SignalName.CURRENT)
-        constant, own, fit = _constant(record, plant, current)
+        constant, own, fit = _constant(record, plant, current, (earlier or {}).get(EstimateName.RESISTANCE))
         fitted.append(constant)
         remarks += own
         percent = fit if percent is None else percent
     return Outcome(fitted=tuple(fitted), linear=tuple(fitted), fit_percent=percent, remarks=tuple(remarks))
 
 
-def _constant(record: Record, plant: Plant, current: Array | None) -> tuple[Told, list[str], float]:
+def _constant(
+    record: Record, plant: Plant, current: Array | None, earlier: Estimate | None
+) -> tuple[Told, list[str], float]:
     """The back-EMF constant over the steady rows, what is to be said of it, and how well it fits."""
     name = SignalName.SPEED if record.has(SignalName.SPEED) else SignalName.ANGLE
     drop = record.signals[SignalName.VOLTAGE]
+    resistance = plant.resistance if earlier is None else earlier.value
+    doubt = _GUESSED * resistance if earlier is None else 0.25 * (earlier.high - earlier.low)
     if current is not None:
         signed = with_sign_of(smoothed_speed(record), current)
-        drop = drop - plant.resistance * (current if signed is None else signed)
+        current = current if signed is None else signed
+        drop = drop - resistance * current
     signals = {name: record.signals[name], SignalName.TORQUE: drop}
     work = Record(name=record.name, step=record.step, bounds=record.bounds, signals=signals, remarks=())
     work = thin(work, -(-work.size // MOST_ROWS))
@@ -90,7 +101,13 @@ def _constant(record: Record, plant: Plant, current: Array | None) -> tuple[Told
         return Told(ratios=(), values=np.zeros(0), covariance=np.zeros((0, 0)), spare=1.0), ["nothing moved"], 0.0
     # The inductance's share rises with the acceleration, as the current does.
     found = regress(rows.drive, np.array([rows.speed, rows.acceleration]))
-    told, remarks = tell(ratios, found.values[:1], found.covariance[:1, :1], spare=found.spare, floors=np.zeros(1))
+    covariance = found.covariance[:1, :1].copy()
+    if current is not None:
+        # What the constant moves by with the resistance: the current's own share of the speed.
+        speed = smoothed_speed(record)
+        covariance += (doubt * float(current @ speed) / max(float(speed @ speed), 1e-300)) ** 2
+    told, remarks = tell(ratios, found.values[:1], covariance, spare=found.spare, floors=np.zeros(1))
     words = "no current was logged: the drop over the resistance is part of the back-EMF constant"
-    used = f"the back-EMF constant rests on the sheet's resistance, {plant.resistance:.4g} ohm"
+    whose = "the sheet's" if earlier is None else "the other logs'"
+    used = f"the back-EMF constant rests on {whose} resistance, {resistance:.4g} ohm, and its doubt"
     return told, [*remarks, words if current is None else used], found.fit_percent

@@ -97,6 +97,8 @@ class Fit:
     """First sample of each segment, and n at the end."""
     starts: Array
     """Fitted states at the start of each segment, shape (n_segments, q)."""
+    disturbance: Array
+    """What enters the model's state at each sample, from one run over each unbroken piece, shape (n,)."""
 
 
 def segment_bounds(pieces: NDArray[np.int64], length: int) -> NDArray[np.int64]:
@@ -156,7 +158,7 @@ def fit_output(model: Model, start: Array, *, lower: Array, upper: Array, segmen
         task = _Task(model, segment_bounds(model.pieces, length), np.ones(model.measured.size))
         found = _settle(task, values, lower=lower, upper=upper)
         values = found.values
-        if best is None or _spread(found, model.size) < _spread(best, model.size):
+        if best is None or spread(found, model.size) < spread(best, model.size):
             best, worse = found, 0
         else:
             worse += 1
@@ -166,8 +168,8 @@ def fit_output(model: Model, start: Array, *, lower: Array, upper: Array, segmen
     return best
 
 
-def _spread(fit: Fit, size: Array) -> float:
-    """Mean logarithm of the relative variances."""
+def spread(fit: Fit, size: Array) -> float:
+    """Mean logarithm of the variances over the parameters' sizes, a pure number: the less, the more is told."""
     return float(np.mean(np.log(np.maximum(np.diag(fit.covariance) / size**2, 1e-300))))
 
 
@@ -219,7 +221,9 @@ def _settle(task: _Task, start: Array, *, lower: Array, upper: Array) -> Fit:
     keep = task.model.keep(values)
     disturbance = _disturbance(task, values, keep)
     spectral = spectral_covariance(rows, task.bounds, keep=keep, ridge=ridge, disturbance=disturbance)
-    covariance = wider(spectral, block_covariance(rows, ridge=ridge))
+    blocks = block_covariance(rows, ridge=ridge)
+    # Where residuals pile up either may see too little; those of a predictor have no memory, and neither is blind.
+    covariance = wider(spectral, blocks) if keep > 0.0 else 0.5 * (spectral + blocks)
     measured = task.model.measured
     around = float(np.linalg.norm(measured - measured.mean()))
     return Fit(
@@ -233,6 +237,7 @@ def _settle(task: _Task, start: Array, *, lower: Array, upper: Array) -> Fit:
         information=rows[1:] @ rows[1:].T + np.diag(ridge),
         bounds=task.bounds,
         starts=task.starts(values),
+        disturbance=disturbance,
     )
 
 

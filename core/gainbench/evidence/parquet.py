@@ -21,12 +21,13 @@ _FIRST = 5
 class ParquetTable:
     """A parquet log whose columns are known."""
 
-    __slots__ = ("_path", "columns", "rows")
+    __slots__ = ("_path", "columns", "period", "rows")
 
     def __init__(self, path: Path) -> None:
         import polars as pl
 
         self._path = path
+        self.period: float | None = None
         lazy = pl.scan_parquet(path, glob=False)
         self.rows: int | None = int(self._collected(lazy.select(pl.len())).item())
         head = self._collected(lazy.head(_FIRST))

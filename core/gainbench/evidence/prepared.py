@@ -10,6 +10,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gainbench.evidence.log import Log
+from gainbench.evidence.suspicion import cut_off
+from gainbench.evidence.unwrapping import unwrapped
 from gainbench.model import SignalName
 
 Array = NDArray[np.float64]
@@ -22,6 +24,12 @@ _SPIKE_SHARE = 0.05
 """Of the signal's range that it must stand out by as well."""
 _MOST_SPIKES = 0.02
 """Share of samples above which they are no spikes but the signal."""
+_BESIDE = 2
+"""Samples to either side of a clipped one that are left out with it."""
+_PIECE = 64
+"""Samples between clipped ones below which a piece is left out."""
+_LEFT = 0.3
+"""Share of a record that must be left."""
 _STRETCHES = 20
 """That stand for a long record where every row of a stretch is wanted."""
 _TAPS = 10
@@ -88,7 +96,11 @@ def prepare(log: Log) -> Record:
             f"the stamps are irregular, {1e3 * step:.4g} ms in the median: the signals were laid on an even grid of it"
         )
         lengths = [grid.size for grid in grids]
-    for name, values in log.signals.items():
+    for name, given in log.signals.items():
+        values = given
+        if name is SignalName.ANGLE:
+            values, said = unwrapped(given, log.name)
+            remarks += [said] if said else []
         repaired, count = without_spikes(values)
         if count:
             remarks.append(f"{name.value}: {count} spike{'s' if count > 1 else ''} of one sample left out")
@@ -99,6 +111,52 @@ def prepare(log: Log) -> Record:
             signals[name] = np.concatenate([np.interp(grid, log.time, repaired) for grid in grids])
     bounds = np.concatenate(([0], np.cumsum(lengths))).astype(np.int64)
     return Record(name=log.name, step=step, bounds=bounds, signals=signals, remarks=tuple(remarks))
+
+
+def without_clipped(record: Record) -> Record:
+    """A record cut where a measured current or speed sits on its limit: what is beyond it nobody knows.
+
+    A voltage on its limit is a supply that gives all it has, and is what the machine gets.
+
+    Parameters
+    ----------
+    record : Record
+        On its even grid.
+
+    Returns
+    -------
+    Record
+        In more pieces, of which the short ones are left out; the record itself where nothing is cut off, or too little
+        would be left.
+    """
+    clipped = np.zeros(record.size, dtype=np.bool_)
+    for name in (SignalName.CURRENT, SignalName.SPEED):
+        if name in record.signals:
+            clipped |= cut_off(record.signals[name])
+    if not clipped.any():
+        return record
+    edges = np.flatnonzero(clipped)
+    for near in range(1, _BESIDE + 1):
+        clipped[np.maximum(edges - near, 0)] = True
+        clipped[np.minimum(edges + near, record.size - 1)] = True
+    starts = np.zeros(record.size, dtype=np.bool_)
+    starts[record.bounds[:-1]] = True
+    number = np.cumsum(starts | np.diff(clipped, prepend=False))
+    firsts = np.flatnonzero(np.diff(number, prepend=0))
+    lasts = np.append(firsts[1:], record.size)
+    kept = (~clipped[firsts]) & (lasts - firsts >= _PIECE)
+    lengths = (lasts - firsts)[kept]
+    if lengths.sum() < _LEFT * record.size:
+        return record
+    keep = np.concatenate([np.arange(a, b) for a, b in zip(firsts[kept], lasts[kept], strict=True)])
+    said = f"{record.size - keep.size} samples on and beside a limit of the measurement left out"
+    return Record(
+        name=record.name,
+        step=record.step,
+        bounds=np.concatenate(([0], np.cumsum(lengths))).astype(np.int64),
+        signals={name: values[keep] for name, values in record.signals.items()},
+        remarks=(*record.remarks, said),
+    )
 
 
 def without_spikes(values: Array) -> tuple[Array, int]:

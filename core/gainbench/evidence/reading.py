@@ -12,10 +12,12 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Protocol
 
+import numpy as np
+
 from gainbench.errors import LogError, UnitError
 from gainbench.evidence.cleaning import Scaled, clean
-from gainbench.evidence.columns import FileColumn, Raw, find_column
-from gainbench.evidence.guessing import ColumnGuess, guess_column, spelled, suggested
+from gainbench.evidence.columns import BY_PLACE, FileColumn, Raw, find_column
+from gainbench.evidence.guessing import COUNTED, ColumnGuess, counted_word, guess_column, spelled, suggested
 from gainbench.evidence.log import Log
 from gainbench.evidence.matlab import HDF5, MatlabTable
 from gainbench.evidence.matlab import MAGIC as MATLAB
@@ -23,6 +25,7 @@ from gainbench.evidence.parquet import MAGIC as PARQUET
 from gainbench.evidence.parquet import ParquetTable
 from gainbench.evidence.text_layout import TextLayout
 from gainbench.evidence.text_table import TextTable
+from gainbench.evidence.told_rate import is_counter
 from gainbench.model import SIGNAL_DIMENSIONS, LogColumn, SignalName
 from gainbench.units import unit_size
 
@@ -37,6 +40,13 @@ _OTHER_FILES: tuple[tuple[bytes, str], ...] = (
     (b"MZ", "a program"),
 )
 _SAME = 1e-6
+ROW = "row"
+"""What the time may be mapped to where a file has no column of it: the number of the row."""
+_LOOKED_AT = 1000
+"""Stamps that tell whether they count samples."""
+_MOST_SHOWN = 12
+_OFF = 0.02
+"""Share by which a period may differ from what the file says it is."""
 
 
 class LogTable(Protocol):
@@ -44,6 +54,7 @@ class LogTable(Protocol):
 
     columns: tuple[FileColumn, ...]
     rows: int | None
+    period: float | None
 
     def load(self, places: Sequence[int], *, time: int | None) -> list[Raw]:
         """Read columns by their places, the one of the time without loss."""
@@ -158,26 +169,72 @@ def read_log(path: str | Path, columns: Sequence[LogColumn]) -> Log:
         If the file, the mapping or the signals cannot be used; the message names the file and the column.
     """
     path = Path(path)
-    factors = _factors(columns, path.name)
     table = _opened(path)
-    places = [find_column(table.columns, one.column, name=path.name) for one in columns]
-    for place, one in zip(places, columns, strict=True):
+    factors = _factors(columns, path.name, table)
+    rows = [_is_row(one, table.columns) for one in columns]
+    held = [one for one, counts in zip(columns, rows, strict=True) if not counts]
+    places = [find_column(table.columns, one.column, name=path.name) for one in held]
+    for place, one in zip(places, held, strict=True):
         _refuse_text(table.columns[place], one, path.name)
-    time = next(place for place, one in zip(places, columns, strict=True) if one.signal is SignalName.TIME)
+        _refuse_other_unit(table.columns[place], one, path.name)
+    time = next((place for place, one in zip(places, held, strict=True) if one.signal is SignalName.TIME), None)
     try:
         raws = table.load(places, time=time)
     except OSError as error:
         raise LogError(f"{path.name}: cannot be read: {error.strerror or error}") from None
+    if time is None:
+        count = raws[0].values.size
+        raws.insert(rows.index(True), Raw(values=np.arange(count), missing=np.zeros(count, dtype=np.bool_)))
     scaled = {
         one.signal: Scaled(raw=raw, column=one.column, factor=factor)
         for one, raw, factor in zip(columns, raws, factors, strict=True)
     }
-    remarks = [_unit_remark(table.columns[place], one) for place, one in zip(places, columns, strict=True)]
+    remarks = [_unit_remark(table.columns[place], one) for place, one in zip(places, held, strict=True)]
     stamps = scaled.pop(SignalName.TIME)
+    remarks.append(_period_remark(stamps, table.period, name=path.name, counts=any(rows)))
     return clean(path.name, stamps, signals=scaled, remarks=tuple(remark for remark in remarks if remark))
 
 
-def _factors(columns: Sequence[LogColumn], name: str) -> list[float]:
+def _is_row(one: LogColumn, columns: Sequence[FileColumn]) -> bool:
+    """Whether a mapping asks for the number of the row."""
+    if one.signal is not SignalName.TIME or one.column.strip().lower() != ROW:
+        return False
+    return not any(ROW in {name.strip().lower() for name in (own.name, *own.others)} for own in columns)
+
+
+def _period_remark(stamps: Scaled, told: float | None, *, name: str, counts: bool) -> str:
+    """See that a counter of samples was given its period, and that the time runs as the file says it does."""
+    values = stamps.raw.values[:_LOOKED_AT]
+    if stamps.raw.stamps or values.size < 2 or stamps.raw.missing[:_LOOKED_AT].any():
+        return ""
+    steps = np.diff(values)
+    counter = bool(np.all(steps == 1))
+    period = float(np.median(steps)) * stamps.factor
+    off = told is not None and period > 0.0 and abs(period - told) > _OFF * told
+    if counter and (counts or is_counter(stamps.column)) and (off or (told is None and stamps.factor == 1.0)):
+        wanted = "its period, for example scale = 0.0001" if told is None else f"scale = {told:.6g}"
+        said = "" if told is None else f", and the file says that samples are {told:.6g} s apart"
+        raise LogError(
+            f'{name}: column "{stamps.column}" counts samples{said}: the mapping takes one as {stamps.factor:.6g} s;'
+            f' give time unit = "s" and {wanted}'
+        )
+    if off:
+        return f"the file says that samples are {told:.6g} s apart, and by its column of time they are {period:.6g} s"
+    return ""
+
+
+def _mapping_hint(table: LogTable) -> str:
+    """What the names of a file's columns suggest to map, in the words of a sheet."""
+    names = [_mapped_as(table.columns, place) for place in range(len(table.columns))]
+    found = suggested(names, [_guessed(one) for one in table.columns])
+    if not found:
+        shown = ", ".join(names[:_MOST_SHOWN]) + (" and more" if len(names) > _MOST_SHOWN else "")
+        return f"; the file has {shown}, and what they hold does not follow from their names"
+    listed = ", ".join(f'{one.signal} = {{ column = "{one.column}", unit = "{one.unit}" }}' for one in found)
+    return f"; by their names: {listed}"
+
+
+def _factors(columns: Sequence[LogColumn], name: str, table: LogTable) -> list[float]:
     """One of each column in SI."""
     signals = [one.signal for one in columns]
     if len(set(signals)) < len(signals):
@@ -186,14 +243,19 @@ def _factors(columns: Sequence[LogColumn], name: str) -> list[float]:
     if SignalName.TIME not in signals:
         raise LogError(
             f'{name}: no column is mapped to time (for example time = {{ column = "t", unit = "s" }});'
-            " a sample counter will do, with the period as its scale"
+            f' a sample counter will do, with the period as its scale, and where there is none column = "{ROW}" counts'
+            f" the rows{_with_period(table.period)}{_mapping_hint(table)}"
         )
     if len(signals) < 2:
         raise LogError(
             f"{name}: no column but the time is mapped; map at least one signal"
-            ' (for example current = { column = "i", unit = "A" })'
+            f' (for example current = {{ column = "i", unit = "A" }}){_mapping_hint(table)}'
         )
     return [_factor(one, name) for one in columns]
+
+
+def _with_period(period: float | None) -> str:
+    return "" if period is None else f', as the file says with unit = "s", scale = {period:.6g}'
 
 
 def _factor(one: LogColumn, name: str) -> float:
@@ -241,12 +303,42 @@ def _refuse_text(column: FileColumn, one: LogColumn, name: str) -> None:
     shown = ", ".join(value for value in column.first_values[:3] if value)
     if not column.numeric:
         told = f"it starts with {shown}" if shown else "it is empty"
-        raise LogError(f'{name}: column "{one.column}" ({one.signal}) holds no numbers: {told}; map another column')
+        stamps = "; stamps are read as 2024-05-03T12:34:56.789, 03.05.2024 12:34:56.789 or 12:34:56.789"
+        raise LogError(
+            f'{name}: column "{one.column}" ({one.signal}) holds no numbers: {told}; map another column'
+            f"{stamps if one.signal is SignalName.TIME and shown else ''}"
+        )
     if column.stamps and one.signal is not SignalName.TIME:
         raise LogError(f'{name}: column "{one.column}" holds time stamps ({shown}), {one.signal} is meant')
     if column.stamps and one.scale != 1.0:
         raise LogError(
             f'{name}: column "{one.column}" holds time stamps ({shown}), which take no scale; take the scale out'
+        )
+
+
+def _refuse_other_unit(column: FileColumn, one: LogColumn, name: str) -> None:
+    """See that a unit without a scale is that of the file; a column that is named by its place is taken as mapped."""
+    own = spelled(column.unit)
+    if column.stamps or one.scale != 1.0 or BY_PLACE.fullmatch(one.column.strip()):
+        return
+    raw = column.unit if column.unit.strip().lower() in COUNTED else counted_word(column.name)
+    if raw:
+        raise LogError(
+            f'{name}: column "{one.column}" ({one.signal}) holds {raw}, and the mapping takes one as {one.unit};'
+            f" give it the scale that makes {one.unit} of it (for example scale = 0.01), or name it by its place, as in"
+            ' "column 2", where the file\'s header is wrong'
+        )
+    if not own:
+        return
+    try:
+        size = unit_size(own, SIGNAL_DIMENSIONS[one.signal])
+    except UnitError:
+        return
+    if abs(unit_size(one.unit, SIGNAL_DIMENSIONS[one.signal]) - size) > _SAME * size:
+        raise LogError(
+            f'{name}: column "{one.column}" ({one.signal}) is in {column.unit} as the file says, and the mapping takes'
+            f' it as {one.unit}; write unit = "{own}", or name the column by its place, as in "column 2", where the'
+            " file's header is wrong"
         )
 
 

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gainbench.evidence.estimate import EstimateName, Ratio, Told
+from gainbench.evidence.following import fit_following
 from gainbench.evidence.lag import best_lag
 from gainbench.evidence.motion_model import MotionModel, Shape
 from gainbench.evidence.output_error import Fit, fit_output
@@ -16,7 +17,7 @@ from gainbench.evidence.prepared import Record, thin, thinned
 from gainbench.evidence.regression import Regression, regress
 from gainbench.evidence.shifting import soften
 from gainbench.evidence.smoothing import motion_of, noise_cut
-from gainbench.evidence.telling import dead_time_remark, tell
+from gainbench.evidence.telling import dead_time_remark, tell, without
 from gainbench.evidence.winding_fit import outlier_remark
 from gainbench.model import SignalName
 
@@ -24,12 +25,22 @@ Array = NDArray[np.float64]
 
 MOST_ROWS = 25_000
 """Of a motion that is fitted; longer logs are thinned behind an anti-alias filter."""
+THINNED_ROWS = 18_000
+"""That longer ones are thinned to."""
 _ENDS = 3
 """Rows at either end of a piece that the filters reach beyond."""
 _NOISES = 3.0
 """Standard deviations of its noise below which a speed has no direction."""
 _ONE_WAY = 0.03
 """Share of the moving rows below which a direction was not driven."""
+_FEWEST = 20
+"""Rows of the regression."""
+_STEADY = 0.1
+"""Share of the highest speed within which it runs at one speed."""
+_SURE_AGAINST = 5.0
+"""Standard deviations below zero that an inertia is surely negative."""
+_AGAINST_FIT = 20.0
+"""Fit in percent above which the motion has to do with the drive."""
 _FACTOR = 1e3
 _SHIFTS = 12.0
 _ZERO = 0.02
@@ -46,6 +57,8 @@ class ShaftEvidence:
     remarks: tuple[str, ...]
     late: float = 0.0
     """Seconds by which the motion is stamped later than the drive; 0 where no dead time was found."""
+    against: bool = False
+    """Whether the motion goes against the drive: one of both has the wrong sign."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -106,16 +119,14 @@ def shaft_rows(record: Record, drive: Array) -> ShaftRows:
     speed = np.concatenate([one.speed for one in motions])
     slow = _NOISES * max(one.noise for one in motions)
     found: list[list[Array]] = []
-    lag = 0
-    for number, ((a, b), motion) in enumerate(zip(spans, motions, strict=True)):
-        columns = [
-            motion.acceleration,
-            motion.speed,
-            (motion.speed > slow).astype(np.float64),
-            (motion.speed < -slow).astype(np.float64),
-        ]
-        if number == 0:
-            lag = best_lag(drive[a:b], np.array(columns), step=record.step)
+    columns_of = [
+        [one.acceleration, one.speed, (one.speed > slow).astype(np.float64), (one.speed < -slow).astype(np.float64)]
+        for one in motions
+    ]
+    first, last = max(spans, key=lambda span: span[1] - span[0])
+    longest = columns_of[spans.index((first, last))]
+    lag = best_lag(drive[first:last], np.array(longest), step=record.step)
+    for (a, b), columns in zip(spans, columns_of, strict=True):
         moved = drive[a:b][np.clip(np.arange(b - a) - lag, 0, b - a - 1)]
         rows = [thinned(column, factor) for column in (moved, *columns)]
         keep = rows[3] + rows[4] > 0.5
@@ -184,13 +195,15 @@ def fit_shaft(record: Record, drive: Array, *, per: EstimateName | None) -> Shaf
     name = SignalName.SPEED if record.has(SignalName.SPEED) else SignalName.ANGLE
     signals = {name: record.signals[name], SignalName.TORQUE: drive}
     work = Record(name=record.name, step=record.step, bounds=record.bounds, signals=signals, remarks=())
-    work = thin(work, -(-work.size // MOST_ROWS))
+    work = thin(work, -(-work.size // THINNED_ROWS) if work.size > MOST_ROWS else 1)
     rows = shaft_rows(work, work.signals[SignalName.TORQUE])
-    if rows.drive.size < 20:
-        return ShaftEvidence(fitted=(), linear=(), fit_percent=0.0, remarks=("nothing moved: this log tells nothing",))
+    if rows.drive.size < _FEWEST:
+        return ShaftEvidence(fitted=(), linear=(), fit_percent=0.0, remarks=(_too_little(work, rows),))
     if not np.any(rows.drive):
         return ShaftEvidence(fitted=(), linear=(), fit_percent=0.0, remarks=("the drive is zero throughout",))
     shapes = (Shape.EVEN, Shape.BY_WAY) if rows.both_ways else (Shape.ONE_WAY,)
+    if _goes_against(rows, shapes[0]):
+        return ShaftEvidence(fitted=(), linear=(), fit_percent=0.0, remarks=(), against=True)
     fitted: list[Told] = []
     linear: list[Told] = []
     remarks: list[str] = []
@@ -207,7 +220,7 @@ def fit_shaft(record: Record, drive: Array, *, per: EstimateName | None) -> Shaf
         told, untold = tell(ratios, fit.values[:count], fit.covariance[:count, :count], spare=fit.spare, floors=floors)
         begun, _ = tell(ratios, first.values, first.covariance, spare=first.spare, floors=floors)
         if shape is Shape.BY_WAY:
-            told, begun = without(told, EstimateName.INERTIA), without(begun, EstimateName.INERTIA)
+            told, begun = without(told, [EstimateName.INERTIA]), without(begun, [EstimateName.INERTIA])
             untold = [one for one in untold if "inertia" not in one]
         else:
             percent = fit.fit_percent
@@ -228,14 +241,26 @@ def fit_shaft(record: Record, drive: Array, *, per: EstimateName | None) -> Shaf
     )
 
 
-def without(told: Told, name: EstimateName) -> Told:
-    """The same but for one estimate."""
-    kept = [index for index, ratio in enumerate(told.ratios) if ratio.of is not name]
-    return Told(
-        ratios=tuple(told.ratios[index] for index in kept),
-        values=told.values[kept],
-        covariance=told.covariance[np.ix_(kept, kept)],
-        spare=told.spare,
+def _too_little(work: Record, rows: ShaftRows) -> str:
+    """Why there are too few rows: it rests, or it was logged too slowly."""
+    if not np.any(np.abs(rows.smoothed) > rows.slow):
+        return "nothing moved: this log tells nothing of inertia and friction"
+    if float(np.ptp(rows.smoothed)) < _STEADY * float(np.abs(rows.smoothed).max()):
+        return (
+            "it ran at one speed all the time: nothing tells inertia from friction; record steps of speed or voltage,"
+            " or call the experiment no-load"
+        )
+    return (
+        f"too few rows for inertia and friction: the log has {work.size}, {1.0 / work.step:.4g} a second; record some"
+        " hundred rows and more, ten and more in each mechanical time constant"
+    )
+
+
+def _goes_against(rows: ShaftRows, shape: Shape) -> bool:
+    """Whether the acceleration is surely against the drive."""
+    found = regress(rows.drive, np.vstack((rows.acceleration, shaft_columns(rows, shape))))
+    return bool(
+        found.values[0] + _SURE_AGAINST * np.sqrt(found.covariance[0, 0]) < 0.0 and found.fit_percent > _AGAINST_FIT
     )
 
 
@@ -284,4 +309,5 @@ def _output_error(work: Record, rows: ShaftRows, shape: Shape, first: Regression
         shape=shape,
         size=size,
     )
-    return fit_output(model, np.append(start, shift), lower=lower, upper=upper, segment=segment)
+    free = fit_output(model, np.append(start, shift), lower=lower, upper=upper, segment=segment)
+    return fit_following(model, free, drive=work.signals[SignalName.TORQUE], lower=lower, upper=upper)

@@ -62,6 +62,8 @@ def delayed(values: Array, shift: float, bounds: NDArray[np.int64]) -> Array:
     ndarray, shape (n,)
         Beyond the ends of a piece its first and last values hold.
     """
+    from scipy.special import i0
+
     whole = int(np.floor(shift))
     part = shift - whole
     taps = np.zeros(2 * _HALF)
@@ -69,7 +71,7 @@ def delayed(values: Array, shift: float, bounds: NDArray[np.int64]) -> Array:
         taps[_HALF - 1] = 1.0
     else:
         at = np.arange(2 * _HALF) - (_HALF - 1) - part
-        taps = np.sinc(at) * np.i0(_SHAPE * np.sqrt(np.maximum(0.0, 1.0 - (at / _HALF) ** 2))) / np.i0(_SHAPE)
+        taps = np.sinc(at) * i0(_SHAPE * np.sqrt(np.maximum(0.0, 1.0 - (at / _HALF) ** 2))) / i0(_SHAPE)
         taps /= taps.sum()
     found = np.empty_like(values)
     for first, last in itertools.pairwise(bounds):

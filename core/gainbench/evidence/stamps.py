@@ -9,10 +9,11 @@ if TYPE_CHECKING:
     from polars import Expr, Series
 
 PATTERN = (
-    r"^\s*(?:(\d{4})[-/.](\d{1,2})[-/.](\d{1,2})[T ]\s*)?"
-    r"(\d{1,2}):(\d{2}):(\d{2})(?:[.,](\d{1,9})\d*)?\s*(Z|[+-]\d{2}:?\d{2})?\s*$"
+    r"^\s*(?:(?:(\d{4})[-/.](\d{1,2})[-/.](\d{1,2})|(\d{1,2})\.(\d{1,2})\.(\d{4})|\d{1,2}/\d{1,2}/\d{4})[T ,;]\s*)?"
+    r"(\d{1,2}):(\d{2}):(\d{2})(?:[.,:](\d{1,9})\d*)?\s*([AaPp]\.?[Mm]\.?)?\s*(Z|[+-]\d{2}:?\d{2})?\s*$"
 )
-"""Year, month, day; hour, minute, second, its decimals; zone. Other orders of a date say nothing for certain."""
+"""Year, month, day, or day, month, year with points between; hour, minute, second, its decimals; half of the day; zone.
+Which of two numbers between slashes is the day nobody knows: such stamps count as times of day."""
 _STAMP = re.compile(PATTERN, re.ASCII)
 _SECOND = 1_000_000_000
 
@@ -39,8 +40,12 @@ def nanoseconds(texts: Series) -> Series:
 
     # Cut once, then only columns of short texts: the expression is by far the slowest part.
     parts = texts.str.extract_groups(PATTERN).struct.unnest()
-    parts.columns = ["year", "month", "day", "hour", "minute", "second", "decimals", "zone"]
-    year, month, day, hour, minute, second = (pl.col(name).cast(pl.Int64) for name in parts.columns[:6])
+    parts.columns = ["year", "month", "day", "own day", "own month", "own year", "hour", "minute", "second", "decimals",
+                     "half", "zone"]  # fmt: skip
+    year, month, day = (pl.coalesce(one, f"own {one}").cast(pl.Int64) for one in ("year", "month", "day"))
+    hour, minute, second = (pl.col(one).cast(pl.Int64) for one in ("hour", "minute", "second"))
+    half = pl.col("half").str.to_lowercase().str.slice(0, 1)
+    hour = pl.when(half.is_null()).then(hour).otherwise(hour % 12 + pl.when(half == "p").then(12).otherwise(0))
     # A date that the calendar does not have stays null, and with it the stamp.
     days = pl.when(year.is_null()).then(0).otherwise(_days(year, month=month, day=day))
     zone = pl.col("zone").str.replace_all("[Z:]", "")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -21,6 +22,29 @@ _STEP = 0.05
 """Share of the largest reference from which on it has moved."""
 _REST = 0.05
 """Share of the step that the start may be off rest."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class LoggedStep:
+    """A step as a log holds it, and where in time it is."""
+
+    name: str
+    """Of the log."""
+    time: Array
+    """From the log's first sample on [s], shape (n,)."""
+    speed: Array
+    """[rad/s], shape (n,)."""
+    signals: Mapping[SignalName, Array]
+    """All that the log holds, SI, each of shape (n,)."""
+    duty: Duty
+    """The duty that the log shows; its instants count from the log's first sample."""
+    has_reference: bool
+    """Whether the duty was read off a logged reference; without one it is the sheet's."""
+    remarks: tuple[str, ...]
+
+    def shift_to(self, duty: Duty) -> float:
+        """What is added to the log's time, so that its step begins with that of a duty [s]."""
+        return duty.reference_at - self.duty.reference_at if self.has_reference else 0.0
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -77,19 +101,76 @@ def check_step(sheet: Sheet, log: Log) -> StepCheck:
     LogError
         If there is no motion in the log, no step in its reference, or no response to lay it over.
     """
-    record = prepare(log)
-    stage = sheet.rig.stage
+    return check_logged_step(sheet, logged_step(sheet, prepare(log)))
+
+
+def logged_step(sheet: Sheet, record: Record) -> LoggedStep:
+    """Find the step in a log, without a prediction to lay it over.
+
+    Parameters
+    ----------
+    sheet : Sheet
+        Its duty stands for the one that the log shows where the log has no reference.
+    record : Record
+        The log as :func:`check_step` takes it, on its even grid.
+
+    Returns
+    -------
+    LoggedStep
+        SI.
+
+    Raises
+    ------
+    LogError
+        If there is no motion in the log, or no step in its reference.
+    """
+    interrupted = record.bounds.size > 2
+    if interrupted:
+        record = _first_piece(record)
     measured = _speed(record)
-    time = record.step * np.arange(record.size)
     duty, remarks = _duty(sheet, record, measured)
+    if interrupted:
+        remarks.append(f"the log is interrupted: only its first {record.length:.4g} s were taken")
+    return LoggedStep(
+        name=record.name,
+        time=np.arange(record.size, dtype=np.float64) * record.step,
+        speed=measured,
+        signals=record.signals,
+        duty=duty,
+        has_reference=record.has(SignalName.SPEED_REFERENCE),
+        remarks=tuple(remarks),
+    )
+
+
+def check_logged_step(sheet: Sheet, step: LoggedStep) -> StepCheck:
+    """Lay a step that was found in a log over the one that the sheet predicts for its duty.
+
+    Parameters
+    ----------
+    sheet : Sheet
+        Its aims give the gains that the log should have been recorded with.
+    step : LoggedStep
+        From :func:`logged_step`.
+
+    Returns
+    -------
+    StepCheck
+        SI.
+
+    Raises
+    ------
+    LogError
+        If the sheet predicts no response to lay it over.
+    """
+    stage, duty, time, remarks = sheet.rig.stage, step.duty, step.time, list(step.remarks)
     assessment = assess(replace(sheet, duty=duty))
     if assessment.response is None:
         raise LogError(
-            f"{log.name}: the sheet predicts no response to lay this log over: see the findings of its assessment"
+            f"{step.name}: the sheet predicts no response to lay this log over: see the findings of its assessment"
         )
     trace = assessment.response.trace
-    at_ticks = np.interp(trace.time, time, measured)
-    current = record.signals.get(SignalName.CURRENT)
+    at_ticks = np.interp(trace.time, time, step.speed)
+    current = step.signals.get(SignalName.CURRENT)
     current_at_ticks = None if current is None else np.interp(trace.time, time, current)
     plan = schedule(duty, stage)
     found = speed_figures(at_ticks, trace.reference, duty=duty, plan=plan, stage=stage)
@@ -119,6 +200,16 @@ def check_step(sheet: Sheet, log: Log) -> StepCheck:
         measured_figures=measured_figures,
         predicted_figures=predicted_figures,
         outcome=Outcome(fit_percent=100.0 * (1.0 - off / around) if around > 0.0 else None, remarks=tuple(remarks)),
+    )
+
+
+def _first_piece(record: Record) -> Record:
+    """Up to the first gap: what follows it has moved in time."""
+    end = int(record.bounds[1])
+    return replace(
+        record,
+        bounds=record.bounds[:2],
+        signals={name: values[:end] for name, values in record.signals.items()},
     )
 
 

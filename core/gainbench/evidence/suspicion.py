@@ -83,3 +83,22 @@ def samples_on_limit(values: NDArray[np.float64], limit: float) -> int:
     runs = edges[1::2] - edges[::2]
     sitting = int(runs[runs >= _LONG_RUN].sum())
     return sitting if sitting >= max(_LEAST_SAMPLES, _LEAST_SHARE * values.size) else 0
+
+
+def cut_off(values: NDArray[np.float64]) -> NDArray[np.bool_]:
+    """Which samples of a measured signal are cut off at its largest or smallest value.
+
+    Parameters
+    ----------
+    values : ndarray, shape (n,)
+        In the signal's unit.
+
+    Returns
+    -------
+    ndarray of bool, shape (n,)
+    """
+    found = np.zeros(values.size, dtype=np.bool_)
+    for limit in (float(values.max()), float(values.min())):
+        if samples_on_limit(values, limit):
+            found |= values == limit
+    return found

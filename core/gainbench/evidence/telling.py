@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
 
 from gainbench.evidence.confidence import quantile
-from gainbench.evidence.estimate import Ratio, Told
+from gainbench.evidence.estimate import EstimateName, Ratio, Told
 from gainbench.evidence.output_error import Fit
 
 Array = NDArray[np.float64]
@@ -69,6 +69,17 @@ def tell(
         if index not in kept
     ]
     return told, remarks
+
+
+def without(told: Told, names: Collection[EstimateName]) -> Told:
+    """The same but for some estimates."""
+    kept = [index for index, ratio in enumerate(told.ratios) if ratio.of not in names]
+    return Told(
+        ratios=tuple(told.ratios[index] for index in kept),
+        values=told.values[kept],
+        covariance=told.covariance[np.ix_(kept, kept)],
+        spare=told.spare,
+    )
 
 
 def _around(value: float, half: float) -> str:

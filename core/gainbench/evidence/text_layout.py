@@ -21,7 +21,7 @@ BLANKS = " "
 """As a separator: any run of blanks."""
 _SEPARATORS = ("\t", ";", ",", "|", BLANKS)
 _COMMENTS = ("//", "#", "%", "!", "*")
-_MOST_LINES = 400
+_MOST_LINES = 250
 _MOST_HEADER_ROWS = 5
 _MOST_FIELDS = 2000
 _MISSING = frozenset(

@@ -14,6 +14,7 @@ from gainbench.evidence.guessing import read_header
 from gainbench.evidence.stamps import nanoseconds
 from gainbench.evidence.text_layout import BLANKS, TextLayout, find_layout
 from gainbench.evidence.text_source import TextSample, as_table_text, sample_text
+from gainbench.evidence.told_rate import period_in
 
 if TYPE_CHECKING:
     from polars import DataType, Series
@@ -27,13 +28,15 @@ _LONG_COUNTER = 15
 class TextTable:
     """A text log whose layout was found out."""
 
-    __slots__ = ("_path", "_sample", "columns", "layout", "rows")
+    __slots__ = ("_path", "_sample", "columns", "layout", "period", "rows")
 
     def __init__(self, path: Path) -> None:
         self._path = path
         self._sample: TextSample = sample_text(path)
         self.layout: TextLayout = find_layout(self._sample, path.name)
         self.columns: tuple[FileColumn, ...] = _columns(self.layout)
+        self.period: float | None = period_in(self._sample.lines[: self.layout.head_lines])
+        """As the lines above the rows tell it [s]; None where they do not."""
         self.rows: int | None = None
         """How many rows there are; None where that takes reading them."""
         if self._sample.whole:

@@ -82,6 +82,8 @@ def run_motion(
     bounds: NDArray[np.int64],
     starts: NDArray[np.float64],
     angle_out: bool,
+    measured: NDArray[np.float64],
+    follow: NDArray[np.float64],
     out: NDArray[np.float64],
 ) -> None:
     """Run every set over every segment, each segment from a start of its own.
@@ -102,6 +104,11 @@ def run_motion(
         Speed [rad/s] and angle [rad] at the first sample of each segment.
     angle_out : bool
         True puts out the angle, False the speed.
+    measured : ndarray, shape (n,)
+        What is put out, as it was measured [rad or rad/s].
+    follow : ndarray, shape (2,)
+        Share of what is measured over what is put out that the speed [1 or 1/s] and the angle [1] are moved by after
+        every sample; zero twice runs the motion freely.
     out : ndarray, shape (n_sets, n)
         Filled.
     """
@@ -115,12 +122,17 @@ def run_motion(
         x = row[BACKWARD_VISCOUS] / inertia * step
         backward_decay = 1.0 - x * first_part(x)
         backward_one, backward_two = first_part(x) * step / inertia, second_part(x) * step * step / inertia
+        follows = follow[0] != 0.0 or follow[1] != 0.0
         for segment in range(bounds.size - 1):
             speed, angle = starts[one, segment, 0], starts[one, segment, 1]
             first, last = bounds[segment], bounds[segment + 1]
             out[one, first] = angle if angle_out else speed
             for k in range(first, last - 1):
                 now = drive[k]
+                if follows:
+                    beside = measured[k] - out[one, k]
+                    speed += follow[0] * beside
+                    angle += follow[1] * beside
                 if speed > 0.0:
                     push = now - row[FORWARD_DRAG]
                     after = speed * forward_decay + push * forward_one

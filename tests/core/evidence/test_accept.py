@@ -54,13 +54,13 @@ def document(request, demo_texts):
 def test_the_plant_of_the_accepted_sheet_is_what_was_estimated(document):
     accepted = accept(document.sheet, identification(), typed=document.typed)
     plant = refer(document.with_values(accepted.values).sheet.rig)
-    why = "five digits are written"
-    assert_quantity(plant.resistance, 0.7, rtol=1e-4, unit="ohm", why=why)
-    assert_quantity(plant.inductance, 5e-4, rtol=1e-4, unit="H", why=why)
-    assert_quantity(plant.back_emf, 0.04, rtol=1e-4, unit="V*s/rad", why=why)
+    why = "four digits are written, of each side of the train"
+    assert_quantity(plant.resistance, 0.7, rtol=5e-4, unit="ohm", why=why)
+    assert_quantity(plant.inductance, 5e-4, rtol=5e-4, unit="H", why=why)
+    assert_quantity(plant.back_emf, 0.04, rtol=5e-4, unit="V*s/rad", why=why)
     assert_quantity(plant.inertia, 1.3e-4, rtol=1e-3, unit="kg*m^2", why=why)
-    assert_quantity(plant.viscous, 5e-5, rtol=1e-4, unit="N*m*s/rad", why=why)
-    assert_quantity(plant.coulomb, 2e-2, rtol=1e-4, unit="N*m", why=why)
+    assert_quantity(plant.viscous, 5e-5, rtol=5e-4, unit="N*m*s/rad", why=why)
+    assert_quantity(plant.coulomb, 2e-2, rtol=5e-4, unit="N*m", why=why)
 
 
 def test_tolerances_are_the_runs_and_notes_say_where_from(document):
@@ -73,6 +73,14 @@ def test_tolerances_are_the_runs_and_notes_say_where_from(document):
     twice = accept(again.sheet, identification(), typed=again.typed)
     assert twice.values["evidence[0].note"] == note
     assert accepted.left_out == (EstimateName.TORQUE_CONSTANT, EstimateName.COULOMB_FRICTION_FORWARD)
+
+
+def test_what_was_accepted_before_stays_in_the_note(document):
+    parts = ({EstimateName.RESISTANCE: 0.7}, {EstimateName.INDUCTANCE: 5e-4}, {EstimateName.RESISTANCE: 0.8})
+    for values in parts:
+        found = accept(document.sheet, identification(values), typed=document.typed)
+        document = document.with_values(found.values)
+    assert document.sheet.evidence[0].note == "cold motor; accepted: resistance, inductance"
 
 
 def test_units_stay_as_the_user_has_them(demo_texts):

@@ -11,12 +11,12 @@ import pytest
 from bench_logs import noisy, run, some_benches, stepped_voltage
 from gainbench.errors import LogError
 from gainbench.evidence.estimate import EstimateName
-from gainbench.evidence.identify import identify
+from gainbench.evidence.identify import fit_turns, identify, is_compiled, put_together, told_by
 from gainbench.evidence.log import Log
 from gainbench.evidence.reading import read_log
 from gainbench.model import Experiment, SignalName
 from gainbench.sheetfile import parse_sheet
-from identified import RATE, TRUE, log_of, sheet_of, some_motion
+from identified import ONE, RATE, TRUE, log_of, sheet_of, some_motion
 from quantities import assert_quantity
 
 EMPS = """
@@ -110,10 +110,13 @@ NAMES = {
 
 
 def test_two_hundred_benches_are_covered_by_their_own_bounds():
-    count, rows = 200, 5000
+    # Four seconds at some twenty levels of either sign, each held for several mechanical time constants: with that the
+    # Cramer-Rao bound of the viscous friction is 0.4 % in the root mean square and 1 % for the worst of these benches.
+    # With 2.5 s of levels that are held half as long it is 0.7 and 1.9 %, and no estimator stays within 2 % in all.
+    count, rows = 200, 8000
     rng = np.random.default_rng(11)
     benches = some_benches(count, rng)
-    motions = run(benches, stepped_voltage(count, rows, RATE, rng=rng), rate=RATE)
+    motions = run(benches, stepped_voltage(count, rows, RATE, rng=rng, held=(0.1, 0.4)), rate=RATE)
     voltage, current = noisy(motions.voltage, 40.0, rng), noisy(motions.current, 40.0, rng)
     speed = noisy(motions.speed, 40.0, rng)
     covered = {name: [] for name in NAMES}
@@ -135,8 +138,10 @@ def test_two_hundred_benches_are_covered_by_their_own_bounds():
             off[name].append(one.value / true - 1.0)
     shares = {name: float(np.mean(one)) for name, one in covered.items()}
     assert all(0.90 <= share <= 0.99 for share in shares.values()), shares
-    typical = {name: float(np.sqrt(np.mean(np.square(one)))) for name, one in off.items()}
-    assert all(one < 0.02 for one in typical.values()), typical
+    within = {name: float(np.mean(np.abs(one) < 0.02)) for name, one in off.items()}
+    assert all(share >= 0.99 for share in within.values()), within
+    worst = {name: float(np.abs(one).max()) for name, one in off.items()}
+    assert all(one < 0.03 for one in worst.values()), worst
 
 
 def test_logs_of_all_kinds_go_together():
@@ -159,3 +164,44 @@ def test_a_sheet_without_evidence_is_told_how_to_get_some():
 def test_logs_and_tables_must_match():
     with pytest.raises(ValueError, match="0 logs for 1"):
         identify(sheet_of(Experiment.DRIVEN), [])
+
+
+def test_logs_told_one_by_one_and_put_together_are_the_same():
+    sheet = sheet_of(Experiment.DRIVEN, Experiment.DRIVEN)
+    logs = [log_of(some_motion(1.0, seed=seed), only=("current", "speed")) for seed in (3, 5)]
+    outcomes = [told_by(sheet, entry, log) for entry, log in zip(sheet.evidence, logs, strict=True)]
+    together = put_together(sheet, logs, outcomes)
+    assert together == identify(sheet, logs)
+    assert together.estimates != identify(replace(sheet, evidence=sheet.evidence[:1]), logs[:1]).estimates
+
+
+def test_a_locked_rotor_lends_its_resistance_to_a_no_load_run():
+    rng = np.random.default_rng(4)
+    time = np.arange(4000) / 20e3
+    voltage = np.where(time * 10.0 % 1.0 < 0.5, 3.0, -3.0)
+    keep = np.exp(-0.6 / 0.9e-3 / 20e3)
+    current = np.zeros(time.size)
+    for k in range(time.size - 1):
+        current[k + 1] = keep * current[k] + (1.0 - keep) * voltage[k] / 0.6
+    held = {SignalName.VOLTAGE: voltage, SignalName.CURRENT: current + 0.02 * rng.standard_normal(time.size)}
+    levels = np.repeat([6.0, 12.0, -6.0, -12.0, 9.0, -9.0], 1000)[None]
+    free = log_of(run(ONE, levels, rate=500.0), only=("voltage", "current", "speed"), decibel=40.0)
+    logs = [free, Log(name="held.csv", time=time, signals=held)]
+    sheet = sheet_of(Experiment.NO_LOAD, Experiment.LOCKED_ROTOR)
+    assert fit_turns(sheet.evidence) == ((1,), (0,))
+    alone = identify(replace(sheet, evidence=sheet.evidence[:1]), logs[:1])
+    both = identify(sheet, logs)
+    name = EstimateName.BACK_EMF_CONSTANT
+    assert_quantity(both.estimates[name].value, TRUE[name.value], rtol=2e-3, unit=name.si, why="a resistance to 1e-3")
+    assert "the sheet's resistance" in " ".join(alone.runs[0].remarks)
+    assert "the other logs' resistance" in " ".join(both.runs[0].remarks)
+    widths = [one.estimates[name].high - one.estimates[name].low for one in (alone, both)]
+    assert widths[1] < 0.1 * widths[0]
+    assert alone.estimates[name].low <= TRUE[name.value] <= alone.estimates[name].high
+
+
+def test_what_is_compiled_is_known(monkeypatch, tmp_path):
+    identify(sheet_of(Experiment.DRIVEN), [log_of(some_motion(), only=("voltage", "current", "speed"))])
+    assert is_compiled()
+    monkeypatch.setenv("NUMBA_CACHE_DIR", str(tmp_path))
+    assert not is_compiled()

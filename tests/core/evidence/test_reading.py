@@ -122,16 +122,35 @@ def test_a_sample_counter_will_do_for_time(written, as_text, run):
 def test_a_unit_that_is_not_the_files_is_told(written, as_text, run):
     path = written(as_text(run, header="t [ms];i [mA];w [rpm]"))
     told = read_log(
-        path, [column("time", "t", "ms"), column("current", "i", "A"), column("speed", "w [rpm]", "rad/s", 0.5)]
+        path, [column("time", "t", "ms"), column("current", "i", "A", 2.0), column("speed", "w [rpm]", "rad/s", 0.5)]
     ).remarks
-    assert told[:2] == (
-        'current: the file gives column "i" in mA, the mapping takes one as A',
+    assert told == (
+        'current: the file gives column "i" in mA, the mapping takes one as 2 A',
         'speed: the file gives column "w [rpm]" in rpm, the mapping takes one as 0.5 rad/s',
     )
-    assert len(told) == 2
     fitting = [column("time", "t", "ms"), column("current", "i", "A", 1e-3), column("speed", "w", "rpm", -1.0)]
     assert read_log(path, fitting).remarks == ()
     assert "the file gives" in read_log(path, [column("time", "t", "ms"), column("angle", "i", "rad")]).remarks[0]
+
+
+def test_another_unit_without_a_scale_is_refused_but_by_place(written, as_text, run, log_refusal):
+    path = written(as_text(run, header="t [ms];i [mA];w [rpm]"))
+    message = log_refusal(path, [column("time", "t", "ms"), column("current", "i", "A")])
+    assert 'write unit = "mA"' in message
+    told = read_log(path, [column("time", "t", "ms"), column("current", "column 2", "A")]).remarks
+    assert told == ('current: the file gives column "column 2" in mA, the mapping takes one as A',)
+
+
+def test_the_number_of_the_row_will_do_for_time(written, as_text, run, log_refusal):
+    path = written("# Sample rate: 2 kHz\n" + as_text(run, header="n;i;w"))
+    log = read_log(path, [column("time", "row", "s", 5e-4), column("speed", "w", "rad/s")])
+    assert_quantity(log.rate, 2e3, rtol=1e-9, unit="Hz", why="rounding of products")
+    assert "scale = 0.0005" in log_refusal(path, [column("time", "row", "s"), column("speed", "w", "rad/s")])
+    assert "scale = 0.0005" in log_refusal(path, [column("speed", "w", "rad/s")])
+    named = written(as_text(run, header="row;i;w"), "named.csv")
+    assert np.array_equal(
+        read_log(named, [column("time", "row", "s"), column("speed", "w", "rad/s")]).time, run[:, 0] - run[0, 0]
+    )
 
 
 def test_the_suggestion_can_be_saved_and_read_with(written, as_text, run, demo_texts):
@@ -154,7 +173,7 @@ def test_columns_of_one_name_are_suggested_by_their_place(written, as_text, run)
 # How the exports of oscilloscopes and loggers are commonly laid out; invented numbers.
 EXPORTS = {
     "preamble": (
-        "Model,X100\nRecord Length,2000\nSample Interval,4e-9\n\nTIME,CH1,CH2\ns,V,A\n",
+        "Model,X100\nRecord Length,2000\nSample Interval,1e-3\n\nTIME,CH1,CH2\ns,V,A\n",
         "{t:.6e},0.{k},1.5{k}",
         [("time", "TIME", "s"), ("voltage", "CH1", "V"), ("current", "CH2", "A")],
         [("time", "TIME", "s"), ("current", "CH2", "A")],

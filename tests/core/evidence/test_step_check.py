@@ -10,7 +10,8 @@ import pytest
 from gainbench.assess import assess
 from gainbench.errors import LogError
 from gainbench.evidence.log import Log
-from gainbench.evidence.step_check import check_step
+from gainbench.evidence.prepared import prepare
+from gainbench.evidence.step_check import check_step, logged_step
 from gainbench.model import Duty, Sheet, SignalName
 from quantities import assert_quantity
 from rigs import fixed_sheet
@@ -46,6 +47,28 @@ def test_a_ramp_and_a_stop_are_read_off_the_reference(sheet):
     ramped = replace(sheet, duty=replace(DUTY, reference_ramp=1000.0, stop_at=0.15))
     found = check_step(sheet, log_of(ramped))
     assert found.outcome.fit_percent > 97.0
+
+
+@pytest.mark.parametrize("reference", [True, False])
+def test_a_logged_step_is_shifted_to_begin_with_that_of_a_duty(sheet, reference):
+    step = logged_step(sheet, prepare(log_of(sheet, reference=reference)))
+    assert_quantity(step.duty.reference_at, DUTY.reference_at, atol=1e-4, unit="s", why="a row of the log")
+    later = replace(DUTY, reference_at=0.03)
+    # Without a logged reference nothing tells where the step is but that the log begins with the duty.
+    moved = 0.03 - step.duty.reference_at if reference else 0.0
+    assert_quantity(step.shift_to(later), moved, atol=1e-12, unit="s", why="one difference")
+    assert set(step.signals) >= {SignalName.SPEED, SignalName.CURRENT}
+
+
+def test_what_follows_a_gap_is_not_laid_over(sheet):
+    log = log_of(sheet)
+    late = log.time[log.time.size // 2]
+    kept = (log.time < late) | (log.time > late + 0.01)
+    cut = Log(name="gap.csv", time=log.time[kept], signals={name: one[kept] for name, one in log.signals.items()})
+    step = logged_step(sheet, prepare(cut))
+    assert_quantity(step.time[-1], late - log.time[0], atol=1e-3, unit="s", why="a row of the log")
+    assert any("interrupted" in one for one in step.remarks)
+    assert check_step(sheet, cut).outcome.fit_percent > 98.0
 
 
 def test_another_drive_fits_worse(sheet):

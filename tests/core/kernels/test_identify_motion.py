@@ -16,7 +16,7 @@ def motion(torque: np.ndarray, speed: float, *, angle: bool, sets: np.ndarray = 
     out = np.empty((1, torque.size))
     bounds = np.array([0, torque.size])
     start = np.array([[[speed, 0.0]]])
-    run_motion(torque[None], STEP, sets, SOURCE, bounds, start, angle, out)
+    run_motion(torque[None], STEP, sets, SOURCE, bounds, start, angle, np.zeros(torque.size), np.zeros(2), out)
     return out[0]
 
 
@@ -70,7 +70,7 @@ def test_sets_and_segments_are_apart():
     out = np.empty((2, 100))
     starts = np.zeros((2, 2, 2))
     starts[:, 1, 0] = -7.0
-    run_motion(torque, STEP, sets, np.array([0, 1]), np.array([0, 40, 100]), starts, False, out)
+    run_motion(torque, STEP, sets, np.array([0, 1]), np.array([0, 40, 100]), starts, False, torque[0], np.zeros(2), out)
     assert_quantity(out[0, :40], motion(torque[0], 0.0, angle=False)[:40], unit="rad/s", why="the same steps")
     assert_quantity(
         out[1, 40:], motion(torque[1], -7.0, angle=False, sets=sets[1:])[:60], unit="rad/s", why="the same steps"
@@ -81,3 +81,12 @@ def test_without_viscous_friction_it_is_uniformly_accelerated():
     found = motion(np.full(100, 0.13), 0.0, angle=True, sets=np.array([[2e-4, 0.0, 0.03, 0.0, 0.03]]))
     t = STEP * np.arange(100)
     assert_quantity(found, 250.0 * t**2, rtol=1e-9, atol=1e-12, unit="rad", why="half of 500 rad/s^2 by t^2")
+
+
+def test_a_motion_that_follows_is_drawn_to_what_was_measured():
+    torque, measured, out = np.zeros(200), np.full(200, 8.0), np.empty((1, 200))
+    free = np.array([[2e-4, 0.0, 0.0, 0.0, 0.0]])
+    run_motion(torque[None], STEP, free, SOURCE, np.array([0, 200]), np.zeros((1, 1, 2)), False, measured,
+               np.array([0.1, 0.0]), out)  # fmt: skip
+    expected = 8.0 * (1.0 - 0.9 ** np.arange(200))
+    assert_quantity(out[0], expected, atol=1e-9, unit="rad/s", why="a tenth of what is left at every sample")
