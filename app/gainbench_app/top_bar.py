@@ -40,6 +40,7 @@ class TopBar(QWidget):
         self.open.setToolTip("open a bench sheet (Ctrl+O); one can be dropped on the window as well")
         self.save = QPushButton("Save")
         self.save.setToolTip("save the bench sheet (Ctrl+S)")
+        self.evidence = QPushButton("Evidence")
         self.keep = QPushButton("Keep this tuning")
         self.keep.setToolTip("put the gains in force on the shelf, under a name (Ctrl+K)")
         self.handover = QPushButton("Handover")
@@ -50,9 +51,10 @@ class TopBar(QWidget):
         line.addWidget(self.saved)
         line.addStretch(1)
         line.addWidget(self.reason)
-        for button in (self.open, self.save, self.keep, self.handover, self.more):
+        for button in (self.open, self.save, self.evidence, self.keep, self.handover, self.more):
             line.addWidget(button)
         desk.changed.connect(self.refresh)
+        self.show_evidence(False)
         self.refresh()
 
     def refresh(self) -> None:
@@ -72,6 +74,12 @@ class TopBar(QWidget):
             self.saved.setText(f"unsaved since {time.strftime('%H:%M', time.localtime(since))}")
         else:
             self.saved.setText(self._desk.path.name if self._desk.path is not None else "demo sheet, not in a file")
+
+    def show_evidence(self, shown: bool) -> None:
+        """Whether the button leads to the evidence page, or back from it."""
+        self.evidence.setText("Back to tuning" if shown else "Evidence")
+        tip = "go back to what it does and what we ask (Esc, Ctrl+L)"
+        self.evidence.setToolTip(tip if shown else "logs from the bench, and what follows from them (Ctrl+L)")
 
     def show_handover(self, refused: str) -> None:
         """Open or shut the handover, with the reason."""

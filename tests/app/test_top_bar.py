@@ -30,6 +30,13 @@ def test_a_title_that_is_refused_is_marked(bar, desk):
     assert "empty" in bar.title.toolTip()
 
 
+def test_one_button_leads_to_the_evidence_and_back(bar):
+    assert bar.evidence.text() == "Evidence"
+    bar.show_evidence(True)
+    assert bar.evidence.text() == "Back to tuning"
+    assert "Esc" in bar.evidence.toolTip()
+
+
 def test_the_handover_is_shut_and_opened(bar):
     bar.show_handover("no handover: because")
     assert not bar.handover.isEnabled()
