@@ -1,4 +1,4 @@
-"""Demo sheets and logs, recipes, templates and icons, as package data."""
+"""Demo sheets and logs, the guide, templates and icons, as package data."""
 
 from __future__ import annotations
 
@@ -6,6 +6,7 @@ from importlib.resources import files
 from importlib.resources.abc import Traversable
 
 _SUFFIX = ".bench.toml"
+_PAGE = ".md"
 
 
 def demo_sheet_names() -> tuple[str, ...]:
@@ -42,14 +43,46 @@ def demo_log(name: str) -> Traversable:
     return files(__name__) / "logs" / name
 
 
+def guide_pages() -> tuple[str, ...]:
+    """Names of the guide's pages, without ``.md``, in no particular order."""
+    return tuple(sorted(one.name.removesuffix(_PAGE) for one in _guide().iterdir() if one.name.endswith(_PAGE)))
+
+
+def guide_page(name: str) -> Traversable:
+    """A page of the guide as markdown.
+
+    Parameters
+    ----------
+    name : str
+        One of :func:`guide_pages`.
+
+    Returns
+    -------
+    Traversable
+        Its place in the package.
+
+    Raises
+    ------
+    KeyError
+        If there is no page of that name.
+    """
+    if name not in guide_pages():
+        raise KeyError(name)
+    return _guide() / f"{name}{_PAGE}"
+
+
 def recipe(experiment: str) -> Traversable:
     """The guide's recipe for an experiment as markdown, by the word that the sheet has for it, ``locked-rotor``."""
-    return files(__name__) / "guide" / f"{experiment}.md"
+    return _guide() / f"{experiment}{_PAGE}"
 
 
 def template(name: str) -> Traversable:
     """The file of a template; ``read_text(encoding="utf-8")`` gives its text."""
     return files(__name__) / "templates" / name
+
+
+def _guide() -> Traversable:
+    return files(__name__) / "guide"
 
 
 def _sheets() -> Traversable:

@@ -6,9 +6,11 @@ import pytest
 
 from demo_log import TRUE
 from demo_log import demo_log as made
+from demo_step_log import demo_step_log as made_step
 from gainbench.evidence.estimate import EstimateName
 from gainbench.evidence.identify import identify
 from gainbench.evidence.reading import read_log
+from gainbench.evidence.step_check import check_step
 from gainbench.model import Experiment
 from gainbench.sheetfile import parse_sheet
 from gainbench_resources import demo_log, demo_sheet, demo_sheet_names, recipe
@@ -24,6 +26,18 @@ time = {{ column = "time [s]", unit = "s" }}
 voltage = {{ column = "voltage [V]", unit = "V" }}
 current = {{ column = "current [A]", unit = "A" }}
 angle = {{ column = "angle [deg]", unit = "deg" }}
+"""
+STEP = "label-unwinder-step.csv"
+STEP_EVIDENCE = f"""
+[[evidence]]
+log = "{STEP}"
+experiment = "step-check"
+[evidence.columns]
+time = {{ column = "time [ms]", unit = "ms" }}
+speed_reference = {{ column = "reference [rpm]", unit = "rpm" }}
+speed = {{ column = "speed [rpm]", unit = "rpm" }}
+current = {{ column = "current [A]", unit = "A" }}
+voltage = {{ column = "voltage [V]", unit = "V" }}
 """
 
 
@@ -70,3 +84,13 @@ def test_every_experiment_has_its_recipe():
         assert text.startswith("# ")
         assert "## What it cannot tell" in text
         assert "## How to run it" in text
+
+
+def test_the_demo_step_is_what_its_script_makes_and_lies_near_the_prediction(tmp_path):
+    text = demo_log(STEP).read_text(encoding="utf-8")
+    assert text == made_step()
+    (tmp_path / STEP).write_text(text, encoding="utf-8")
+    sheet = parse_sheet(demo_sheet("label-unwinder").read_text(encoding="utf-8") + STEP_EVIDENCE, "x.bench.toml").sheet
+    found = check_step(sheet, read_log(tmp_path / STEP, sheet.evidence[0].columns))
+    assert found.outcome.fit_percent > 90.0
+    assert found.measured_figures.rise_time_s > found.predicted_figures.rise_time_s
