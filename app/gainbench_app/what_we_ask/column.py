@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import Signal
+from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
 from gainbench_app.desk import Desk
@@ -30,10 +30,14 @@ class WhatWeAsk(QWidget):
         self.findings.followed.connect(self.point_at)
         layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)
-        layout.setSpacing(8)
+        layout.setSpacing(6)
         for card in (self.speed, self.current, self.findings, self.firmware):
             layout.addWidget(card)
         layout.addStretch(1)
+        # A finding that comes makes the column longer at once and leaves what stands above it alone: else all cards are
+        # squeezed and painted, and painted once more when the column has grown.
+        layout.setSizeConstraint(QVBoxLayout.SizeConstraint.SetMinimumSize)
+        self.setAttribute(Qt.WidgetAttribute.WA_StaticContents)
 
     def point_at(self, path: str) -> None:
         """Bring an entry to the eye and the keyboard; one of another column is told."""
@@ -48,7 +52,7 @@ class WhatWeAsk(QWidget):
             return
         card = self.current if part == "current" else self.speed
         card.head.setChecked(True)
-        if key in {"crossover", "phase_margin"} and card.map.view is not None and card.map.view.asked:
+        if key in {"crossover", "bandwidth", "phase_margin"} and card.map.view is not None and card.map.view.asked:
             reveal(card.map)
         else:
             reveal(card.row(key).box if key in card.target_keys else card.method)

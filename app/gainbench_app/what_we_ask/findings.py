@@ -1,4 +1,4 @@
-"""The findings: each with its shape, its statement, its reason and what to try next, and a way there."""
+"""The findings: each with its shape and its statement, and one press away its reason, what to try next, a way there."""
 
 from __future__ import annotations
 
@@ -6,34 +6,43 @@ import re
 
 from PySide6.QtCore import QEvent, QRectF, Qt, Signal
 from PySide6.QtGui import QColor, QEnterEvent, QFocusEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent, QPen
-from PySide6.QtWidgets import QHBoxLayout, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QPushButton, QSizePolicy, QVBoxLayout, QWidget
 
 from gainbench.model import Sheet
-from gainbench.results import Finding
+from gainbench.results import Finding, Level
 from gainbench_app.desk import Desk
+from gainbench_app.theme import SMALL_PX
 from gainbench_app.what_we_ask.finding_links import what_to_move
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.card import Card
 from gainbench_app.widgets.level_mark import WORDS, LevelMark
+from gainbench_app.widgets.revealing import reveal
 from gainbench_app.widgets.wrapped_text import WrappedText
 
 _UNIT = re.compile(r"(?<=\d) (?=(?:%|°|[GMkmµ]?[A-Za-z]{1,3})\b|%)")
 _MICRO = re.compile(r"(\d )us\b")
+_DEGREES = re.compile(r"(?<=\d) deg\b")
 
 
 class FindingRow(QWidget):
-    """One finding; it is filled anew rather than made anew."""
+    """One finding: its statement in sight, its reason and the way to its entry when it is open.
+
+    It is filled anew rather than made anew.
+    """
 
     followed = Signal()
+    toggled = Signal(bool)
+    """The reader has opened or closed it."""
 
     def __init__(self, appearance: Appearance, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self._appearance = appearance
+        self._leads_to = ""
         self.finding: Finding | None = None
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setCursor(Qt.CursorShape.PointingHandCursor)
         line = QHBoxLayout(self)
-        line.setContentsMargins(0, 3, 0, 4)
+        line.setContentsMargins(0, 2, 0, 3)
         line.setSpacing(8)
         self.mark = LevelMark(appearance, size=11)
         line.addWidget(self.mark, 0, Qt.AlignmentFlag.AlignTop)
@@ -41,32 +50,71 @@ class FindingRow(QWidget):
         column.setSpacing(1)
         self.title = WrappedText(appearance, strong=True)
         self.reason = WrappedText(appearance)
+        self.way = QPushButton()
+        self.way.setProperty("flat", True)
+        self.way.setSizePolicy(QSizePolicy.Policy.Fixed, QSizePolicy.Policy.Fixed)
+        self.way.setCursor(Qt.CursorShape.PointingHandCursor)
+        self.way.setStyleSheet(f"font-size: {SMALL_PX}px; padding: 1px 0; text-decoration: underline;")
+        self.way.clicked.connect(self.followed)
         column.addWidget(self.title)
         column.addWidget(self.reason)
+        column.addWidget(self.way, 0, Qt.AlignmentFlag.AlignLeft)
+        self.reason.hide()
+        self.way.hide()
         line.addLayout(column, 1)
 
-    def show_finding(self, finding: Finding, *, sheet: Sheet) -> None:
+    @property
+    def is_open(self) -> bool:
+        """Whether the reason is in sight."""
+        return not self.reason.isHidden()
+
+    def show_finding(self, finding: Finding, *, sheet: Sheet, opened: bool) -> None:
         """Show another finding, and what it leads to in a sheet."""
-        if finding == self.finding:
-            return
-        self.finding = finding
-        self.setToolTip(f"Enter or a click goes to {what_to_move(finding, sheet)}")
-        self.mark.show_level(finding.level)
-        self.title.setText(_set(finding.title))
-        reason = " ".join(f"{part[0].upper()}{part[1:]}." for part in (finding.reason, finding.advice) if part)
-        self.reason.setText(_set(reason))
-        self.setAccessibleName(f"{WORDS[finding.level]}: {finding.title}")
-        self.setAccessibleDescription(reason)
+        if finding != self.finding:
+            self.finding = finding
+            self._leads_to = what_to_move(finding, sheet)
+            self.mark.show_level(finding.level)
+            self.title.setText(_set(finding.title))
+            self.reason.setText(_set(self._words(finding)))
+            self.way.setText(f"go to {_told(self._leads_to)}")
+            self.way.setAccessibleName(f"go to {_told(self._leads_to)}, which this finding asks to move")
+            self.setAccessibleDescription(f"{self._words(finding)} Return goes to {_told(self._leads_to)}.")
+            self._tell()
+        self.open(opened)
+
+    def _words(self, finding: Finding) -> str:
+        return " ".join(f"{part[0].upper()}{part[1:]}." for part in (finding.reason, finding.advice) if part)
+
+    def _tell(self) -> None:
+        if self.finding is not None:
+            state = "open" if self.is_open else "closed"
+            self.setAccessibleName(f"{WORDS[self.finding.level]}: {self.finding.title}, {state}")
+            act = "close it" if self.is_open else "say why"
+            self.setToolTip(f"Space or a click: {act}; Enter: go to {_told(self._leads_to)}")
+
+    def open(self, opened: bool) -> None:
+        """Bring the reason in sight, or take it away."""
+        if opened is not self.is_open:
+            self.reason.setVisible(opened)
+            self.way.setVisible(opened)
+            self._tell()
+            self.update()
+
+    def _toggle(self) -> None:
+        self.open(not self.is_open)
+        self.toggled.emit(self.is_open)
 
     def mouseReleaseEvent(self, event: QMouseEvent) -> None:  # noqa: N802
-        """A click goes there."""
+        """A click opens or closes it."""
         if event.button() == Qt.MouseButton.LeftButton and self.rect().contains(event.position().toPoint()):
-            self.followed.emit()
+            self._toggle()
 
     def keyPressEvent(self, event: QKeyEvent) -> None:  # noqa: N802
-        """Enter or the space bar go there."""
-        if event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter, Qt.Key.Key_Space):
+        """The space bar opens or closes it, Enter goes to its entry."""
+        if event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter):
             self.followed.emit()
+        elif event.key() == Qt.Key.Key_Space:
+            self._toggle()
         else:
             event.ignore()
 
@@ -102,12 +150,21 @@ class FindingRow(QWidget):
 
 
 def _set(text: str) -> str:
-    """Numbers kept with their units, and microseconds as they are written."""
-    return _UNIT.sub("\N{NO-BREAK SPACE}", _MICRO.sub("\\1\N{MICRO SIGN}s", text))
+    """Numbers kept with their units, angles and microseconds as they are written."""
+    return _UNIT.sub("\N{NO-BREAK SPACE}", _MICRO.sub("\\1\N{MICRO SIGN}s", _DEGREES.sub("\N{DEGREE SIGN}", text)))
+
+
+def _told(path: str) -> str:
+    """An entry, or a table, in the words of people."""
+    table, _, key = path.rpartition(".")
+    if not table:
+        return f"the {key}"
+    owner = table.removeprefix("aims.") + (" loop" if table in {"aims.current", "aims.speed"} else "")
+    return f"the {owner}'s {key.replace('_', ' ')}"
 
 
 class FindingsCard(Card):
-    """All findings, the worst first."""
+    """All findings, the worst first, each a line or two; what breaks is open until it is closed."""
 
     followed = Signal(str)
     """Where a finding leads: a path of the sheet, or the name of a table."""
@@ -117,19 +174,42 @@ class FindingsCard(Card):
         self._desk = desk
         self._appearance = appearance
         self._found: list[FindingRow] = []
+        self._chosen: dict[tuple[str, str], bool] = {}
+        """What the reader has opened and closed, by code and subject."""
         self.rows.setSpacing(2)
+        outer = self.layout()
+        assert outer is not None
+        outer.setContentsMargins(11, 5, 11, 8)
+        self.all = QPushButton("open all")
+        self.all.setProperty("flat", True)
+        self.all.setAccessibleName("open all findings, or close them")
+        self.all.setToolTip("say the reasons of all findings, or of none")
+        self.all.clicked.connect(self._open_all)
+        self.head_line.addWidget(self.all)
         desk.assessed.connect(self.refresh)
-        desk.opened.connect(self.refresh)
+        desk.opened.connect(self._open_sheet)
         self.refresh()
 
     @property
     def shown(self) -> tuple[Finding, ...]:
         """The findings as they stand."""
-        return tuple(row.finding for row in self._found if row.finding is not None and not row.isHidden())
+        return tuple(row.finding for row in self._present() if row.finding is not None)
 
     def row(self, index: int) -> FindingRow:
         """The row of a finding, from the top."""
         return self._found[index]
+
+    def go(self) -> None:
+        """Bring the worst finding to the eye and the keyboard."""
+        for row in self._present()[:1]:
+            reveal(row)
+
+    def _present(self) -> list[FindingRow]:
+        return [row for row in self._found if not row.isHidden()]
+
+    def _open_sheet(self) -> None:
+        self._chosen.clear()
+        self.refresh()
 
     def refresh(self) -> None:
         """Show the newest assessment's findings."""
@@ -138,12 +218,34 @@ class FindingsCard(Card):
         while len(self._found) < len(findings):
             row = FindingRow(self._appearance)
             row.followed.connect(lambda row=row: self._follow(row))
+            row.toggled.connect(lambda opened, row=row: self._remember(row, opened))
             self.rows.addWidget(row)
             self._found.append(row)
         for index, row in enumerate(self._found):
             if index < len(findings):
-                row.show_finding(findings[index], sheet=self._desk.sheet)
+                one = findings[index]
+                opened = self._chosen.get((one.code, one.subject), one.level is Level.BREAKS)
+                row.show_finding(one, sheet=self._desk.sheet, opened=opened)
             row.setVisible(index < len(findings))
+        self._tell()
+
+    def _remember(self, row: FindingRow, opened: bool) -> None:
+        if row.finding is not None:
+            self._chosen[row.finding.code, row.finding.subject] = opened
+        self._tell()
+
+    def _tell(self) -> None:
+        present = self._present()
+        words = "close all" if present and all(row.is_open for row in present) else "open all"
+        if self.all.text() != words:
+            self.all.setText(words)
+        self.all.setVisible(bool(present))
+
+    def _open_all(self) -> None:
+        opened = self.all.text() == "open all"
+        for row in self._present():
+            row.open(opened)
+            self._remember(row, opened)
 
     def _follow(self, row: FindingRow) -> None:
         if row.finding is not None:

@@ -50,6 +50,7 @@ class FirmwareCard(Card):
     def __init__(self, desk: Desk, appearance: Appearance, parent: QWidget | None = None) -> None:
         super().__init__("Firmware", appearance, parent=parent)
         self._desk = desk
+        self._shown: tuple[object, ...] = ()
         self._entry_rows = {entry.path: EntryRow(entry, appearance, box_width=140) for entry in ENTRIES}
         for row in self._entry_rows.values():
             row.tolerance.setVisible(False)
@@ -64,7 +65,12 @@ class FirmwareCard(Card):
         return self._entry_rows[f"{_PATH}.{key}"]
 
     def refresh(self) -> None:
-        """Show what the sheet holds."""
+        """Show what the sheet holds; no slider moves anything of it."""
+        state = self._desk.state
+        present = (state.document, state.wrong, state.problems)
+        if len(present) == len(self._shown) and all(a is b for a, b in zip(present, self._shown, strict=True)):
+            return
+        self._shown = present
         for path, row in self._entry_rows.items():
             row.show_entry(self._desk.text(path), self._desk.problem(path), None)
             if self._desk.problem(path) is not None:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from PySide6.QtCore import QTimer
 from PySide6.QtWidgets import QHBoxLayout, QPushButton, QSizePolicy, QVBoxLayout, QWidget
 
@@ -15,7 +17,8 @@ from gainbench_app.desk import Desk
 from gainbench_app.live import Readiness
 from gainbench_app.sheet_edits import loop_aims
 from gainbench_app.theme import LARGE_PX
-from gainbench_app.what_we_ask.reach_view import KeptPoints, ReachKeeper, asks_for_a_point
+from gainbench_app.what_we_ask.map_targets import asks_for_a_point, targets_at
+from gainbench_app.what_we_ask.reach_view import KeptPoints, ReachKeeper
 from gainbench_app.what_we_ask.target_row import TargetRow
 from gainbench_app.what_we_ask.targets import METHOD_NAMES, targets
 from gainbench_app.widgets.appearance import Appearance
@@ -45,6 +48,10 @@ class LoopCard(Card):
         self._desk = desk
         self._appearance = appearance
         self._target_rows: dict[str, TargetRow] = {}
+        self._asked: tuple[object, ...] = ()
+        """What ``refresh`` has shown."""
+        self._got: tuple[object, ...] = ()
+        """What ``show_assessment`` has."""
         self.mark = LevelMark(appearance, size=10)
         self.hold = CheckBox("hold gains", f"hold the gains of the {loop} loop", appearance)
         self.hold.setToolTip("keep these gains while machine, train and stage are edited; the method waits")
@@ -66,11 +73,12 @@ class LoopCard(Card):
         line.addWidget(self.method, 1)
         line.addWidget(self.by_hand)
         self.rows.addLayout(line)
-        self.rows.setSpacing(4)
+        self.rows.setSpacing(3)
         self.map = ReachPlot(loop, appearance)
         self._keeper = ReachKeeper(loop, kept)
         self.map.grabbed.connect(lambda: desk.begin_gesture(f"aims.{loop}"))
         self.map.moved.connect(self._move)
+        self.map.stepped.connect(lambda bandwidth, margin: self._ask({"bandwidth": bandwidth, "phase_margin": margin}))
         self.map.dropped.connect(desk.end_gesture)
         self.map.dropped.connect(lambda: self._show_map())
         self._resting = QTimer(self)
@@ -86,12 +94,16 @@ class LoopCard(Card):
         self._pair.setSpacing(10)
         self._targets.addLayout(self._pair)
         self.rows.addLayout(self._targets)
-        self.figures = WordLine(f"figures of the {loop} loop", appearance, line_px=32, tells_moves=True)
-        self.others = WordLine(f"more figures of the {loop} loop", appearance, lines=2, line_px=16, tells_moves=True)
+        self.figures = WordLine(f"figures of the {loop} loop", appearance, line_px=30, tells_moves=True)
+        self.others = WordLine(f"more figures of the {loop} loop", appearance, lines=2, line_px=15, tells_moves=True)
         self.gains = WordLine(f"gains of the {loop} loop, in the firmware's form", appearance, tells_moves=True)
         outer = self.layout()
         assert isinstance(outer, QVBoxLayout)
+        # What is asked stands above the findings, which are to be in sight as well.
+        outer.setContentsMargins(11, 5, 11, 7)
+        outer.setSpacing(1)
         large = QHBoxLayout()
+        large.setContentsMargins(0, 2, 0, 0)
         large.setSpacing(6)
         large.addWidget(self.figures, 1)
         self.others.setSizePolicy(QSizePolicy.Policy.Fixed, QSizePolicy.Policy.Fixed)
@@ -100,6 +112,7 @@ class LoopCard(Card):
         outer.addLayout(large)
         outer.addWidget(self.gains)
         desk.changed.connect(self.refresh)
+        desk.number_moved.connect(self._follow)
         desk.assessed.connect(self.show_assessment)
         self.refresh()
         self.show_assessment()
@@ -114,7 +127,12 @@ class LoopCard(Card):
         return tuple(path.rpartition(".")[2] for path in self._target_rows)
 
     def refresh(self) -> None:
-        """Show what the sheet asks."""
+        """Show what the sheet asks; what the other loop asks moves nothing here."""
+        state, held = self._desk.state, self._desk.held(self.loop)
+        own = (state.document, state.wrong, state.problems, state.sheet.rig, loop_aims(state.sheet, self.loop), held)
+        if len(own) == len(self._asked) and all(a is b for a, b in zip(own, self._asked, strict=True)):
+            return
+        self._asked = own
         path = f"aims.{self.loop}"
         self.method.show_word(self._desk.text(f"{path}.method"))
         self.method.mark(self._desk.problem(f"{path}.method") or "")
@@ -133,20 +151,41 @@ class LoopCard(Card):
             alone = [row for row in self._target_rows.values() if not row.paired]
             for row in alone:
                 row.name.setFixedWidth(max(one.name.sizeHint().width() for one in alone))
-        held = self._desk.held(self.loop)
         for target in wanted:
             self._target_rows[target.path].refresh(target, held=held)
         if self.hold.isChecked() is not held:
             self.hold.setChecked(held)
-        aims, view = loop_aims(sheet, self.loop), self.map.view
-        if view is not None and view.asked and aims.crossover is not None and aims.phase_margin is not None:
-            self.map.show_point(aims.crossover, aims.phase_margin)
+        self._follow_on_map()
+
+    def _follow(self, path: str) -> None:
+        """Steps that come faster than frames add up, so that what moved is shown at once; all else waits."""
+        row = self._target_rows.get(path)
+        if row is not None:
+            self._asked = ()
+            row.follow()
+            self._follow_on_map()
+
+    def _follow_on_map(self) -> None:
+        aims, view = loop_aims(self._desk.sheet, self.loop), self.map.view
+        if view is not None and view.asked and aims.phase_margin is not None:
+            if aims.method is DesignMethod.BANDWIDTH_MARGIN and aims.bandwidth is not None:
+                self.map.show_asked(aims.bandwidth, aims.phase_margin)
+            elif aims.method is DesignMethod.CROSSOVER_MARGIN and aims.crossover is not None:
+                self.map.show_point(aims.crossover, aims.phase_margin)
 
     def _move(self, crossover: float, margin: float) -> None:
-        """Move what the map asks for, and leave alone what it leaves alone."""
+        """Move the method's targets to a place of the map."""
+        sampled, view = self._keeper.sampled, self.map.view
+        if sampled is not None and view is not None:
+            method = loop_aims(self._desk.sheet, self.loop).method
+            here = view.point if view.met else None
+            self._ask(targets_at(method, sampled, crossover=crossover, margin=margin, here=here))
+
+    def _ask(self, targets: Mapping[str, float]) -> None:
+        """Move targets together, and leave alone what stays."""
         aims, path = loop_aims(self._desk.sheet, self.loop), f"aims.{self.loop}"
-        asked = {"crossover": (crossover, aims.crossover), "phase_margin": (margin, aims.phase_margin)}
-        self._desk.move_all(path, {f"{path}.{key}": one for key, (one, before) in asked.items() if one != before})
+        moves = {f"{path}.{key}": one for key, one in targets.items() if one != getattr(aims, key)}
+        self._desk.move_all(path, moves)
 
     def _show_map(self, *, quick: bool = True) -> None:
         assessment = self._desk.assessment
@@ -171,12 +210,17 @@ class LoopCard(Card):
             for line in (self.figures, self.others, self.gains):
                 line.show_pieces()
             self._show_mark(None)
+            self._got = ()
             return
         loop = self._loop_of(assessment)
         self.hold.setEnabled(loop.gains is not None)
-        self._show_figures(loop)
         self._show_level(assessment, loop)
-        self.gains.show_pieces(self._gain_pieces(assessment, loop))
+        sheet = assessment.sheet
+        got = (loop.gains, loop.figures, loop.refusal, sheet.rig, sheet.aims.firmware)
+        if got != self._got:
+            self._got = got
+            self._show_figures(loop)
+            self.gains.show_pieces(self._gain_pieces(assessment, loop))
 
     def _loop_of(self, assessment: Assessment) -> LoopAssessment:
         return assessment.current if self.loop == "current" else assessment.speed

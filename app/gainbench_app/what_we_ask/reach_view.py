@@ -11,10 +11,12 @@ import numpy as np
 from gainbench.assess import Assessment, assess
 from gainbench.assessed import LoopName, assessed_loop
 from gainbench.kept import with_kept
-from gainbench.model import DesignMethod, KeptTuning
+from gainbench.model import KeptTuning
 from gainbench.reach import ReachArea, ReachMap, reach_areas, reach_map
 from gainbench.results import LoopAssessment
+from gainbench.sampling import Loop
 from gainbench_app.sheet_edits import loop_aims
+from gainbench_app.what_we_ask.map_targets import asked_point
 from gainbench_app.widgets.map_view import MapPoint, MapView
 from gainbench_app.widgets.scales import Range
 
@@ -72,6 +74,14 @@ class ReachKeeper:
         self._whole = False
         self._wanted: tuple[float, float] = (1.0, 10.0)
         self._ranges: tuple[Range, Range] | None = None
+        self._sampled: Loop | None = None
+        self._met: MapPoint | None = None
+        """The last point that could be met."""
+
+    @property
+    def sampled(self) -> Loop | None:
+        """The loop that the map is of; None where there is no map."""
+        return self._sampled
 
     @property
     def whole(self) -> bool:
@@ -86,7 +96,7 @@ class ReachKeeper:
         assessment : Assessment
             The newest.
         asked : bool
-            Whether the point may be dragged: the method asks for a crossover and a margin, and gains are not held.
+            Whether the point may be dragged: the method asks for one, and gains are not held.
         still : bool
             Keeps the axes where they are, as while the point is dragged.
         quick : bool
@@ -121,7 +131,7 @@ class ReachKeeper:
         if key == self._of and (quick or self._whole):
             return
         self._of, self._whole = key, not quick
-        loop = assessed_loop(assessment, self._loop)
+        loop = self._sampled = assessed_loop(assessment, self._loop)
         if loop is None:
             self._areas = ()
             return
@@ -138,9 +148,10 @@ class ReachKeeper:
 
     def _point(self, assessment: Assessment, own: LoopAssessment, *, asked: bool) -> MapPoint | None:
         aims = loop_aims(assessment.sheet, self._loop)
-        if asked and aims.crossover is not None and aims.phase_margin is not None:
-            return MapPoint(crossover=aims.crossover, margin=aims.phase_margin)
-        return reached(own)
+        point = asked_point(aims, own, before=self._met) if asked else None
+        if point is not None and own.refusal is None:
+            self._met = point
+        return point if point is not None else reached(own)
 
     def _ranges_for(self, points: Sequence[MapPoint]) -> tuple[Range, Range]:
         low, high = self._wanted
@@ -161,11 +172,6 @@ def reached(loop: LoopAssessment, *, name: str = "") -> MapPoint | None:
     if figures is None or figures.crossover_hz is None or figures.phase_margin_deg is None:
         return None
     return MapPoint(crossover=math.tau * figures.crossover_hz, margin=math.radians(figures.phase_margin_deg), name=name)
-
-
-def asks_for_a_point(method: DesignMethod) -> bool:
-    """Whether a method's targets are a point of the map."""
-    return method is DesignMethod.CROSSOVER_MARGIN
 
 
 def _wanted(found: ReachMap) -> tuple[float, float]:

@@ -10,7 +10,7 @@ from gainbench_app.sheet_edits import value_at
 from gainbench_app.what_we_ask.targets import Target
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.slim_slider import SlimSlider
-from gainbench_app.widgets.value_box import ValueBox
+from gainbench_app.widgets.value_box import CardBox
 
 _BOX_PX = {"kp": 112, "ki": 112, "reference_weight": 52, "damping": 60, "spread": 60}
 _USUAL_BOX_PX = 78
@@ -36,7 +36,7 @@ class TargetRow(QWidget):
         self.name.setProperty("role", "small" if target.paired else "muted")
         self.name.setToolTip(f"{target.name}: {target.path}")
         loop = target.path.split(".")[1]
-        self.box = ValueBox(f"{target.name} of the {loop} loop")
+        self.box = CardBox(f"{target.name} of the {loop} loop", appearance)
         if not target.paired:
             self.box.setFixedWidth(_BOX_PX.get(target.key, _USUAL_BOX_PX))
         self.box.committed.connect(self._typed)
@@ -78,20 +78,24 @@ class TargetRow(QWidget):
     def refresh(self, target: Target, *, held: bool = False) -> None:
         """Show what the sheet holds; the target may have moved its ends. With gains held it waits."""
         self.target = target
-        path = target.path
-        text, problem = self._desk.text(path) or "", self._desk.problem(path) or ""
-        self.box.show_text(text)
+        problem = self._desk.problem(target.path) or ""
         self.box.mark(problem)
         if self.reason.text() != problem:
             self.reason.setText(problem)
             self.reason.setVisible(bool(problem))
-        value = value_at(self._desk.sheet, path)
         waits = held and target.key != "reference_weight"
         self.box.setEnabled(not waits)
         self.slider.show_range(target.low, target.high)
-        self.slider.setEnabled(value is not None and not waits)
+        self.slider.setEnabled(self.follow() and not waits)
+
+    def follow(self) -> bool:
+        """Show the number alone, as while it is moved; True where the sheet has one."""
+        path = self.target.path
+        text, value = self._desk.text(path) or "", value_at(self._desk.sheet, path)
+        self.box.show_text(text)
         if value is not None:
             self.slider.show_number(value, text)
+        return value is not None
 
     def _typed(self, text: str) -> None:
         self._desk.set_values({self.target.path: text if text else None})

@@ -62,10 +62,39 @@ def bandwidth_margin(loop: Loop, *, bandwidth: float, margin: float) -> Design:
     )
 
 
+def reached_bandwidth(loop: Loop, crossover: float, *, margin: float) -> float | None:
+    """The bandwidth that a loop has which crosses over here with this margin.
+
+    Parameters
+    ----------
+    loop : Loop
+        Current or speed loop.
+    crossover : float
+        wc [rad/s], > 0.
+    margin : float
+        Phase margin there [rad].
+
+    Returns
+    -------
+    float or None
+        [rad/s]; None where positive gains with a stable loop do not meet the two, where the loop has another crossover
+        before this one, or where ``|L/(1 + L)|`` never falls through ``1/sqrt(2)``.
+    """
+    gains = gains_for(loop, crossover, margin=margin)
+    if gains is None or not holds(loop, gains):
+        return None
+    figures = read_loop(loop, gains).figures
+    if figures.crossover_hz is None or figures.bandwidth_hz is None:
+        return None
+    if abs(figures.crossover_hz * math.tau / crossover - 1.0) > AGREES:
+        return None
+    return figures.bandwidth_hz * math.tau
+
+
 def nearest_bandwidth(loop: Loop, bandwidth: float, *, margin: float) -> float | None:
     """The bandwidth closest to the asked one, by ratio, that can be met with the margin [rad/s]; None if none."""
     grid = crossover_grid(loop)[::COARSE]
-    reached = [(w, _reached(loop, float(w), margin=margin)) for w in grid]
+    reached = [(w, reached_bandwidth(loop, float(w), margin=margin)) for w in grid]
     known = [(float(w), value) for w, value in reached if value is not None]
     if not known:
         return None
@@ -77,7 +106,7 @@ def nearest_bandwidth(loop: Loop, bandwidth: float, *, margin: float) -> float |
     step = float(grid[1] / grid[0])
     while step > 1.0 + 1e-5:
         for w in (best_w * step, best_w / step):
-            value = _reached(loop, w, margin=margin)
+            value = reached_bandwidth(loop, w, margin=margin)
             if value is not None and distance(value) < distance(best):
                 best_w, best = w, value
                 break
@@ -91,23 +120,10 @@ def _crossover_for(loop: Loop, bandwidth: float, *, margin: float) -> float | No
 
     found = crossovers_for_bandwidth(loop.plant, loop.rule, margin, bandwidth, crossover_grid(loop))
     for crossover in found:
-        reached = _reached(loop, float(crossover), margin=margin)
+        reached = reached_bandwidth(loop, float(crossover), margin=margin)
         if reached is not None and abs(reached / bandwidth - 1.0) < AGREES:
             return float(crossover)
     return None
-
-
-def _reached(loop: Loop, crossover: float, *, margin: float) -> float | None:
-    """The bandwidth with this margin at this crossover [rad/s]; None where it is not the loop's own crossover."""
-    gains = gains_for(loop, crossover, margin=margin)
-    if gains is None or not holds(loop, gains):
-        return None
-    figures = read_loop(loop, gains).figures
-    if figures.crossover_hz is None or figures.bandwidth_hz is None:
-        return None
-    if abs(figures.crossover_hz * math.tau / crossover - 1.0) > AGREES:
-        return None
-    return figures.bandwidth_hz * math.tau
 
 
 def _largest_margin(loop: Loop, bandwidth: float) -> float | None:

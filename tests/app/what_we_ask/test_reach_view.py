@@ -5,9 +5,8 @@ import numpy as np
 import pytest
 
 from gainbench.assess import assess
-from gainbench.model import DesignMethod
 from gainbench.sheetfile import parse_sheet
-from gainbench_app.what_we_ask.reach_view import KeptPoints, ReachKeeper, asks_for_a_point, reached
+from gainbench_app.what_we_ask.reach_view import KeptPoints, ReachKeeper, reached
 
 
 def sheet_of(demo_texts, values=None, name="label-unwinder"):
@@ -105,7 +104,6 @@ def test_a_speed_loop_without_a_current_loop_has_no_map(demo_texts):
     assert not view.met
 
 
-def test_only_one_method_asks_for_a_point(demo_texts):
-    assert [one for one in DesignMethod if asks_for_a_point(one)] == [DesignMethod.CROSSOVER_MARGIN]
+def test_a_refused_loop_is_nowhere(demo_texts):
     refused = assess(sheet_of(demo_texts, {"aims.speed.crossover": "900 Hz"}), simulated=False)
     assert reached(refused.speed) is None

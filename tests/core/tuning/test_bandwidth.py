@@ -10,7 +10,7 @@ from gainbench.margins import read_loop
 from gainbench.model import Firmware
 from gainbench.plant import refer
 from gainbench.sampling import current_loop, hardware
-from gainbench.tuning.bandwidth import bandwidth_margin, nearest_bandwidth
+from gainbench.tuning.bandwidth import bandwidth_margin, nearest_bandwidth, reached_bandwidth
 from gainbench.tuning.exact import crossover_grid, gains_for, holds
 from quantities import assert_quantity
 from rigs import fixed_sheet
@@ -65,3 +65,16 @@ def test_there_may_be_nothing_near():
     assert nearest_bandwidth(loop, math.tau * 500.0, margin=math.radians(60.0)) == pytest.approx(
         math.tau * 500.0, rel=1e-3
     )
+
+
+def test_what_a_crossover_reaches_is_what_asks_for_it(loop):
+    margin, crossover = math.radians(60.0), math.tau * 600.0
+    bandwidth = reached_bandwidth(loop, crossover, margin=margin)
+    figures = read_loop(loop, gains_for(loop, crossover, margin=margin)).figures
+    assert bandwidth == figures.bandwidth_hz * math.tau
+    design = bandwidth_margin(loop, bandwidth=bandwidth, margin=margin)
+    assert_quantity(design.asked_crossover, crossover, rtol=1e-8, unit="rad/s", why="there and back")
+
+
+def test_a_crossover_that_cannot_be_met_reaches_nothing(loop):
+    assert reached_bandwidth(loop, 0.9 * math.pi / loop.plant.period, margin=math.radians(60.0)) is None

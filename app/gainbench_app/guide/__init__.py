@@ -1,0 +1,1 @@
+"""The guide: its pages, and the window that shows them."""
