@@ -34,8 +34,10 @@ def test_readme_has_one_line_to_run_it_and_one_to_test_it():
 
 
 def test_readmes_sheet_is_a_sheet():
-    (text,) = blocks(README, "toml")
+    text, logs = blocks(README, "toml")
     assert parse_sheet(text, "readme").sheet.title == "Label unwinder"
+    (log,) = parse_sheet(text + logs, "readme").sheet.evidence
+    assert log.log == "run-07.csv"
 
 
 def test_the_console_script_of_readme_is_the_projects():
@@ -48,9 +50,7 @@ def test_the_commands_of_readme_are_the_commands_there_are():
     told = set(re.findall(r"^\| `gainbench (\w+) ", README, flags=re.MULTILINE))
     assert told
     script = "from gainbench_app.start import main; main()"
-    helped = subprocess.run(
-        [sys.executable, "-c", script, "--help"], check=True, capture_output=True, text=True
-    ).stdout
+    helped = subprocess.run([sys.executable, "-c", script, "--help"], check=True, capture_output=True, text=True).stdout
     for command in told:
         assert re.search(rf"\b{command}\b", helped)
 

@@ -36,6 +36,7 @@ WITHOUT_OWN_MODULE = {
     "tests/core/test_against_oracle.py": "the library against that model",
     "tests/core/test_outside_engines.py": "the library against other general engines",
     "tests/core/test_outside_loops.py": "published loops, through many rooms",
+    "tests/core/evidence/test_foreign_logs.py": "logs of many writers, from the file to the estimates",
     "tests/core/test_outside_motors.py": "published machines, trains and conventions, through many rooms",
     "tests/core/test_outside_plant.py": "published holds, sums and warm windings, through many rooms",
     "tests/core/test_hard_sheets.py": "the library against that model where drives are awkward",
@@ -99,11 +100,11 @@ def test_a_file_holds_one_idea():
 
 
 def test_no_unfinished_work_and_no_words_of_anothers_machine():
-    # Put together here, so that this file does not contain what it looks for.
-    unfinished = re.compile(r"\b(" + "|".join(["TO" "DO", "FIX" "ME", "X" "XX", "NotImplemented" "Error"]) + r")\b")
+    # Written backwards, so that this file does not contain what it looks for.
+    unfinished = re.compile(rf"\b({'ODOT'[::-1]}|{'EMXIF'[::-1]}|{'X' * 3}|{'rorrEdetnemelpmItoN'[::-1]})\b")
     # The sockets of X servers stand where they stand on every machine.
     homes = [f"/{name}/" for name in ("work", "root", "home", r"tmp(?!/\.X11-unix)", "Users")]
-    elsewhere = re.compile(r"(?<![\w.*<}])(" + "|".join(homes) + r")|\b(" + "lect" "ure|trans" "cript" + r")\b")
+    elsewhere = re.compile(r"(?<![\w.*<}])(" + "|".join(homes) + rf")|\b({'erutcel'[::-1]}|{'tpircsnart'[::-1]})\b")
     found = []
     for path in own_files():
         try:

@@ -34,8 +34,8 @@ class Unsaved:
     """Of its file, or of the file it would have."""
     path: Path | None
     """Where it was saved before."""
-    since: float
-    """When it came to differ from its file [s since the epoch]."""
+    since: float | None
+    """When it came to differ from its file [s since the epoch]; None for one that does not, and is carried over."""
     text: str
     wrong: Mapping[str, EntryValue]
     """Entries that were refused, as typed."""
@@ -76,23 +76,16 @@ class Autosave(QObject):
         elif not self._timer.isActive():
             self._timer.start()
 
+    def write_now(self) -> None:
+        """Write without waiting."""
+        self._timer.stop()
+        self._write()
+
     def _write(self) -> None:
-        since = self._desk.unsaved_since
-        if since is None:
+        if self._desk.unsaved_since is None:
             return
         try:
-            state = settled(self._desk.state)
-            path = self._desk.path
-            content = json.dumps(
-                {
-                    "format": _FORMAT,
-                    "name": state.document.name,
-                    "path": str(path.absolute()) if path is not None else None,
-                    "since": since,
-                    "text": state.document.text(),
-                    "wrong": dict(state.wrong),
-                }
-            )
+            content = content_of(self._desk)
             if content != self._written:
                 self._hold()
                 replace_file(self._file, content.encode("utf-8"))
@@ -125,6 +118,27 @@ class Autosave(QObject):
             self._lock = None
 
 
+def content_of(desk: Desk) -> str:
+    """The open sheet with what is not saved, as a file that can be read again.
+
+    Raises
+    ------
+    SheetError
+        If the text cannot be edited where a slider has moved a value.
+    """
+    state, path = settled(desk.state), desk.path
+    return json.dumps(
+        {
+            "format": _FORMAT,
+            "name": state.document.name,
+            "path": str(path.absolute()) if path is not None else None,
+            "since": desk.unsaved_since,
+            "text": state.document.text(),
+            "wrong": dict(state.wrong),
+        }
+    )
+
+
 def left_behind(folder: Path) -> list[Unsaved]:
     """Sheets that a process did not get to save, the latest first; damaged files are passed over."""
     found = []
@@ -134,10 +148,10 @@ def left_behind(folder: Path) -> list[Unsaved]:
         if not lock.tryLock(0):
             continue
         lock.unlock()
-        unsaved = _read(file)
-        if unsaved is not None:
+        unsaved = read_unsaved(file)
+        if unsaved is not None and unsaved.since is not None:
             found.append(unsaved)
-    return sorted(found, key=lambda one: -one.since)
+    return sorted(found, key=lambda one: -(one.since or 0.0))
 
 
 def forget(unsaved: Unsaved) -> None:
@@ -150,7 +164,8 @@ def _lock_of(file: Path) -> Path:
     return file.with_suffix(".lock")
 
 
-def _read(file: Path) -> Unsaved | None:
+def read_unsaved(file: Path) -> Unsaved | None:
+    """What a file holds; None where it is absent or damaged."""
     try:
         if file.stat().st_size > 4 * MAX_BYTES:
             return None
@@ -161,7 +176,7 @@ def _read(file: Path) -> Unsaved | None:
         return Unsaved(
             name=str(data["name"]),
             path=Path(path) if isinstance(path, str) else None,
-            since=float(data["since"]),
+            since=float(data["since"]) if data["since"] is not None else None,
             text=str(data["text"]),
             wrong={
                 str(key): value

@@ -16,21 +16,16 @@ from PySide6.QtCore import QObject, QTimer, Signal, Slot
 from gainbench.assess import Assessment, assess
 from gainbench.errors import SheetError
 from gainbench.model import DesignMethod, HandGains, Sheet
-from gainbench.results import LoopAssessment
 from gainbench.sheetfile import EntryValue, SheetDocument, parse_sheet, read_sheet, write_sheet
 from gainbench_app.desk_state import State, as_text, moved, settled, typed
+from gainbench_app.edge_stop import loop_of, stopped_at_edge
 from gainbench_app.live import FrameTimer, Readiness
-from gainbench_app.sheet_edits import value_at
 from gainbench_app.shown_tuning import ShownTuning
 from gainbench_app.starting_values import gains_by_hand, starting_values
 
 IDLE_MS = 400
 """After the last move the text follows."""
 _MOST_UNDO = 500
-_INSIDE = 1e-3
-"""Share by which a slider stays inside the edge of what can be met."""
-_OF_A_MAP = ("phase_margin", "crossover")
-"""What a drag in a reach map moves, in the order in which it gives way at an edge."""
 
 
 @dataclass(slots=True, kw_only=True)
@@ -45,7 +40,9 @@ class Desk(QObject):
     """One open sheet."""
 
     changed = Signal()
-    """Texts, undo or saved state are other than before."""
+    """Texts, undo or saved state are other than before; along the live path told once per frame, before its result."""
+    number_moved = Signal(str)
+    """The number at this path was moved along the live path just now."""
     assessed = Signal()
     """``assessment`` is new."""
     opened = Signal()
@@ -75,6 +72,8 @@ class Desk(QObject):
         self._past: list[State] = []
         self._future: list[State] = []
         self._gesture: _Gesture | None = None
+        self._untold = False
+        """Whether numbers have moved since ``changed`` was told."""
         self._typed: dict[str, str | None] = {}
         """Spellings in the document that are known."""
         self._unsaved_since: float | None = None
@@ -283,7 +282,7 @@ class Desk(QObject):
         self._timer.flush()
         assessment = self._assessment
         if assessment is not None:
-            assessed = assessment.current if loop == "current" else assessment.speed
+            assessed = loop_of(assessment, loop)
             values |= starting_values(self.sheet, loop, plant=assessment.plant, assessed=assessed, method=method)
         self._set(values, held=self._held_but(loop))
 
@@ -295,7 +294,7 @@ class Desk(QObject):
         """Keep a loop's gains as they are, or let its method design them again. One step of undo."""
         self.end_gesture()
         held = self._held_but(loop)
-        gains = _loop(self._assessment, loop).gains if self._assessment is not None else None
+        gains = loop_of(self._assessment, loop).gains if self._assessment is not None else None
         if on and gains is not None:
             held = {**held, loop: HandGains(kp=gains.kp, ki=gains.ki)}
         if held.keys() != self._state.held.keys():
@@ -305,7 +304,7 @@ class Desk(QObject):
     def take_over(self, loop: str) -> None:
         """Make the gains in force, designed or held, the loop's gains by hand. One step of undo."""
         self.end_gesture()
-        gains = _loop(self._assessment, loop).gains if self._assessment is not None else None
+        gains = loop_of(self._assessment, loop).gains if self._assessment is not None else None
         if gains is not None:
             values = {f"aims.{loop}.method": DesignMethod.BY_HAND.value, **gains_by_hand(loop, gains)}
             self._set(values, held=self._held_but(loop))
@@ -347,7 +346,9 @@ class Desk(QObject):
         for path, value in values.items():
             state = moved(state, path, value)
         if state is not self._state:
-            self._put(state)
+            self._move_to(state)
+            for path in values:
+                self.number_moved.emit(path)
         if alone:
             self.end_gesture()
 
@@ -395,6 +396,18 @@ class Desk(QObject):
             self._idle.start()
         if anew:
             self._timer.request()
+        self._tell()
+
+    def _move_to(self, state: State) -> None:
+        """The same along the live path, where events may come faster than frames: the frame tells of all of them."""
+        self._state = state
+        self._mark_saved()
+        self._idle.start()
+        self._untold = True
+        self._timer.request()
+
+    def _tell(self) -> None:
+        self._untold = False
         self.changed.emit()
 
     def _remember(self, written: Mapping[str, EntryValue] | None) -> None:
@@ -441,52 +454,30 @@ class Desk(QObject):
         self.changed.emit()
 
     def _compute(self) -> None:
+        if self._untold:
+            self._tell()
         if self._readiness is Readiness.NOTHING:
             return
-        assessment = self._assess(self._state.assessed_sheet)
-        gesture = self._gesture
-        if gesture is not None and self._computed is not None and gesture.path.startswith("aims."):
-            loop = gesture.path.split(".")[1]
-            refused = _loop(assessment, loop).refusal is not None
-            met_before = self._assessment is not None and _loop(self._assessment, loop).refusal is None
-            if refused and met_before:
-                assessment = self._stopped_at_edge(gesture.path, assessment)
+        state = self._state
+        assessment = self._assess(state.assessed_sheet)
+        stopped = None
+        if self._gesture is not None and self._computed is not None and self._assessment is not None:
+            stopped = stopped_at_edge(
+                self._gesture.path,
+                state,
+                assessment,
+                good=self._computed,
+                before=self._assessment,
+                assess=self._assess,
+            )
+        if stopped is not None:
+            assessment = stopped.assessment
+            self._state = stopped.state
+            self._mark_saved()
+            self.changed.emit()
         self._assessment = assessment
         self._computed = self._state
         self.assessed.emit()
 
     def _assess(self, sheet: Sheet) -> Assessment:
         return assess(sheet, simulated=self._readiness is Readiness.ALL)
-
-    def _stopped_at_edge(self, path: str, refused: Assessment) -> Assessment:
-        """The nearest state that can be met, else the last one that was."""
-        loop, *keys = path.split(".")[1:]
-        refusal = _loop(refused, loop).refusal
-        good = self._computed
-        assert refusal is not None
-        assert good is not None
-        candidates = []
-        for key in keys or _OF_A_MAP:
-            nearest = {
-                "crossover": refusal.nearest_crossover,
-                "bandwidth": refusal.nearest_bandwidth,
-                "phase_margin": refusal.largest_margin,
-            }.get(key)
-            if nearest is not None:
-                # A hair inside the edge, so that rounding to the digits shown does not step over it.
-                asked = value_at(self._state.sheet, f"aims.{loop}.{key}") or 0.0
-                inside = nearest * (1.0 - _INSIDE if nearest < asked else 1.0 + _INSIDE)
-                candidates.append(moved(self._state, f"aims.{loop}.{key}", inside, differs=False))
-        candidates.append(good)
-        for state in candidates:
-            assessment = self._assess(state.assessed_sheet)
-            if _loop(assessment, loop).refusal is None:
-                self._state = state
-                self._mark_saved()
-                self.changed.emit()
-                return assessment
-        return refused
-
-
-def _loop(assessment: Assessment, loop: str) -> LoopAssessment:
-    return assessment.current if loop == "current" else assessment.speed

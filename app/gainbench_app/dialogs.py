@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from PySide6.QtPrintSupport import QPrinter
 
 _FILTER = f"bench sheets (*{SUFFIX} *.toml);;all files (*)"
+_LOGS = "logs (*.csv *.tsv *.txt *.dat *.asc *.mat *.parquet);;all files (*)"
 _PICTURES = "pixels (*.png);;lines and words (*.svg)"
 
 
@@ -45,6 +46,11 @@ class Dialogs:
     def sheet_to_open(self, parent: QWidget) -> Path | None:
         """Which sheet to open; None where none was chosen."""
         name, _ = QFileDialog.getOpenFileName(parent, "Open a bench sheet", "", _FILTER)
+        return Path(name) if name else None
+
+    def log_to_open(self, parent: QWidget) -> Path | None:
+        """Which log to add; None where none was chosen."""
+        name, _ = QFileDialog.getOpenFileName(parent, "Add a log", "", _LOGS)
         return Path(name) if name else None
 
     def sheet_to_save(self, parent: QWidget, suggestion: Path) -> Path | None:
@@ -104,6 +110,18 @@ class Dialogs:
         if box.clickedButton() is restore:
             return Recovery.RESTORE
         return Recovery.DISCARD if box.clickedButton() is discard else Recovery.LATER
+
+    def restart_now(self, parent: QWidget, message: str) -> bool:
+        """Whether the program starts again at once."""
+        box = QMessageBox(QMessageBox.Icon.NoIcon, "Size", message)
+        box.setParent(parent, box.windowFlags())
+        box.setInformativeText("Start again now?")
+        now = box.addButton("Restart now", QMessageBox.ButtonRole.AcceptRole)
+        later = box.addButton("Later", QMessageBox.ButtonRole.RejectRole)
+        box.setDefaultButton(now)
+        box.setEscapeButton(later)
+        box.exec()
+        return box.clickedButton() is now
 
     def picture_to_save(self, parent: QWidget, suggestion: str) -> Path | None:
         """Where to save a picture; None where no name was given."""

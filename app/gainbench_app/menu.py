@@ -39,6 +39,7 @@ class WindowMenu(QMenu):
             action = self.demos.addAction(name.replace("-", " ").capitalize())
             action.triggered.connect(lambda _=False, name=name: self.demo_chosen.emit(name))
         self.addSeparator()
+        self.evidence = self._action("Evidence", "evidence")
         self.paste_rows = self._action("Paste rows from a data sheet...", "paste_rows")
         self.addSeparator()
         self.copy_picture = self._action("Copy picture of the plots", "copy_picture")
@@ -51,6 +52,7 @@ class WindowMenu(QMenu):
         self.scales = self._choices("Size", {scale: f"{scale} %" for scale in SCALES})
         for scale, action in self.scales.items():
             action.triggered.connect(lambda _=False, scale=scale: self.scale_chosen.emit(scale))
+        self.guide = self._action("Guide", "guide")
         self.shortcuts = self._action("Shortcuts", "shortcuts")
         self.addSeparator()
         self.quit = self._action("Quit", "quit")
@@ -59,9 +61,11 @@ class WindowMenu(QMenu):
                 self.undo,
                 self.redo,
                 self.save_as,
+                self.evidence,
                 self.paste_rows,
                 self.copy_picture,
                 self.print,
+                self.guide,
                 self.shortcuts,
                 self.quit,
             ]
@@ -78,6 +82,10 @@ class WindowMenu(QMenu):
             group.addAction(action)
             found[key] = action
         return found
+
+    def show_evidence(self, shown: bool) -> None:
+        """Say where the entry leads."""
+        self.evidence.setText("Back to tuning" if shown else "Evidence")
 
     def show_scheme(self, scheme: Scheme) -> None:
         """Mark the theme that is chosen."""

@@ -49,7 +49,9 @@ def drawing(figures: list[Figure], *, title: str) -> bytes:
 
 
 def copy_picture(figures: list[Figure]) -> None:
-    """Put a picture of plots on the clipboard."""
+    """Put a picture of plots on the clipboard; without a plot it stays as it is."""
+    if not figures:
+        return
     QGuiApplication.clipboard().setImage(picture(figures))
 
 

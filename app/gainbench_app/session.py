@@ -15,22 +15,20 @@ from PySide6.QtWidgets import QApplication
 from gainbench.assess import warm_up
 from gainbench.errors import SheetError
 from gainbench.sheetfile import SheetDocument, parse_sheet, read_sheet
-from gainbench_app.autosave import Autosave, forget, left_behind
+from gainbench_app.autosave import Autosave, Unsaved, forget, left_behind
 from gainbench_app.desk import Desk
 from gainbench_app.dialogs import Recovery
 from gainbench_app.habits import Habits, Memory, with_recent
 from gainbench_app.layout_memory import lay_out, with_layout
 from gainbench_app.live import Readiness, WarmUp
 from gainbench_app.places import config_folder, state_folder
+from gainbench_app.restarting import Restart, carried_over, start_again, take_up
 from gainbench_app.theme import Scheme, body_font
 from gainbench_app.themes import Themes
 from gainbench_app.warming import warm_up_window
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.window import Window
 from gainbench_resources import demo_sheet, demo_sheet_names
-
-SCALE_VARIABLE = "QT_SCALE_FACTOR"
-"""Qt reads it once, when the application is made."""
 
 
 def open_window(path: str | None) -> int:
@@ -49,7 +47,8 @@ def open_window(path: str | None) -> int:
     memory = Memory(config_folder() / "window.json")
     habits = memory.habits()
     application = _application(habits)
-    document, file, trouble = _first_document(path)
+    carried = carried_over(os.environ)
+    document, file, trouble = _first_document(path, carried)
     desk = Desk(document, path=file, readiness=Readiness.NOTHING)
     appearance = Appearance()
     # Before there are widgets: a style sheet that comes later lays all of them out a second time.
@@ -61,6 +60,11 @@ def open_window(path: str | None) -> int:
     if file is not None:
         memory.change(partial(with_recent, path=file))
     autosave = Autosave(desk, unsaved_folder())
+    if carried is not None and not trouble:
+        bring_back(desk, carried, autosave)
+    restart = Restart(desk, unsaved_folder(), window)
+    restart.ready.connect(application.exit)
+    window.restart_wanted.connect(lambda: _restart(window, restart))
     warming = WarmUp(partial(warm_up, simulated=False), warm_up_window)
     warming.reached.connect(desk.reach)
     warming.finished.connect(window.settle_memory)
@@ -73,6 +77,8 @@ def open_window(path: str | None) -> int:
     status = application.exec()
     memory.change(partial(with_layout, window=window))
     memory.change(partial(_with_scheme, scheme=themes.scheme))
+    if restart.file is not None:
+        start_again(restart.file, os.environ)
     autosave.release()
     warming.requestInterruption()
     warming.wait()
@@ -82,6 +88,22 @@ def open_window(path: str | None) -> int:
 def unsaved_folder() -> Path:
     """Where unsaved work outlasts a crash."""
     return state_folder() / "unsaved"
+
+
+def bring_back(desk: Desk, carried: Unsaved, autosave: Autosave) -> None:
+    """Put the sheet that was carried over in the state that it was in; its file goes once it is safe elsewhere."""
+    if carried.since is not None:
+        desk.restore(carried.text, carried.name, path=carried.path, since=carried.since)
+    if carried.wrong:
+        desk.set_values(carried.wrong)
+    autosave.write_now()
+    forget(carried)
+
+
+def _restart(window: Window, restart: Restart) -> None:
+    trouble = restart.prepare()
+    if trouble:
+        window.dialogs.tell(window, "Not started again", trouble)
 
 
 def offer_recovery(window: Window) -> None:
@@ -110,8 +132,7 @@ def _application(habits: Habits) -> QApplication:
     if isinstance(existing, QApplication):
         application = existing
     else:
-        if habits.scale != 100:
-            os.environ.setdefault(SCALE_VARIABLE, f"{habits.scale / 100.0:g}")
+        take_up(habits.scale, os.environ)
         application = QApplication(sys.argv[:1])
     application.setApplicationName("Gainbench")
     application.setStyle("Fusion")
@@ -123,9 +144,14 @@ def _with_scheme(habits: Habits, *, scheme: Scheme) -> Habits:
     return replace(habits, scheme=scheme)
 
 
-def _first_document(path: str | None) -> tuple[SheetDocument, Path | None, str]:
+def _first_document(path: str | None, carried: Unsaved | None) -> tuple[SheetDocument, Path | None, str]:
     """The sheet to open with, its file, and what is to be said about one that cannot be read."""
     trouble = ""
+    if carried is not None:
+        try:
+            return parse_sheet(carried.text, carried.name), carried.path, ""
+        except SheetError as error:
+            trouble = str(error)
     if path is not None:
         try:
             return read_sheet(path), Path(path), ""

@@ -27,6 +27,7 @@ SHEET: dict[str, Shortcut] = {
     "redo": Shortcut(keys=("Ctrl+Shift+Z", "Ctrl+Y"), does="take the undo back"),
     "keep": Shortcut(keys=("Ctrl+K",), does="keep this tuning on the shelf"),
     "handover": Shortcut(keys=("Ctrl+E",), does="hand over to the firmware"),
+    "evidence": Shortcut(keys=("Ctrl+L",), does="open the evidence page, or go back to the tuning"),
     "paste_rows": Shortcut(keys=("Ctrl+Shift+V",), does="paste rows from a data sheet"),
     "copy_picture": Shortcut(keys=("Ctrl+Shift+C",), does="copy a picture of the plots"),
     "print": Shortcut(keys=("Ctrl+P",), does="print"),
@@ -34,10 +35,22 @@ SHEET: dict[str, Shortcut] = {
     "does": Shortcut(keys=("Ctrl+2",), does="go to what it does"),
     "ask": Shortcut(keys=("Ctrl+3",), does="go to what we ask"),
     "shelf": Shortcut(keys=("Ctrl+4",), does="go to the shelf"),
+    "findings": Shortcut(keys=("Ctrl+5",), does="go to the findings"),
+    "guide": Shortcut(keys=("F1",), does="open the guide at what has the focus"),
     "shortcuts": Shortcut(keys=("Ctrl+/", "F12"), does="show this list"),
     "quit": Shortcut(keys=("Ctrl+Q",), does="quit"),
 }
 """By the name of the action; they work everywhere in the window."""
+
+GUIDE: dict[str, Shortcut] = {
+    "back": Shortcut(keys=("Alt+Left",), does="go back to where you were"),
+    "forward": Shortcut(keys=("Alt+Right",), does="go forward again"),
+    "find": Shortcut(keys=("Ctrl+F",), does="find words in the page"),
+    "next": Shortcut(keys=("F3",), does="go to the next of them"),
+    "previous": Shortcut(keys=("Shift+F3",), does="go to the one before"),
+    "close": Shortcut(keys=("Esc",), does="end the search, or close the guide"),
+}
+"""By the name of the action; they work in the window of the guide."""
 
 WITHIN: dict[str, tuple[Shortcut, ...]] = {
     "In a box": (
@@ -54,6 +67,15 @@ WITHIN: dict[str, tuple[Shortcut, ...]] = {
         Shortcut(keys=("Shift+Left", "Shift+Right"), does="move by 0.1 %"),
         Shortcut(keys=("Esc",), does="take the movement back"),
     ),
+    "On the evidence page": (
+        Shortcut(keys=("Up", "Down"), does="choose an end of the span, on the signals"),
+        Shortcut(keys=("Left", "Right"), does="move it by 1 %, with Shift by 0.1 %"),
+        Shortcut(keys=("Esc",), does="take the movement back, or go back to the tuning"),
+    ),
+    "On a finding": (
+        Shortcut(keys=("Space",), does="say why, and what to try next, or no more"),
+        Shortcut(keys=("Return",), does="go to the entry that it asks to move"),
+    ),
     "On the shelf": (
         Shortcut(keys=("Space",), does="draw the chosen tuning, or no more"),
         Shortcut(keys=("Return",), does="put the chosen tuning in force"),
@@ -61,6 +83,7 @@ WITHIN: dict[str, tuple[Shortcut, ...]] = {
         Shortcut(keys=("Alt+Up", "Alt+Down"), does="put it further up or down"),
         Shortcut(keys=("Del",), does="take it off the shelf"),
     ),
+    "In the guide": tuple(GUIDE.values()),
 }
 """By where they work."""
 
@@ -68,6 +91,11 @@ WITHIN: dict[str, tuple[Shortcut, ...]] = {
 def sequences(name: str) -> list[QKeySequence]:
     """The keys of an action of the window."""
     return [QKeySequence(keys) for keys in SHEET[name].keys]
+
+
+def guide_sequences(name: str) -> list[QKeySequence]:
+    """The keys of an action of the guide's window."""
+    return [QKeySequence(keys) for keys in GUIDE[name].keys]
 
 
 def told(shortcut: Shortcut) -> str:

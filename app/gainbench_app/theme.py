@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from enum import StrEnum
+from functools import lru_cache
 from importlib.resources import files
 
 from PySide6.QtCore import QByteArray
@@ -51,14 +52,19 @@ class Theme:
 
     def mixed(self, colour: str, share: float) -> str:
         """An opaque tint: that share of a colour on the card, since translucent paint costs ten times as much."""
-        top, below = QColor(colour), QColor(self.card)
-        channels = (
-            (top.red(), below.red()),
-            (top.green(), below.green()),
-            (top.blue(), below.blue()),
-        )
-        parts = (round(share * above + (1.0 - share) * under) for above, under in channels)
-        return "#{:02X}{:02X}{:02X}".format(*parts)
+        return _mixed(colour, self.card, share)
+
+
+@lru_cache(maxsize=64)
+def _mixed(colour: str, card: str, share: float) -> str:
+    top, below = QColor(colour), QColor(card)
+    channels = (
+        (top.red(), below.red()),
+        (top.green(), below.green()),
+        (top.blue(), below.blue()),
+    )
+    parts = (round(share * above + (1.0 - share) * under) for above, under in channels)
+    return "#{:02X}{:02X}{:02X}".format(*parts)
 
 
 LIGHT = Theme(
@@ -215,6 +221,14 @@ QMenu::item {{ padding: 4px 26px 4px 22px; border-radius: 3px; }}
 QMenu::item:selected {{ background: {hover}; }}
 QMenu::item:disabled {{ color: {theme.muted}; }}
 QMenu::separator {{ height: 1px; background: {theme.rule}; margin: 4px 6px; }}
+#guideList {{ background: transparent; border: 0; outline: 0; }}
+#guideList::item {{ padding: 2px 8px; border-radius: 4px; color: {theme.ink}; border: 1px solid transparent; }}
+#guideList::item:hover {{ background: {theme.mixed(theme.outline, 0.08)}; }}
+#guideList::item:selected {{ background: {hover}; }}
+#guideList::item:focus {{ border: 1px solid {theme.ink}; }}
+#guideList::item:disabled {{ color: {theme.muted}; background: transparent; padding-left: 0; }}
+QProgressBar {{ background: {theme.rule}; border: 0; border-radius: 4px; }}
+QProgressBar::chunk {{ background: {theme.ink}; border-radius: 4px; }}
 QScrollArea {{ border: 0; }}
 QScrollBar:vertical {{ width: 8px; margin: 0; }}
 QScrollBar::handle:vertical {{ background: {theme.outline}; border-radius: 2px; min-height: 28px;

@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 import gc
+import os
 from collections.abc import Callable
 from dataclasses import replace
 from functools import partial
 from pathlib import Path
 
-from PySide6.QtCore import QPoint, Qt, QUrl
+from PySide6.QtCore import QCoreApplication, QEvent, QPoint, Qt, QUrl, Signal
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent, QResizeEvent, QShortcut
 from PySide6.QtWidgets import (
     QApplication,
@@ -27,14 +28,17 @@ from gainbench.handover import refusal
 from gainbench.sheetfile import SUFFIX
 from gainbench_app.desk import Desk
 from gainbench_app.dialogs import Dialogs, Unsaved
+from gainbench_app.guide.opening import Guide
 from gainbench_app.habits import Memory, with_recent, without_recent
 from gainbench_app.hand_over import hand_over
 from gainbench_app.live import Readiness
 from gainbench_app.menu import WindowMenu
 from gainbench_app.on_bench.column import OnBench
+from gainbench_app.pages.switching import Pages
 from gainbench_app.pictures import copy_picture, save_picture
 from gainbench_app.places import config_folder
 from gainbench_app.printing import Page, print_page
+from gainbench_app.restarting import SET_OUTSIDE, scale_in_force, set_outside, told
 from gainbench_app.shelf.panel import ShelfPanel
 from gainbench_app.shelf.tunings import Key, Kind, Shelf
 from gainbench_app.shortcuts import ShortcutList, sequences
@@ -47,13 +51,16 @@ from gainbench_app.widgets.figure import Figure
 from gainbench_app.widgets.value_box import ValueBox
 from gainbench_resources import demo_sheet, demo_sheet_names
 
-_LEFT_PX, _RIGHT_PX = 344, 300
+_LEFT_PX, _RIGHT_PX = 344, 320
 _SHEET_ENDINGS = (".toml",)
 """Of files that can be dropped on the window."""
 
 
 class Window(QMainWindow):
     """One open sheet."""
+
+    restart_wanted = Signal()
+    """The program is to start again, with the sheet as it is."""
 
     def __init__(
         self,
@@ -75,6 +82,7 @@ class Window(QMainWindow):
         self.what_it_does = WhatItDoes(desk, appearance)
         self.what_we_ask = WhatWeAsk(desk, appearance)
         self.shelf = ShelfPanel(Shelf(desk, self), appearance, dialogs=self.dialogs, hand_over=self.hand_over_tuning)
+        self.guide = Guide(self, appearance)
         self._lay_out()
         self._connect()
         self.setAcceptDrops(True)
@@ -102,9 +110,15 @@ class Window(QMainWindow):
         self.right = _column("What we ask", self.what_we_ask, scrolls=True)
         self.right.setObjectName("sideRight")
         self.right.setFixedWidth(_RIGHT_PX)
+        tuning = QWidget()
+        beside = QHBoxLayout(tuning)
+        beside.setContentsMargins(0, 0, 0, 0)
+        beside.setSpacing(0)
+        beside.addWidget(self.middle, 1)
+        beside.addWidget(self.right)
+        self.pages = Pages(tuning, self.desk, self.appearance, dialogs=self.dialogs, parent=self)
         line.addWidget(self.left)
-        line.addWidget(self.middle, 1)
-        line.addWidget(self.right)
+        line.addWidget(self.pages.stack, 1)
         outer.addLayout(line, 1)
         outer.addWidget(self.shelf)
         self.setCentralWidget(self.page)
@@ -112,6 +126,7 @@ class Window(QMainWindow):
     def _connect(self) -> None:
         self.top.open.clicked.connect(self.open)
         self.top.save.clicked.connect(self.save)
+        self.top.evidence.clicked.connect(self.pages.toggle)
         self.top.keep.clicked.connect(self.keep)
         self.top.handover.clicked.connect(self.handover)
         menu = self.menu_of_more
@@ -122,12 +137,17 @@ class Window(QMainWindow):
         menu.recent_chosen.connect(lambda path: self.open_recent(Path(path)))
         menu.recent.aboutToShow.connect(lambda: menu.show_recent(self.memory.habits().recent))
         menu.aboutToShow.connect(lambda: menu.show_recent(self.memory.habits().recent))
+        menu.evidence.triggered.connect(self.pages.toggle)
+        self.pages.switched.connect(self.top.show_evidence)
+        self.pages.switched.connect(menu.show_evidence)
+        self.pages.figure_made.connect(self._give_picture_menu)
         menu.paste_rows.triggered.connect(self.paste_rows)
         menu.copy_picture.triggered.connect(lambda: copy_picture(self.figures()))
         menu.save_picture.triggered.connect(lambda: self.save_picture(self.figures()))
         menu.print.triggered.connect(self.print)
         menu.scale_chosen.connect(self.choose_scale)
         menu.show_scale(self.memory.habits().scale)
+        menu.guide.triggered.connect(self.guide.open)
         menu.shortcuts.triggered.connect(self.show_shortcuts)
         menu.quit.triggered.connect(self.close)
         acts: dict[str, Callable[[], object]] = {
@@ -136,20 +156,22 @@ class Window(QMainWindow):
             "keep": self.keep,
             "handover": self.handover,
             "bench": self.on_bench.cards[0].head.setFocus,
-            "does": self.what_it_does.spans.buttons["whole"].setFocus,
-            "ask": self.what_we_ask.speed.method.setFocus,
+            "does": partial(self.pages.focus_in_tuning, self.what_it_does.spans.buttons["whole"]),
+            "ask": partial(self.pages.focus_in_tuning, self.what_we_ask.speed.method),
             "shelf": self.shelf.table.setFocus,
+            "findings": self.go_to_findings,
         }
         for name, act in acts.items():
             for keys in sequences(name):
                 QShortcut(keys, self).activated.connect(partial(_call, act))
         for figure in self.findChildren(Figure):
-            figure.setContextMenuPolicy(Qt.ContextMenuPolicy.CustomContextMenu)
-            figure.customContextMenuRequested.connect(partial(self._show_picture_menu, figure))
+            self._give_picture_menu(figure)
         self.what_we_ask.pointed_at.connect(self.on_bench.point_at)
         self.desk.changed.connect(self._show_title)
         self.desk.changed.connect(self._show_handover)
         self.desk.assessed.connect(self._show_handover)
+        # Places are shared anew before the frame is painted, and not once more after it.
+        self.desk.assessed.connect(lambda: QCoreApplication.sendPostedEvents(None, QEvent.Type.LayoutRequest.value))
         self.desk.trouble.connect(lambda message: self.dialogs.tell(self, "The text cannot follow", message))
 
     # What is shown
@@ -159,7 +181,9 @@ class Window(QMainWindow):
         title = f"{self.desk.sheet.title}{star} - Gainbench"
         if self.windowTitle() != title:
             self.setWindowTitle(title)
-        self.setWindowModified(self.desk.unsaved_since is not None)
+        unsaved = self.desk.unsaved_since is not None
+        if self.isWindowModified() is not unsaved:
+            self.setWindowModified(unsaved)
         self.menu_of_more.undo.setEnabled(self.desk.can_undo)
         self.menu_of_more.redo.setEnabled(self.desk.can_redo)
 
@@ -173,7 +197,7 @@ class Window(QMainWindow):
 
     def figures(self) -> list[Figure]:
         """The plots that are shown, from top to bottom, maps and small ones left out."""
-        return [one for one in self.what_it_does.findChildren(Figure) if one.isVisible()]
+        return self.pages.figures() or [one for one in self.what_it_does.findChildren(Figure) if one.isVisible()]
 
     def handover_refusal(self) -> str:
         """Why nothing can be handed over; empty where it can."""
@@ -302,16 +326,29 @@ class Window(QMainWindow):
         if chosen:
             self.desk.set_values(chosen)
 
+    def go_to_findings(self) -> None:
+        """Show the tuning, and go to the worst finding."""
+        self.pages.show_tuning()
+        self.what_we_ask.findings.go()
+
     def show_shortcuts(self) -> None:
         """Show the list of shortcuts."""
         self.dialogs.show(ShortcutList(self))
 
     def choose_scale(self, scale: int) -> None:
-        """Remember another size; Qt takes it up at the next start only."""
+        """Remember another size, and offer to start again with it: Qt takes it up at a start only."""
         self.memory.change(lambda habits: replace(habits, scale=scale))
-        self.dialogs.tell(self, "Size", f"The window has {scale} % of its size from the next start on.")
+        self.finish_typing()
+        if set_outside(os.environ):
+            self.dialogs.tell(self, "Size", SET_OUTSIDE)
+        elif scale != round(scale_in_force(os.environ)) and self.dialogs.restart_now(self, told(self.desk, scale)):
+            self.restart_wanted.emit()
 
     # Pictures and paper
+
+    def _give_picture_menu(self, figure: Figure) -> None:
+        figure.setContextMenuPolicy(Qt.ContextMenuPolicy.CustomContextMenu)
+        figure.customContextMenuRequested.connect(partial(self._show_picture_menu, figure))
 
     def _show_picture_menu(self, figure: Figure, at: QPoint) -> None:
         menu = QMenu(self)
@@ -322,6 +359,8 @@ class Window(QMainWindow):
 
     def save_picture(self, figures: list[Figure]) -> None:
         """Ask for a file and save a picture of plots."""
+        if not figures:
+            return
         name = (self.desk.state.document.name or "sheet").removesuffix(SUFFIX)
         path = self.dialogs.picture_to_save(self, f"{name}.png")
         if path is None:
@@ -356,17 +395,22 @@ class Window(QMainWindow):
     # Dropping a sheet
 
     def dragEnterEvent(self, event: QDragEnterEvent) -> None:  # noqa: N802
-        """Take sheets that are dragged over."""
-        if _dropped(event.mimeData().urls()) is not None:
+        """Take sheets and logs that are dragged over."""
+        urls = event.mimeData().urls()
+        if _dropped(urls) is not None or self.pages.logs_among(urls):
             event.acceptProposedAction()
 
     def dropEvent(self, event: QDropEvent) -> None:  # noqa: N802
-        """Open the sheet."""
-        path = _dropped(event.mimeData().urls())
+        """Open the sheet, or add the logs."""
+        urls = event.mimeData().urls()
+        path = _dropped(urls)
         if path is not None:
             event.acceptProposedAction()
             if self.may_leave():
                 self.open_path(path)
+        elif logs := self.pages.logs_among(urls):
+            event.acceptProposedAction()
+            self.pages.add_logs(logs)
 
     def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802
         """A low window has a low shelf."""
@@ -395,6 +439,7 @@ class Window(QMainWindow):
     def closeEvent(self, event: QCloseEvent) -> None:  # noqa: N802
         """Closing asks about unsaved work."""
         if self.may_leave():
+            self.pages.close_down()
             event.accept()
         else:
             event.ignore()

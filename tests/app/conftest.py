@@ -31,6 +31,7 @@ class Answers:
     def __init__(self):
         self.open: Path | None = None
         self.save: Path | None = None
+        self.log: Path | None = None
         self.leave = "cancel"
         self.choice = None
         self.replace = False
@@ -42,6 +43,8 @@ class Answers:
         self.picture: Path | None = None
         self.device = None
         self.recovery = "later"
+        self.restart = False
+        self.restarts: list[str] = []
         self.recovered: list[str] = []
         self.rows: dict[str, str] = {}
         self.shown: list[object] = []
@@ -49,6 +52,10 @@ class Answers:
     def sheet_to_open(self, parent):
         self.asked.append("open")
         return self.open
+
+    def log_to_open(self, parent):
+        self.asked.append("log")
+        return self.log
 
     def sheet_to_save(self, parent, suggestion):
         self.asked.append(f"save as {suggestion.name}")
@@ -90,6 +97,10 @@ class Answers:
 
         self.recovered.append(name)
         return Recovery(self.recovery)
+
+    def restart_now(self, parent, message):
+        self.restarts.append(message)
+        return self.restart
 
     def rows_to_set(self, parent, desk):
         return self.rows

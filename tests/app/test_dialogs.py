@@ -44,6 +44,12 @@ def test_unsaved_work_has_three_ways_out(parent, words, answer):
     assert Dialogs().unsaved(parent, "Label unwinder") is answer
 
 
+@pytest.mark.parametrize(("words", "answer"), [("Restart now", True), ("Later", False)])
+def test_the_program_starts_again_only_if_that_is_wanted(parent, words, answer):
+    when_shown(press(words))
+    assert Dialogs().restart_now(parent, "another size") is answer
+
+
 def test_a_message_is_told(parent):
     seen = []
     when_shown(lambda dialog: (seen.append(dialog.text()), dialog.accept()))

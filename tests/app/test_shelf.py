@@ -363,6 +363,17 @@ def test_a_name_is_edited_in_its_place(panel, qtbot, desk, answers):
     assert "name" in answers.told[0][1]
 
 
+def test_a_name_that_was_taken_is_not_lost_where_rows_change_at_once(panel, qtbot):
+    panel.table.setFocus()
+    qtbot.keyClick(panel.table, Qt.Key.Key_F2)
+    editor = QGuiApplication.focusObject()
+    editor.selectAll()
+    qtbot.keyClicks(editor, "dusk")
+    qtbot.keyClick(editor, Qt.Key.Key_Return)
+    panel.shelf.keep("second")
+    assert [row.name for row in panel.model.shelf_rows] == ["live", "dusk", "second"]
+
+
 def test_what_can_be_done_depends_on_the_row(panel):
     panel.choose(LIVE)
     assert not panel.actions_of_row["recall"].isEnabled()

@@ -32,9 +32,7 @@ def test_a_sheet_with_them_is_valid(document, loop, method):
 
 
 @pytest.mark.parametrize("loop", ["current", "speed"])
-@pytest.mark.parametrize(
-    "method", [DesignMethod.BY_HAND, DesignMethod.POLE_PLACEMENT, DesignMethod.BANDWIDTH_MARGIN]
-)
+@pytest.mark.parametrize("method", [DesignMethod.BY_HAND, DesignMethod.POLE_PLACEMENT, DesignMethod.BANDWIDTH_MARGIN])
 def test_the_gains_stay_where_they_are(document, loop, method):
     found, values = values_for(document, loop, method)
     before = loops(found)[loop].gains

@@ -281,6 +281,74 @@ def test_the_map_of_another_method_tells_where_its_gains_lead(column, desk, qtbo
     assert desk.sheet == before
 
 
+@pytest.mark.parametrize(("loop", "hertz"), [("speed", 40.0), ("current", 700.0)])
+def test_dragging_the_point_sets_a_bandwidth_where_one_is_asked_for(column, desk, qtbot, loop, hertz):
+    card = getattr(column, loop)
+    choose(card, DesignMethod.BANDWIDTH_MARGIN)
+    desk.compute_now()
+    before = getattr(desk.assessment, loop).figures
+    typed = card.row("bandwidth").box.text()
+    assert card.map.view.asked
+    qtbot.mousePress(card.map, LEFT_BUTTON, pos=place(card, hertz=before.crossover_hz, degrees=60.0))
+    for degrees in (55.0, 66.0):
+        qtbot.mouseMove(card.map, place(card, hertz=hertz, degrees=degrees))
+        desk.compute_now()
+        figures = getattr(desk.assessment, loop).figures
+        assert figures.crossover_hz == pytest.approx(hertz, rel=0.02)
+        assert figures.phase_margin_deg == pytest.approx(degrees, abs=1.0)
+    qtbot.mouseRelease(card.map, LEFT_BUTTON, pos=place(card, hertz=hertz, degrees=66.0))
+    aims = getattr(desk.sheet.aims, loop)
+    assert aims.method is DesignMethod.BANDWIDTH_MARGIN
+    assert aims.bandwidth == pytest.approx(math.tau * figures.bandwidth_hz, rel=1e-6)
+    assert card.map.view.point.crossover == pytest.approx(math.tau * figures.crossover_hz)
+    assert "asked for: bandwidth" in card.map.accessibleDescription()
+    desk.undo()
+    assert card.row("bandwidth").box.text() == typed
+
+
+def test_keys_on_the_map_move_the_bandwidth_by_a_percent(column, desk, qtbot):
+    card = column.speed
+    choose(card, DesignMethod.BANDWIDTH_MARGIN)
+    desk.set_values({"aims.speed.bandwidth": "90 Hz"})
+    desk.compute_now()
+    # Two steps within one frame.
+    qtbot.keyClick(card.map, Qt.Key.Key_Right)
+    qtbot.keyClick(card.map, Qt.Key.Key_Right)
+    assert card.row("bandwidth").box.text() == "91.81 Hz"
+    qtbot.keyClick(card.map, Qt.Key.Key_Down, Qt.KeyboardModifier.ShiftModifier)
+    assert card.row("phase_margin").box.text() == "59.94 deg"
+    desk.compute_now()
+    assert desk.assessment.speed.figures.bandwidth_hz == pytest.approx(91.81)
+    qtbot.keyClick(card.map, Qt.Key.Key_Escape)
+    assert card.row("bandwidth").box.text() == "90 Hz"
+
+
+def test_keys_stop_at_the_edge_of_a_bandwidth(column, desk, qtbot):
+    card = column.speed
+    choose(card, DesignMethod.BANDWIDTH_MARGIN)
+    desk.compute_now()
+    for _ in range(20):
+        qtbot.keyClick(card.map, Qt.Key.Key_PageUp)
+        desk.compute_now()
+        assert desk.assessment.speed.refusal is None
+    card.map.movement.finish()
+
+
+def test_a_bandwidth_that_cannot_be_met_can_be_dragged_back(column, desk, qtbot):
+    card = column.speed
+    choose(card, DesignMethod.BANDWIDTH_MARGIN)
+    desk.set_values({"aims.speed.bandwidth": "900 Hz"})
+    desk.compute_now()
+    assert not card.map.view.met
+    assert "bandwidth 900 Hz and 60.0°, which cannot be met" in plain(card.map.accessibleDescription())
+    at = place(card, hertz=50.0, degrees=60.0)
+    qtbot.mousePress(card.map, LEFT_BUTTON, pos=at)
+    qtbot.mouseRelease(card.map, LEFT_BUTTON, pos=at)
+    desk.compute_now()
+    assert card.map.view.met
+    assert desk.assessment.speed.figures.crossover_hz == pytest.approx(50.0, rel=0.02)
+
+
 def test_a_refused_point_is_shown_as_refused(column, desk):
     desk.set_values({"aims.speed.crossover": "900 Hz"})
     desk.compute_now()
@@ -355,6 +423,7 @@ def test_a_finding_leads_to_what_it_asks_to_move(column, desk, qtbot):
     index = next(k for k, one in enumerate(column.findings.shown) if one.code == "speed-phase-margin-thin")
     row = column.findings.row(index)
     qtbot.mouseClick(row, LEFT_BUTTON)
+    qtbot.mouseClick(row.way, LEFT_BUTTON)
     assert column.speed.map.hasFocus()
     row.setFocus()
     qtbot.keyClick(row, RETURN)
@@ -366,7 +435,7 @@ def test_a_finding_of_another_column_is_told(column, desk, qtbot):
     heard = []
     column.pointed_at.connect(heard.append)
     index = next(k for k, one in enumerate(column.findings.shown) if "speed_window" in one.advice)
-    qtbot.keyClick(column.findings.row(index), Qt.Key.Key_Space)
+    qtbot.keyClick(column.findings.row(index), RETURN)
     assert heard == ["stage.speed_window"]
 
 

@@ -347,10 +347,28 @@ def test_pasted_rows_are_set_once_confirmed(window, desk, answers):
     assert desk.text("machine.inductance") == "0.45 mH"
 
 
-def test_a_size_is_remembered_for_the_next_start(window, answers):
+def test_another_size_is_remembered_and_taken_up_at_once_if_that_is_wanted(window, desk, answers):
+    heard = []
+    window.restart_wanted.connect(lambda: heard.append(True))
+    desk.hold("speed", True)
     window.menu_of_more.scales[150].trigger()
     assert window.memory.habits().scale == 150
-    assert "next start" in answers.told[-1][1]
+    assert "150 %" in answers.restarts[-1]
+    assert "gains that are held" in answers.restarts[-1]
+    assert heard == []
+    answers.restart = True
+    window.menu_of_more.scales[200].trigger()
+    assert heard == [True]
+    window.menu_of_more.scales[100].trigger()
+    assert len(answers.restarts) == 2
+    assert window.memory.habits().scale == 100
+
+
+def test_a_size_that_is_set_outside_goes_first(window, answers, monkeypatch):
+    monkeypatch.setenv("QT_SCALE_FACTOR", "1")
+    window.menu_of_more.scales[150].trigger()
+    assert answers.restarts == []
+    assert "QT_SCALE_FACTOR" in answers.told[-1][1]
     window.menu_of_more.scales[100].trigger()
 
 

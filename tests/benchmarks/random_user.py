@@ -81,6 +81,12 @@ class Answers:
     def printer(self, parent: Any) -> None:
         return None
 
+    def log_to_open(self, parent: Any) -> Path | None:
+        return self._maybe(self._folder / self._rng.choice(("driven.csv", "driven.csv", "empty.csv", "none.csv")))
+
+    def restart_now(self, parent: Any, message: str) -> bool:
+        return self._rng.random() < 0.5
+
     def rows_to_set(self, parent: Any, desk: Any) -> dict[str, str]:
         return self._maybe({"machine.resistance": "0.5 ohm", "machine.max_speed": "7000 rpm"}) or {}
 
@@ -108,7 +114,7 @@ class User:
         from gainbench_app.warming import warm_up_window
         from gainbench_app.widgets.appearance import Appearance
         from gainbench_app.window import Window
-        from gainbench_resources import demo_sheet, demo_sheet_names
+        from gainbench_resources import demo_log, demo_sheet, demo_sheet_names
 
         self.rng = random.Random(seed)
         self.folder = folder
@@ -127,6 +133,8 @@ class User:
         for name in demo_sheet_names():
             sheets.append(folder / f"{name}.bench.toml")
             sheets[-1].write_text(demo_sheet(name).read_text(encoding="utf-8"), encoding="utf-8")
+        (folder / "driven.csv").write_bytes(demo_log("label-unwinder-driven.csv").read_bytes())
+        (folder / "empty.csv").write_bytes(b"")
         file = sheets[0]
         self.desk = Desk(parse_sheet(file.read_text(encoding="utf-8"), file.name))
         self.window = Window(
@@ -159,10 +167,12 @@ class User:
         """One action on one widget that is shown."""
         from PySide6.QtWidgets import QAbstractButton, QComboBox, QLineEdit, QTableView, QWidget
 
+        from gainbench_app.guide.view import GuideView
+        from gainbench_app.what_we_ask.findings import FindingRow
         from gainbench_app.widgets.figure import Figure
         from gainbench_app.widgets.slim_slider import SlimSlider
 
-        kinds = (QAbstractButton, QComboBox, QLineEdit, SlimSlider, Figure, QTableView)
+        kinds = (QAbstractButton, QComboBox, QLineEdit, SlimSlider, Figure, QTableView, FindingRow, GuideView)
         chosen = self.rng.choice(("keys", "menu", *(["widget"] * 18)))
         if chosen == "menu":
             self._menu()
@@ -178,7 +188,7 @@ class User:
             self.application.processEvents()
 
     def _use(self, widget: Any) -> None:
-        from PySide6.QtWidgets import QAbstractButton, QComboBox, QLineEdit, QTableView
+        from PySide6.QtWidgets import QAbstractButton, QAbstractScrollArea, QComboBox, QLineEdit
 
         self.done[type(widget).__name__] += 1
         if self.rng.random() < 0.15:
@@ -194,7 +204,7 @@ class User:
         elif isinstance(widget, QAbstractButton):
             if getattr(widget, "menu", lambda: None)() is None:
                 widget.click()
-        elif isinstance(widget, QTableView):
+        elif isinstance(widget, QAbstractScrollArea):
             self._press(widget.viewport())
         else:
             self._drag(widget)
@@ -249,6 +259,7 @@ class User:
                 (keys.Key_Z, control), (keys.Key_Z, control), (keys.Key_Y, control), (keys.Key_K, control),
                 (keys.Key_1, control), (keys.Key_4, control), (keys.Key_S, control), (keys.Key_E, control),
                 (keys.Key_Slash, control), (keys.Key_1, none), (keys.Key_2, none), (keys.Key_3, none),
+                (keys.Key_5, control), (keys.Key_F1, none),
         )  # fmt: skip
         key, modifier = self.rng.choice(pairs)
         if getattr(widget, "menu", lambda: None)() is not None:
@@ -261,7 +272,7 @@ class User:
         menu = self.window.menu_of_more
         actions = [
             menu.undo, menu.redo, menu.save_as, menu.paste_rows, menu.copy_picture, menu.save_picture, menu.print,
-            menu.shortcuts, *menu.demos.actions(), *menu.scales.values(),
+            menu.shortcuts, menu.guide, *menu.demos.actions(), *menu.scales.values(),
         ]  # fmt: skip
         menu.aboutToShow.emit()
         actions += menu.recent.actions()

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 
 from PySide6.QtCore import QPoint, QRectF, Qt, Signal
-from PySide6.QtGui import QFontMetricsF, QGuiApplication, QKeyEvent, QPainter, QPaintEvent, QResizeEvent
+from PySide6.QtGui import QColor, QFontMetricsF, QGuiApplication, QKeyEvent, QPainter, QPaintEvent, QResizeEvent
 from PySide6.QtWidgets import (
     QAbstractItemView,
     QFrame,
@@ -59,26 +59,33 @@ class _Table(QTableView):
         """Only the cells that have changed, without asking Qt's styles about each of them."""
         delegate = self.itemDelegate()
         assert isinstance(delegate, ShelfDelegate)
-        # Qt asks for one pixel more than has changed, which would paint the next row as well.
-        dirty = event.region().boundingRect().adjusted(0, 1, 0, -1)
+        # All of it is painted here, so that nothing below has to be: a style sheet takes this mark away.
+        self.viewport().setAttribute(Qt.WidgetAttribute.WA_OpaquePaintEvent)
+        dirty = event.region().boundingRect()
         model, current, focused = self.model(), self.currentIndex(), self.hasFocus()
         lines = [(self.rowViewportPosition(row), self.rowHeight(row)) for row in range(model.rowCount())]
         columns = [(self.columnViewportPosition(one), self.columnWidth(one)) for one in range(model.columnCount())]
         with QPainter(self.viewport()) as painter:
+            painter.fillRect(dirty, QColor(delegate.ground))
             for row, (top, height) in enumerate(lines):
                 if top + height <= dirty.top() or top > dirty.bottom():
                     continue
+                if top == dirty.bottom():
+                    # Qt asks for one pixel more than has changed: of the next row that is its rule.
+                    delegate.paint_rule(painter, QRectF(dirty.left(), top, dirty.width(), 1.0))
+                    continue
                 chosen = row == current.row()
-                for column, (left, width) in enumerate(columns):
-                    if left + width > dirty.left() and left <= dirty.right():
-                        delegate.paint_cell(
-                            painter,
-                            QRectF(left, top, width, height),
-                            number=row,
-                            column=column,
-                            chosen=chosen,
-                            focused=focused and chosen and column == current.column(),
-                        )
+                delegate.paint_row(
+                    painter,
+                    row,
+                    cells={
+                        column: QRectF(left, top, width, height)
+                        for column, (left, width) in enumerate(columns)
+                        if left + width > dirty.left() and left <= dirty.right()
+                    },
+                    chosen=chosen,
+                    focused=current.column() if focused and chosen else None,
+                )
 
     def keyPressEvent(self, event: QKeyEvent) -> None:  # noqa: N802
         """Enter recalls, Delete takes off, Alt with the arrows moves."""

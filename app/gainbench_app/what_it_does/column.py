@@ -15,6 +15,7 @@ from gainbench_app.sheet_edits import unit_of
 from gainbench_app.what_it_does.bode import BodePlot
 from gainbench_app.what_it_does.duty_handles import duty_times
 from gainbench_app.what_it_does.headroom import headroom_line
+from gainbench_app.what_it_does.measured_reading import MeasuredReading
 from gainbench_app.what_it_does.spans import Span, SpanChoice, load_span, step_span, whole_span
 from gainbench_app.what_it_does.third_view import ThirdSubject, ThirdView
 from gainbench_app.what_it_does.time_plots import TimePlots, TimeView
@@ -62,7 +63,7 @@ class WhatItDoes(QWidget):
         self._connect_handles()
         for key, word in _SPAN_KEYS.items():
             QShortcut(QKeySequence(key), self).activated.connect(partial(self._choose_span, word))
-        self.headroom = WordLine("headroom", appearance, line_px=22)
+        self.headroom = WordLine("headroom", appearance, line_px=22, ground="paper")
         self.bode = BodePlot(appearance)
         self.loops = Choices(
             "loops of the Bode plot",
@@ -73,11 +74,13 @@ class WhatItDoes(QWidget):
         )
         self.loops.group.buttonClicked.connect(self.refresh)
         self.third = ThirdView(appearance)
+        self.measured = MeasuredReading(desk, self)
         self._lay_out()
         desk.assessed.connect(self.refresh)
         desk.changed.connect(self._show_verdict)
         desk.opened.connect(self._open)
         desk.kept_shown.connect(self._show_kept)
+        self.measured.changed.connect(self.refresh)
         self.refresh()
 
     def _lay_out(self) -> None:
@@ -211,6 +214,9 @@ class WhatItDoes(QWidget):
         span, deviation = self._span(assessment)
         machine, plant = assessment.sheet.rig.machine, assessment.plant
         response = assessment.response
+        found, duty = self.measured.found, assessment.sheet.duty
+        self.plots.measured.show(found, duty=duty, speed_unit=speed_unit, speed_size=speed_size)
+        self.bode.measured.show(found, sheet=assessment.sheet)
         self.plots.show_view(
             TimeView(
                 trace=response.trace if response is not None else None,

@@ -6,12 +6,13 @@ import math
 from dataclasses import dataclass
 
 from PySide6.QtCore import QEvent, QPointF, QRectF, QSize, Qt, Signal
-from PySide6.QtGui import QColor, QFocusEvent, QFontMetricsF, QKeyEvent, QMouseEvent, QPainter, QPaintEvent, QPolygonF
+from PySide6.QtGui import QColor, QFocusEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent, QPolygonF
 from PySide6.QtWidgets import QWidget
 
 from gainbench.model import Duty
-from gainbench_app.theme import SMALL_PX, sized
+from gainbench_app.theme import SMALL_PX
 from gainbench_app.widgets.appearance import Appearance
+from gainbench_app.widgets.hands import Hands
 from gainbench_app.widgets.movement import Movement
 from gainbench_app.widgets.scales import Range, time_text
 
@@ -69,6 +70,7 @@ class DutyHandles(QWidget):
         self._span = Range(low=0.0, high=1.0, step=0.2)
         self._chosen = 0
         self._under: int | None = None
+        self._hands = Hands()
         self.movement = Movement(self)
         self.movement.grabbed.connect(self._grab)
         self.movement.dropped.connect(self.dropped)
@@ -190,6 +192,12 @@ class DutyHandles(QWidget):
         else:
             event.ignore()
 
+    def changeEvent(self, event: QEvent) -> None:  # noqa: N802
+        """Another font has other widths."""
+        super().changeEvent(event)
+        if event.type() == QEvent.Type.FontChange:
+            self._hands.forget()
+
     def focusInEvent(self, event: QFocusEvent) -> None:  # noqa: N802
         """Show which one the keys move."""
         super().focusInEvent(event)
@@ -207,8 +215,8 @@ class DutyHandles(QWidget):
         theme = self._appearance.theme
         with QPainter(self) as painter:
             painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-            painter.setFont(sized(self.font(), SMALL_PX))
-            metrics = QFontMetricsF(painter.font())
+            hand = self._hands.of(self.font(), SMALL_PX)
+            painter.setFont(hand.font)
             free = -1e9
             for index, one in enumerate(self._times):
                 if not self._in_sight(one):
@@ -223,7 +231,7 @@ class DutyHandles(QWidget):
                 painter.setBrush(colour if strong else QColor(theme.card))
                 painter.drawPolygon(QPolygonF(arrow))
                 words = f"{one.name} {time_text(one.at)}" if strong else one.name
-                width = metrics.horizontalAdvance(words)
+                width = hand.width(words)
                 left = min(x + _HALF_PX + 3.0, self.width() - width)
                 if left > free and left > x - 1.0:
                     painter.setPen(QColor(theme.ink if strong else theme.muted))

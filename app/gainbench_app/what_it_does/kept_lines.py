@@ -27,6 +27,13 @@ class KeptLine:
     y: Array
     pattern: tuple[float, ...]
     """Dashes and gaps [px]."""
+    lowest: float
+    """Smallest value."""
+    highest: float
+
+
+def _kept_line(x: Array, y: Array, pattern: tuple[float, ...]) -> KeptLine:
+    return KeptLine(x=x, y=y, pattern=pattern, lowest=float(y.min()), highest=float(y.max()))
 
 
 def time_lines(
@@ -65,7 +72,7 @@ def time_lines(
         ):
             ripple = _LEAST_RIPPLE * float(np.ptp(values))
             drawn = decimated(trace.time[cut], values, columns=columns, least_ripple=ripple)
-            lines.append(KeptLine(x=drawn.x, y=drawn.y, pattern=one.pattern))
+            lines.append(_kept_line(drawn.x, drawn.y, one.pattern))
     return tuple(found[0]), tuple(found[1]), tuple(found[2])
 
 
@@ -76,8 +83,8 @@ def loop_lines(tunings: tuple[ShownTuning, ...], loop: str) -> tuple[tuple[KeptL
         assessed = one.assessment.speed if loop == "speed" else one.assessment.current
         if assessed.curve is not None:
             curve = bode_curve(assessed.curve, assessed.figures)
-            magnitudes.append(KeptLine(x=curve.frequency_hz, y=curve.magnitude_db, pattern=one.pattern))
-            phases.append(KeptLine(x=curve.frequency_hz, y=curve.phase_deg, pattern=one.pattern))
+            magnitudes.append(_kept_line(curve.frequency_hz, curve.magnitude_db, one.pattern))
+            phases.append(_kept_line(curve.frequency_hz, curve.phase_deg, one.pattern))
     return tuple(magnitudes), tuple(phases)
 
 

@@ -13,9 +13,8 @@ from PySide6.QtWidgets import QWidget
 
 from gainbench.assess import Assessment
 from gainbench.assessed import LoopName
-from gainbench.findings.ledger import cost_of, costliest
+from gainbench.findings.ledger import cost_of, costliest_in
 from gainbench.ledger import PhaseLedger, phase_ledger
-from gainbench_app.theme import SMALL_PX, sized
 from gainbench_app.what_it_does.captioned import CAPTION_PX, LEFT_PX, CaptionedFigure
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.figure import Axes, paint_hatched
@@ -38,6 +37,9 @@ _NAMES = {
 _LEAST_DEG = 0.05
 _NAME_PX, _VALUE_PX, _BOTTOM_PX = 128.0, 58.0, 52.0
 _ROW_PX, _LEAST_ROW_PX, _BAR = 27.0, 15.0, 0.62
+_LEFT = int(Qt.AlignmentFlag.AlignVCenter)
+_RIGHT = int(Qt.AlignmentFlag.AlignVCenter | Qt.AlignmentFlag.AlignRight)
+_WRAPPED = int(Qt.AlignmentFlag.AlignTop | Qt.TextFlag.TextWordWrap)
 _DEGREES = re.compile(r"(\d) deg\b")
 
 
@@ -105,12 +107,12 @@ def ledger_rows(assessment: Assessment, loop: LoopName) -> LedgerRows | None:
         loop=loop,
         frequency_hz=ledger.frequency / math.tau,
         rows=(*rows, left),
-        change=_change(assessment, loop, ledger),
+        change=_change(assessment, ledger),
     )
 
 
-def _change(assessment: Assessment, loop: LoopName, ledger: PhaseLedger) -> str:
-    cost = costliest(assessment, loop)
+def _change(assessment: Assessment, ledger: PhaseLedger) -> str:
+    cost = costliest_in(ledger, assessment)
     if cost is None or not cost.advice:
         # The integral part has what the margin leaves it; what else takes most can be changed.
         others = replace(ledger, entries=tuple(one for one in ledger.entries if one.name != "pi"))
@@ -172,7 +174,7 @@ class LedgerView(CaptionedFigure):
         if self._shown is None:
             return
         axes = panels[0]
-        x = float(axes.across(180.0))
+        x = axes.left_of(180.0)
         pen = QPen(QColor(self.theme.breaks), 1.0)
         pen.setDashPattern([3.0, 2.5])
         painter.setPen(pen)
@@ -193,7 +195,8 @@ class LedgerView(CaptionedFigure):
             self.paint_message(painter, "no crossover, no ledger")
             return
         axes = panels[0]
-        painter.setFont(sized(self.font(), SMALL_PX))
+        plain, bold, ink = self.small_font(), self.hand(bold=True).font, QColor(self.theme.ink)
+        painter.setFont(plain)
         painter.setPen(QColor(self.theme.muted))
         painter.drawText(QPointF(LEFT_PX, 16.5), f"{shown.loop} loop at {frequency_text(shown.frequency_hz)}")
         row_px = self._row_px(len(shown.rows))
@@ -201,23 +204,21 @@ class LedgerView(CaptionedFigure):
         for index, row in enumerate(shown.rows):
             middle = axes.box.top() + (index + 0.5) * row_px
             strong = row.kind == "left" or index == under
-            painter.setFont(sized(self.font(), SMALL_PX, bold=strong))
-            painter.setPen(QColor(self.theme.ink))
-            align = int(Qt.AlignmentFlag.AlignVCenter)
-            painter.drawText(QRectF(LEFT_PX, middle - 9.0, _NAME_PX - 6.0, 18.0), align, row.name)
             self._paint_bar(painter, axes, row, middle=middle, height=_BAR * row_px)
-            painter.setFont(sized(self.font(), SMALL_PX, bold=True))
-            painter.setPen(QColor(self.theme.ink))
+            painter.setFont(bold if strong else plain)
+            painter.setPen(ink)
+            painter.drawText(QRectF(LEFT_PX, middle - 9.0, _NAME_PX - 6.0, 18.0), _LEFT, row.name)
+            painter.setFont(bold)
             right = QRectF(axes.box.right(), middle - 9.0, _VALUE_PX, 18.0)
-            painter.drawText(right, align | int(Qt.AlignmentFlag.AlignRight), _degrees(row.degrees))
+            painter.drawText(right, _RIGHT, _degrees(row.degrees))
         note = shown.rows[under].what if under is not None else shown.change
-        painter.setFont(sized(self.font(), SMALL_PX))
+        painter.setFont(plain)
         painter.setPen(QColor(self.theme.muted))
         below = QRectF(LEFT_PX, axes.box.bottom() + 18.0, self.width() - LEFT_PX - 14.0, 34.0)
-        painter.drawText(below, int(Qt.AlignmentFlag.AlignTop | Qt.TextFlag.TextWordWrap), note)
+        painter.drawText(below, _WRAPPED, note)
 
     def _paint_bar(self, painter: QPainter, axes: Axes, row: LedgerRow, *, middle: float, height: float) -> None:
-        left, right = sorted((float(axes.across(row.start)), float(axes.across(row.stop))))
+        left, right = sorted((axes.left_of(row.start), axes.left_of(row.stop)))
         box = QRectF(left, middle - height / 2.0, max(right - left, 1.5), height)
         loop = self._shown.loop if self._shown is not None else "speed"
         colour = getattr(self.theme, loop)

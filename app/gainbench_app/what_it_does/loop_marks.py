@@ -48,11 +48,17 @@ class LoopMarks:
 def bode_curve(curve: LoopCurve, figures: LoopFigures | None) -> BodeCurve:
     """Magnitude and phase for drawing."""
     magnitude = 20.0 * np.log10(np.maximum(np.abs(curve.open_loop), 1e-300))
-    phase = np.degrees(np.unwrap(np.angle(curve.open_loop)))
+    phase = _unwrapped(np.angle(curve.open_loop, deg=True))
     anchor = figures.crossover_hz if figures is not None and figures.crossover_hz is not None else None
     at = float(np.interp(anchor or curve.frequency_hz[0], curve.frequency_hz, phase))
     phase = phase - 360.0 * math.ceil(at / 360.0 - 1e-9)
     return BodeCurve(frequency_hz=curve.frequency_hz, magnitude_db=magnitude, phase_deg=phase)
+
+
+def _unwrapped(degrees: Array) -> Array:
+    """Without jumps of a turn from one frequency to the next."""
+    turns = np.cumsum(np.rint(np.diff(degrees) / 360.0))
+    return np.concatenate((degrees[:1], degrees[1:] - 360.0 * turns))
 
 
 def loop_marks(bode: BodeCurve, figures: LoopFigures | None) -> LoopMarks:
@@ -92,7 +98,8 @@ def _between(values: Array, index: int, share: float) -> float:
 
 
 def _frequency(bode: BodeCurve, index: int, share: float) -> float:
-    return float(math.exp(_between(np.log(bode.frequency_hz), index, share)))
+    before, after = (math.log(float(one)) for one in bode.frequency_hz[index : index + 2])
+    return math.exp(before + share * (after - before))
 
 
 def _phase_mark(bode: BodeCurve, margin: float) -> LengthMark | None:
@@ -109,8 +116,8 @@ def _phase_mark(bode: BodeCurve, margin: float) -> LengthMark | None:
 def _gain_mark(bode: BodeCurve, margin: float) -> LengthMark | None:
     """At the crossing of an odd multiple of 180 degrees whose magnitude is the margin below 0 dB."""
     places: list[LengthMark] = []
-    lowest = math.floor(float(bode.phase_deg.min()) / 360.0) - 1
-    highest = math.ceil(float(bode.phase_deg.max()) / 360.0) + 1
+    lowest = math.ceil((float(bode.phase_deg.min()) - 180.0) / 360.0)
+    highest = math.floor((float(bode.phase_deg.max()) - 180.0) / 360.0)
     for turn in range(lowest, highest + 1):
         for index, share in _crossings(bode.phase_deg, 360.0 * turn + 180.0):
             magnitude = _between(bode.magnitude_db, index, share)

@@ -15,6 +15,8 @@ from gainbench_app.shown_tuning import ShownTuning
 from gainbench_app.theme import SMALL_PX, sized
 from gainbench_app.what_it_does.duty_handles import HEIGHT_PX, SIDE_PX, DutyHandles, DutyTime
 from gainbench_app.what_it_does.kept_lines import KeptLine, paint_kept, time_lines
+from gainbench_app.what_it_does.measured_legend import readings_room
+from gainbench_app.what_it_does.measured_time import TimeOverlay
 from gainbench_app.what_it_does.spans import Span
 from gainbench_app.what_it_does.traces import Array, Drawn, decimated, merged, stretches
 from gainbench_app.widgets.appearance import Appearance
@@ -64,6 +66,8 @@ class _Panel:
     clamped: tuple[tuple[float, float], ...] = ()
     y: Range | None = None
     kept: tuple[KeptLine, ...] = ()
+    measured: tuple[float, ...] = ()
+    """Values that measured lines reach."""
 
 
 class TimePlots(Figure):
@@ -74,7 +78,7 @@ class TimePlots(Figure):
 
     def __init__(self, appearance: Appearance, parent: QWidget | None = None) -> None:
         super().__init__(appearance, parent)
-        self.setMinimumHeight(230)
+        self.setMinimumHeight(200)
         self.setAccessibleName("speed, current and voltage over time")
         self._view: TimeView | None = None
         self._parts = (_Panel(), _Panel(), _Panel())
@@ -84,9 +88,11 @@ class TimePlots(Figure):
         self._kept_curves: tuple[ShownTuning, ...] = ()
         self._kept_of: tuple[object, ...] = ()
         self.handles = DutyHandles(appearance, self)
+        self._unit_at: tuple[object, ...] = ()
         self.speed_unit = QPushButton("", self)
         self.speed_unit.setProperty("flat", True)
         self.speed_unit.setFont(sized(self.font(), SMALL_PX))
+        self.measured = TimeOverlay(appearance, self, left=_LEFT - 14.0, changed=self._refill)
 
     @property
     def kept_curves(self) -> tuple[ShownTuning, ...]:
@@ -97,8 +103,12 @@ class TimePlots(Figure):
         """Draw other tunings below the live curves."""
         if tunings != self._kept_curves:
             self._kept_curves = tunings
-            self._prepare()
-            self.update()
+            self._refill()
+
+    def _refill(self) -> None:
+        """Other curves beside the live ones."""
+        self._prepare()
+        self.update()
 
     @property
     def view(self) -> TimeView | None:
@@ -111,17 +121,22 @@ class TimePlots(Figure):
         self._prepare()
         self.handles.show_times(view.times, self._time_range())
         self._place_unit()
-        self.update()
+        self.update_curves()
 
     def _place_unit(self) -> None:
         """The unit of speed stands below the name of its panel."""
         unit = self._view.speed_unit if self._view is not None else ""
+        panels = self.panels()
+        at = (unit, panels[0].box.getRect())
+        if at == self._unit_at:
+            return
+        self._unit_at = at
         if self.speed_unit.text() != unit:
             self.speed_unit.setText(unit)
             self.speed_unit.setAccessibleName(f"unit of speed: {unit}")
             self.speed_unit.setToolTip("show speed in another unit")
         size = self.speed_unit.sizeHint()
-        middle = round(self.panels()[0].box.center().y())
+        middle = round(panels[0].box.center().y())
         self.speed_unit.setGeometry(round(_NAME_RIGHT) + 4 - size.width(), middle - 4, size.width(), 21)
 
     def _prepare(self) -> None:
@@ -140,6 +155,9 @@ class TimePlots(Figure):
                 part.clamped = ()
             return
         self._fill_kept(view)
+        self.measured.prepare(view.span, speed_size=view.speed_size, columns=self._columns)
+        for part, values in zip(self._parts, self.measured.extremes, strict=True):
+            part.measured = values
         self._fill(view, view.trace)
 
     def _fill_kept(self, view: TimeView) -> None:
@@ -179,8 +197,8 @@ class TimePlots(Figure):
 
     def _set_range(self, part: _Panel, *, deviation: bool) -> None:
         assert part.drawn is not None
-        low = min([part.drawn.lowest, *(float(line.y.min()) for line in part.kept)])
-        high = max([part.drawn.highest, *(float(line.y.max()) for line in part.kept)])
+        low = min([part.drawn.lowest, *part.measured, *(line.lowest for line in part.kept)])
+        high = max([part.drawn.highest, *part.measured, *(line.highest for line in part.kept)])
         if part.reference is not None and not deviation:
             low, high = min(low, float(part.reference[1].min())), max(high, float(part.reference[1].max()))
         if not deviation:
@@ -193,11 +211,15 @@ class TimePlots(Figure):
         most = 4 if part is self._parts[0] else 3
         part.y = stepped(part.y, low=low, high=high, most=most, pad=0.06 if deviation or part.limit is None else 0.0)
 
+    def update(self) -> None:
+        """Paint anew, but for the legend: its words do not follow the hand."""
+        super().update(0, 0, self.width(), self.height() - self.measured.legend.height_px)
+
     # Painting
 
     def panels(self) -> list[Axes]:
         """Three panels, one above the other."""
-        height = max(90.0, self.height() - _TOP - _BOTTOM - 2.0 * _GAP)
+        height = max(90.0, self.height() - _TOP - _BOTTOM - 2.0 * _GAP - self.measured.legend.height_px)
         unit = height / sum(_SHARES)
         x = self._time_range()
         found = []
@@ -260,12 +282,19 @@ class TimePlots(Figure):
         """Ripple, references, curves, and when a limit was sat on."""
         theme = self.theme
         for axes, part, name in zip(panels, self._parts, _NAMES, strict=True):
+            painter.save()
+            painter.setClipRect(axes.box.adjusted(0.0, -1.5, 1.0, 1.5))
+            for band in part.drawn.bands if part.drawn is not None else ():
+                colour = theme.mixed(getattr(theme, name), 0.36)
+                paint_band(painter, axes, x=band.x, low=band.low, high=band.high, colour=colour)
+            painter.restore()
+        if self._view is not None and self._view.trace is not None:
+            self.measured.paint(painter, panels, theme)
+        for axes, part, name in zip(panels, self._parts, _NAMES, strict=True):
             colour = getattr(theme, name)
             painter.save()
             painter.setClipRect(axes.box.adjusted(0.0, -1.5, 1.0, 1.5))
             if part.drawn is not None:
-                for band in part.drawn.bands:
-                    paint_band(painter, axes, x=band.x, low=band.low, high=band.high, colour=theme.mixed(colour, 0.36))
                 if part.reference is not None:
                     x, y = part.reference
                     paint_dashed(painter, axes, x=x, y=y, colour=theme.ink)
@@ -277,6 +306,7 @@ class TimePlots(Figure):
         if self._view is not None and self._view.trace is None:
             self._paint_message(painter, panels)
         self._paint_cursor(painter, panels)
+        self.measured.paint_legend(painter, theme)
 
     def _paint_clamped(self, painter: QPainter, axes: Axes, part: _Panel) -> None:
         for start, stop in part.clamped:
@@ -310,9 +340,14 @@ class TimePlots(Figure):
         index = min(max(int(np.searchsorted(view.trace.time, time)), 0), len(view.trace.time) - 1)
         trace = view.trace
         values = (trace.speed[index] / view.speed_size, trace.current[index], trace.voltage[index])
-        for axes, value, name in zip(panels, values, _NAMES, strict=True):
-            reading = (number_text(float(value), axes.y.step / 50.0), getattr(self.theme, name))
-            self.paint_readings(painter, axes, readings=[reading], right=_NAME_RIGHT)
+        ends = [*(axes.box.center().y() - 18.0 for axes in panels[1:]), self.height() - self.measured.legend.height_px]
+        for place, (axes, value, name, end) in enumerate(zip(panels, values, _NAMES, ends, strict=True)):
+            digits, colour = axes.y.step / 50.0, getattr(self.theme, name)
+            readings = [(number_text(float(value), digits), colour)]
+            size = view.speed_size if place == 0 else 1.0
+            measured = self.measured.readings(place, time, size=size, step=digits, colour=colour)
+            readings += measured[: readings_room(axes, end) - 1]
+            self.paint_readings(painter, axes, readings=readings, right=_NAME_RIGHT)
         self.paint_hair(painter, panels, x=at.x(), words=f"{time * 1e3:.4g}\N{NO-BREAK SPACE}ms")
 
     # Dragging a span
@@ -342,5 +377,6 @@ class TimePlots(Figure):
         left, width = round(_LEFT) - SIDE_PX, round(self.width() - _LEFT - _RIGHT) + 2 * SIDE_PX
         self.handles.setGeometry(left, round(_TOP) - HEIGHT_PX, width, HEIGHT_PX)
         self._place_unit()
+        self.measured.legend.place(self.width(), self.height())
         self._ranges_of = ()
         self._prepare()

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,16 +11,6 @@ Array = NDArray[np.float64]
 
 _LEAST_PER_COLUMN = 6
 """Below so many ticks in a column every tick is drawn."""
-_NEAR = 25
-"""Columns that are looked at together."""
-_RIPPLE_TURNS = 5
-"""A curve that turns as often as this within them is ripple there."""
-_CLOSED, _OPENED = 24, 10
-"""Gaps in ripple of fewer columns are ripple too, stretches of fewer are not."""
-_EVENT = 4.0
-"""A column that spans as many times what ripple usually spans is an event of its own, and never hidden in a band."""
-_SMOOTHED = 5
-"""Columns over which the edges and the mean line of ripple are taken, so that they do not beat with the columns."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -76,47 +65,12 @@ def decimated(time: Array, values: Array, *, columns: int, least_ripple: float) 
     per = -(-count // max(1, columns))
     if per < _LEAST_PER_COLUMN:
         return Drawn(x=time, y=values)
-    from gainbench.kernels.columns import FIRST, HIGH, LAST, LOW, MEAN, TURNS, band_edges, column_figures
+    from gainbench.kernels.drawn_columns import drawn_columns
 
-    figures = column_figures(np.ascontiguousarray(values), per)
-    whole = figures.shape[1]
-    low, high = figures[LOW], figures[HIGH]
-    turns = figures[TURNS] * (high - low > least_ripple)
-    ripple = _joined(np.convolve(turns, np.ones(_NEAR), mode="same") >= _RIPPLE_TURNS - 0.5)
-    if turns.any():
-        ripple &= high - low <= _EVENT * float(np.median((high - low)[turns > 0]))
-    starts = np.minimum(np.arange(whole) * per, count - 1)
-    centre = time[np.minimum(starts + per // 2, count - 1)]
-    first = np.minimum(starts + figures[FIRST].astype(np.int64), count - 1)
-    last = np.minimum(starts + figures[LAST].astype(np.int64), count - 1)
-    x = np.stack((time[first], time[last]), axis=1)
-    y = np.stack((values[first], values[last]), axis=1)
-    if not ripple.any():
-        return Drawn(x=x.ravel(), y=y.ravel())
-    mean = _averaged(figures[MEAN], ripple)
-    low_edge, high_edge = band_edges(figures, mean, _SMOOTHED // 2)
-    x[ripple] = centre[ripple, None]
-    y[ripple] = mean[ripple, None]
-    return Drawn(x=x.ravel(), y=y.ravel(), bands=tuple(_bands(centre, low_edge, high_edge, ripple)))
-
-
-def _joined(ripple: NDArray[np.bool_]) -> NDArray[np.bool_]:
-    """Without short gaps, and then without short stretches."""
-    joined = ripple.copy()
-    for wanted, longest in ((False, _CLOSED), (True, _OPENED)):
-        edges = np.flatnonzero(np.diff(joined.astype(np.int8))) + 1
-        for start, stop in pairwise(edges.tolist()):
-            if bool(joined[start]) is wanted and stop - start < longest:
-                joined[start:stop] = not wanted
-    return joined
-
-
-def _averaged(mean: Array, ripple: NDArray[np.bool_]) -> Array:
-    """The mean over neighbouring columns of ripple."""
-    weights = np.ones(_SMOOTHED)
-    share = np.convolve(ripple.astype(float), weights, mode="same")
-    total = np.convolve(np.where(ripple, mean, 0.0), weights, mode="same")
-    return np.where(ripple, total / np.maximum(share, 1.0), mean)
+    # A copy may be written to: arrays of the other kind would be compiled for once more.
+    ticks, line, centres, edges, ripple = drawn_columns(np.array(values), per, least_ripple)
+    bands = tuple(_bands(time[centres], *edges, ripple)) if ripple.any() else ()
+    return Drawn(x=time[ticks], y=line, bands=bands)
 
 
 def _bands(x: Array, low: Array, high: Array, ripple: NDArray[np.bool_]) -> list[Band]:
@@ -150,7 +104,5 @@ def merged(intervals: list[tuple[float, float]], gap: float) -> list[tuple[float
 
 def warm_up() -> None:
     """Compile, or load from the disk cache, what decimates traces; a window calls it off its own thread."""
-    from gainbench.kernels.columns import MEAN, band_edges, column_figures
-
-    figures = column_figures(np.sin(np.arange(64.0)), _LEAST_PER_COLUMN)
-    band_edges(figures, figures[MEAN], _SMOOTHED // 2)
+    ticks = np.arange(64.0)
+    decimated(ticks, np.sin(ticks), columns=1, least_ripple=0.0)

@@ -31,6 +31,12 @@ class Entry:
     """Whether it can have a tolerance."""
 
 
+_BESIDE_TEXT_PX = 14
+"""What a box needs beside its text."""
+_MOST_MORE_PX = 26
+"""What a box may take from its name."""
+
+
 class _Name(QLabel):
     """A name that gives way: it is cut with dots before the box is, and says itself whole when pointed at."""
 
@@ -71,6 +77,7 @@ class EntryRow(QWidget):
             box.setPlaceholderText(entry.default)
             box.committed.connect(self._committed)
             self.box = box
+        self._box_width = box_width
         self.box.setFixedWidth(box_width)
         self.box.setToolTip(self._tip)
         name.setBuddy(self.box)
@@ -100,6 +107,7 @@ class EntryRow(QWidget):
             self.box.show_word(text if text is not None else self.entry.default or None)
         else:
             self.box.show_text(text or "")
+            self._make_room(text or "")
         self.box.mark(problem or "")
         why = "; ".join(one for one in (problem, f"tolerance: {tolerance_problem}" if tolerance_problem else "") if one)
         if self.reason.text() != why:
@@ -107,6 +115,13 @@ class EntryRow(QWidget):
         self.reason.setVisible(bool(why))
         if isinstance(self.tolerance, ToleranceBox):
             self.tolerance.show_tolerance(tolerance, tolerance_problem or "")
+
+    def _make_room(self, text: str) -> None:
+        """The name gives way to a value that does not fit."""
+        wanted = self.box.fontMetrics().horizontalAdvance(text) + _BESIDE_TEXT_PX
+        width = min(max(self._box_width, wanted), self._box_width + _MOST_MORE_PX)
+        if self.box.width() != width:
+            self.box.setFixedWidth(width)
 
     def _committed(self, text: str) -> None:
         self.edited.emit(self.entry.path, text if text else None)

@@ -21,6 +21,7 @@ class LevelMark(QWidget):
         self._appearance = appearance
         self._level: Level | None = Level.HOLDS
         self._size = size
+        self._tell()
         self.setSizePolicy(QSizePolicy.Policy.Fixed, QSizePolicy.Policy.Fixed)
         appearance.changed.connect(self.update)
 
@@ -31,11 +32,15 @@ class LevelMark(QWidget):
 
     def show_level(self, level: Level | None) -> None:
         """Show a judgement; None where there is none yet."""
-        self._level = level
-        words = WORDS[level] if level is not None else "not judged"
+        if level is not self._level:
+            self._level = level
+            self._tell()
+            self.update()
+
+    def _tell(self) -> None:
+        words = WORDS[self._level] if self._level is not None else "not judged"
         self.setAccessibleName(words)
         self.setToolTip(words)
-        self.update()
 
     def sizeHint(self) -> QSize:  # noqa: N802
         """A square."""

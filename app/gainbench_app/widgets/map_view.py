@@ -25,6 +25,8 @@ class MapPoint:
     margin: float
     """[rad]."""
     name: str = ""
+    bandwidth: float | None = None
+    """What is asked for in place of the crossover, which then follows [rad/s]."""
 
     @property
     def words(self) -> str:
@@ -116,7 +118,11 @@ def told(view: MapView | None) -> str:
     words = []
     if view.point is not None:
         state = "asked for" if view.asked else "reached"
-        words.append(f"{state}: {view.point.words}" + ("" if view.met else ", which cannot be met"))
+        what = view.point.words
+        if view.point.bandwidth is not None:
+            asked = f"bandwidth {frequency_text(view.point.bandwidth / math.tau)}"
+            what = f"{asked}, {what}" if view.met else f"{asked} and {math.degrees(view.point.margin):.1f}°"
+        words.append(f"{state}: {what}" + ("" if view.met else ", which cannot be met"))
         top = largest_margin(view, view.point.crossover)
         words.append("no margin can be met there" if top is None else f"largest margin there {top:.1f}°")
     words += [f"kept {one.name}: {one.words}" for one in view.kept]

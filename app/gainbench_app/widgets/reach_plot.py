@@ -39,6 +39,8 @@ class ReachPlot(Figure):
     grabbed = Signal()
     moved = Signal(float, float)
     """Crossover [rad/s] and margin [rad] that are asked for."""
+    stepped = Signal(float, float)
+    """Bandwidth [rad/s] and margin [rad] that are asked for by keys, where the map asks for a bandwidth."""
     dropped = Signal()
     taken_back = Signal()
 
@@ -89,6 +91,13 @@ class ReachPlot(Figure):
             if point != self._view.point:
                 self._view = replace(self._view, point=point)
                 self.update()
+
+    def show_asked(self, bandwidth: float, margin: float) -> None:
+        """As :meth:`show_point`, of a bandwidth, whose crossover is not known yet."""
+        point = self._view.point if self._view is not None else None
+        if point is not None and (point.bandwidth, point.margin) != (bandwidth, margin):
+            self._view = replace(self._view, point=replace(point, bandwidth=bandwidth, margin=margin))
+            self.update()
 
     # Where things are
 
@@ -265,7 +274,7 @@ class ReachPlot(Figure):
             self.update()
 
     def wheelEvent(self, event: QWheelEvent) -> None:  # noqa: N802
-        """The wheel moves the crossover, only with focus; else it scrolls the column."""
+        """The wheel moves the crossover or bandwidth, only with focus; else it scrolls the column."""
         turns = event.angleDelta().y() / 120.0
         if not self.hasFocus() or not turns or not self._can_move():
             event.ignore()
@@ -275,7 +284,7 @@ class ReachPlot(Figure):
         event.accept()
 
     def keyPressEvent(self, event: QKeyEvent) -> None:  # noqa: N802
-        """Arrow keys 1 %, with Shift 0.1 %, Page keys 10 % of the crossover; Esc takes a movement back."""
+        """Arrow keys 1 %, with Shift 0.1 %, Page keys 10 % of the crossover or bandwidth; Esc takes a movement back."""
         if event.key() == Qt.Key.Key_Escape and self.movement.take_back():
             self.update()
         elif event.key() in _STEPS and self._can_move():
@@ -290,9 +299,13 @@ class ReachPlot(Figure):
         if point is None or self.movement.by_hand:
             return
         self.movement.nudge()
-        crossover = point.crossover * (1.0 + across / 100.0)
+        factor = 1.0 + across / 100.0
         margin = point.margin + max(point.margin, _LEAST_STEP_OF) * up / 100.0
-        self.moved.emit(crossover, min(max(margin, 0.0), math.pi / 2.0))
+        margin = min(max(margin, 0.0), math.pi / 2.0)
+        if point.bandwidth is not None:
+            self.stepped.emit(point.bandwidth * factor, margin)
+        else:
+            self.moved.emit(point.crossover * factor, margin)
 
     def focusInEvent(self, event: QFocusEvent) -> None:  # noqa: N802
         """Show the ring of the focus."""

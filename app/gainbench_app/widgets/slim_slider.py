@@ -9,6 +9,7 @@ from PySide6.QtGui import QColor, QFocusEvent, QKeyEvent, QMouseEvent, QPainter,
 from PySide6.QtWidgets import QAbstractSlider, QSizePolicy, QWidget
 
 from gainbench_app.widgets.appearance import Appearance
+from gainbench_app.widgets.grounded import Grounded
 from gainbench_app.widgets.movement import Movement
 
 _STEPS = 10_000
@@ -18,7 +19,7 @@ _DOWN = (Qt.Key.Key_Left, Qt.Key.Key_Down)
 _PAGES = {Qt.Key.Key_PageUp: 10.0, Qt.Key.Key_PageDown: -10.0}
 
 
-class SlimSlider(QAbstractSlider):
+class SlimSlider(Grounded, QAbstractSlider):
     """Moves a number between two ends. It shows what it is told to show: the owner may stop it anywhere."""
 
     grabbed = Signal()
@@ -178,6 +179,7 @@ class SlimSlider(QAbstractSlider):
         theme = self._appearance.theme
         colour = QColor(getattr(theme, self._colour) if self.isEnabled() else theme.outline)
         with QPainter(self) as painter:
+            painter.fillRect(self.rect(), QColor(theme.card))
             painter.setRenderHint(QPainter.RenderHint.Antialiasing)
             middle = self.height() / 2.0
             x = _RADIUS + self._share(self._number) * (self.width() - 2.0 * _RADIUS)

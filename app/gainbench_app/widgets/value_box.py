@@ -3,8 +3,11 @@
 from __future__ import annotations
 
 from PySide6.QtCore import QEvent, Qt, Signal
-from PySide6.QtGui import QFocusEvent, QKeyEvent, QKeySequence
+from PySide6.QtGui import QColor, QFocusEvent, QKeyEvent, QKeySequence, QPainter, QPaintEvent
 from PySide6.QtWidgets import QLineEdit, QWidget
+
+from gainbench_app.widgets.appearance import Appearance
+from gainbench_app.widgets.grounded import Grounded
 
 
 class ValueBox(QLineEdit):
@@ -80,3 +83,17 @@ class ValueBox(QLineEdit):
             self._shown = text
             self.setModified(False)
             self.committed.emit(text)
+
+
+class CardBox(Grounded, ValueBox):
+    """A box on a card, for a value that changes with every frame."""
+
+    def __init__(self, name: str, appearance: Appearance, parent: QWidget | None = None) -> None:
+        super().__init__(name, parent)
+        self._appearance = appearance
+
+    def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802
+        """The card below the box as well."""
+        with QPainter(self) as painter:
+            painter.fillRect(self.rect(), QColor(self._appearance.theme.card))
+        super().paintEvent(event)

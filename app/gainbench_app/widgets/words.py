@@ -6,11 +6,13 @@ from dataclasses import dataclass
 from itertools import takewhile
 
 from PySide6.QtCore import QEvent, QLineF, QSize, Qt, QTimer
-from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QPaintEvent, QPen, QResizeEvent
+from PySide6.QtGui import QColor, QPainter, QPaintEvent, QPen, QResizeEvent
 from PySide6.QtWidgets import QSizePolicy, QWidget
 
-from gainbench_app.theme import SMALL_PX, sized
+from gainbench_app.theme import SMALL_PX
 from gainbench_app.widgets.appearance import Appearance
+from gainbench_app.widgets.grounded import Grounded
+from gainbench_app.widgets.hands import Hand, Hands
 
 MOVED_MS = 900
 """So long a number that moved is underlined."""
@@ -31,24 +33,17 @@ class Piece:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class _Hand:
-    """A font, and how wide words are in it."""
-
-    font: QFont
-    metrics: QFontMetricsF
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
 class _Placed:
     """A piece where it is painted."""
 
     piece: Piece
+    hand: Hand
     x: float
     words: str
     width: float
 
 
-class WordLine(QWidget):
+class WordLine(Grounded, QWidget):
     """One line of pieces, or a few lines; what does not fit is cut at the right and told when pointed at."""
 
     def __init__(
@@ -59,14 +54,16 @@ class WordLine(QWidget):
         lines: int = 1,
         line_px: int = 18,
         tells_moves: bool = False,
+        ground: str = "card",
         parent: QWidget | None = None,
     ) -> None:
         super().__init__(parent)
         self._name = name
         self._appearance = appearance
+        self._ground = ground
         self._pieces: tuple[tuple[Piece, ...], ...] = ()
         self._rows: list[list[_Placed]] = []
-        self._fonts: dict[tuple[int, bool], _Hand] = {}
+        self._hands = Hands()
         self._line_px = line_px
         self._least = self._most = lines
         self._tells_moves = tells_moves
@@ -127,7 +124,7 @@ class WordLine(QWidget):
         """Another font has other widths."""
         super().changeEvent(event)
         if event.type() == QEvent.Type.FontChange:
-            self._fonts.clear()
+            self._hands.forget()
             self._fit()
 
     def _fit(self) -> None:
@@ -148,7 +145,8 @@ class WordLine(QWidget):
         room = float(self.width())
         for line in self._pieces:
             rows.append([])
-            widths = [self._hand(piece).metrics.horizontalAdvance(piece.text) for piece in line]
+            hands = [self._hands.of(self.font(), piece.size, bold=piece.strong) for piece in line]
+            widths = [hand.width(piece.text) for hand, piece in zip(hands, line, strict=True)]
             x = 0.0
             for index, piece in enumerate(line):
                 gap = piece.gap
@@ -161,31 +159,24 @@ class WordLine(QWidget):
                 x += gap
                 words, width = piece.text, widths[index]
                 if x + width > room:
-                    metrics = self._hand(piece).metrics
+                    metrics = hands[index].metrics
                     words = metrics.elidedText(words, Qt.TextElideMode.ElideRight, max(0.0, room - x))
-                    width = metrics.horizontalAdvance(words)
-                rows[-1].append(_Placed(piece=piece, x=x, words=words, width=width))
+                    width = hands[index].width(words)
+                rows[-1].append(_Placed(piece=piece, hand=hands[index], x=x, words=words, width=width))
                 x += width
         return rows
-
-    def _hand(self, piece: Piece) -> _Hand:
-        """Font and widths of a piece; to make them anew for every word of every frame takes longer than to paint."""
-        key = (piece.size, piece.strong)
-        if key not in self._fonts:
-            font = sized(self.font(), piece.size, bold=piece.strong)
-            self._fonts[key] = _Hand(font=font, metrics=QFontMetricsF(font))
-        return self._fonts[key]
 
     def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802
         """Pieces from left to right on a common base line."""
         theme = self._appearance.theme
         ink, muted = QColor(theme.ink), QColor(theme.muted)
         with QPainter(self) as painter:
+            painter.fillRect(self.rect(), QColor(getattr(theme, self._ground)))
             for row, line in enumerate(self._rows):
                 base = (row + 1) * self._line_px - 5.0
                 for one in line:
                     piece = one.piece
-                    painter.setFont(self._hand(piece).font)
+                    painter.setFont(one.hand.font)
                     painter.setPen(ink if piece.strong else muted)
                     painter.drawText(int(one.x), int(base), one.words)
                     if piece.strong and piece.text in self._moved:

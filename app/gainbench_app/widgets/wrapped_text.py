@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from PySide6.QtCore import QEvent, QRectF, QSize, Qt
-from PySide6.QtGui import QColor, QFontMetricsF, QPainter, QPaintEvent, QResizeEvent
+from PySide6.QtGui import QColor, QFontMetricsF, QPainter, QPaintEvent, QResizeEvent, QShowEvent
 from PySide6.QtWidgets import QSizePolicy, QWidget
 
 from gainbench_app.theme import BODY_PX, SMALL_PX, sized
 from gainbench_app.widgets.appearance import Appearance
 
 _FLAGS = int(Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignTop | Qt.TextFlag.TextWordWrap)
+_LINE = int(Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignTop)
 _ROOM = 1e5
 
 
@@ -21,6 +22,7 @@ class WrappedText(QWidget):
         self._appearance = appearance
         self._strong = strong
         self._text = ""
+        self._flags = _LINE
         self._choose_font()
         self.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Fixed)
         appearance.changed.connect(self.update)
@@ -44,8 +46,20 @@ class WrappedText(QWidget):
         self._hand = sized(self.font(), BODY_PX if self._strong else SMALL_PX, bold=self._strong)
         self._metrics = QFontMetricsF(self._hand)
 
+    def showEvent(self, event: QShowEvent) -> None:  # noqa: N802
+        """What was hidden while its text changed is fitted now."""
+        super().showEvent(event)
+        self._fit()
+
     def _fit(self) -> None:
-        box = self._metrics.boundingRect(QRectF(0.0, 0.0, max(1.0, self.width()), _ROOM), _FLAGS, self._text)
+        if self.isHidden():
+            return
+        width = max(1.0, self.width())
+        # One line is measured and painted in a third of the time.
+        self._flags = (
+            _LINE if "\n" not in self._text and self._metrics.horizontalAdvance(self._text) <= width else _FLAGS
+        )
+        box = self._metrics.boundingRect(QRectF(0.0, 0.0, width, _ROOM), self._flags, self._text)
         height = round(box.height() + 0.49) if self._text else 0
         if height != self.height() or height != self.minimumHeight():
             self.setFixedHeight(height)
@@ -69,4 +83,4 @@ class WrappedText(QWidget):
         with QPainter(self) as painter:
             painter.setFont(self._hand)
             painter.setPen(QColor(theme.ink if self._strong else theme.muted))
-            painter.drawText(QRectF(self.rect()), _FLAGS, self._text)
+            painter.drawText(QRectF(self.rect()), self._flags, self._text)

@@ -56,9 +56,25 @@ def costliest(case: Assessed, name: LoopName) -> Cost | None:
         None where there is no ledger, or nothing beside the plant takes as much as a degree.
     """
     ledger = phase_ledger(case, name)
-    if ledger is None:
-        return None
-    own = case.current if name == "current" else case.speed
+    return None if ledger is None else costliest_in(ledger, case)
+
+
+def costliest_in(ledger: PhaseLedger, case: Assessed) -> Cost | None:
+    """The same of a ledger that is drawn up already.
+
+    Parameters
+    ----------
+    ledger : PhaseLedger
+        Of a loop of the case, at its crossover.
+    case : Assessed
+        What is judged, or an assessment.
+
+    Returns
+    -------
+    Cost or None
+        None where nothing beside the plant takes as much as a degree.
+    """
+    own = case.current if ledger.loop == "current" else case.speed
     cost = cost_of(ledger, case.sheet.rig.stage)
     if cost is not None and cost.name == "pi" and own.asked_crossover is not None:
         # A design for a margin gives the integral part all that is left of it.

@@ -31,13 +31,12 @@ def column_figures(values: NDArray[np.float64], per: int) -> NDArray[np.float64]
         for step in range(per):
             value = values[min(start + step, count - 1)]
             total += value
-            if value < low:
-                low, lowest = value, step
-            if value > high:
-                high, highest = value, step
+            # Without branches: on ripple every guess of the processor would be wrong.
+            lowest = step if value < low else lowest
+            highest = step if value > high else highest
+            low, high = min(low, value), max(high, value)
             change = value - before
-            if step > 1 and change * slope < 0.0:
-                turns += 1
+            turns += 1 if change * slope < 0.0 else 0
             slope = change
             before = value
         found[0, column] = low

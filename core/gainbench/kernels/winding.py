@@ -71,9 +71,7 @@ def traced(
 
 
 @compiled
-def growth(
-    plant: SampledPlant, kp: float, ki_period: float, rule: int, slow: float, w: NDArray[np.float64]
-) -> float:
+def growth(plant: SampledPlant, kp: float, ki_period: float, rule: int, slow: float, w: NDArray[np.float64]) -> float:
     """Growth of the phase along the upper half circle, over pi; ``w`` is the rising grid to look on."""
     reduced = hessenberg(plant)
     fed = fed_part(reduced)

@@ -2,6 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+from functools import cache
+from types import MappingProxyType
+
 from gainbench.errors import SheetError
 from gainbench.sheetfile.entries import Count, EntryError, Flag, Gain, GainValue, Number, Quantity, shown, typed_number
 from gainbench.sheetfile.problems import refused
@@ -9,9 +13,11 @@ from gainbench.sheetfile.tables import ENTRIES
 from gainbench.units import Dimension
 
 
-def quantity_paths() -> dict[str, Dimension]:
+@cache
+def quantity_paths() -> Mapping[str, Dimension]:
     """Every quantity and number of a sheet by its dotted path, and its dimension."""
-    return {path: entry.dimension for path, entry in ENTRIES.items() if isinstance(entry, Quantity | Number | Gain)}
+    found = {path: entry.dimension for path, entry in ENTRIES.items() if isinstance(entry, Quantity | Number | Gain)}
+    return MappingProxyType(found)
 
 
 def read_entry(path: str, text: str) -> float | int | bool | str:
