@@ -13,8 +13,6 @@ Array = NDArray[np.float64]
 
 ENOUGH_PX = 12.0
 """Words this far from a curve are far enough."""
-_LOOKS = 9
-"""Places along words where curves are looked for."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -37,7 +35,12 @@ class WordGround:
         self._right, self._bottom = box.right(), box.bottom()
         columns = np.arange(np.floor(box.left()), np.ceil(box.right()) + 1.0)
         self._first = int(columns[0])
-        self._heights = [np.interp(columns, across, down, right=np.inf).tolist() for across, down in curves]
+        # By pixel columns, up to where a curve ends.
+        self._heights = [
+            np.interp(columns[: max(0, int(across[-1]) - self._first + 1)], across, down).tolist()
+            for across, down in curves
+            if across.size
+        ]
         self._taken: list[tuple[float, float, float, float]] = []
 
     def take(self, box: QRectF) -> None:
@@ -77,9 +80,9 @@ class WordGround:
             if left < one[2] and one[0] < right and top < one[3] and one[1] < bottom:
                 return -1.0
         room = ENOUGH_PX
-        start, step = left - self._first + 0.5, width / (_LOOKS - 1)
+        start, end = int(left + 0.5) - self._first, int(right + 0.5) - self._first + 1
         for heights in self._heights:
-            for look in range(_LOOKS):
-                away = abs(heights[int(start + look * step)] - middle)
-                room = min(room, away)
+            along = heights[start:end]
+            if along:
+                room = min(room, max(0.0, min(along) - middle, middle - max(along)))
         return room

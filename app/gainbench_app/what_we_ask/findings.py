@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 
-from PySide6.QtCore import QEvent, QRectF, Qt, Signal
+from PySide6.QtCore import QEvent, QRectF, Qt, QTimer, Signal
 from PySide6.QtGui import QColor, QEnterEvent, QFocusEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent, QPen
 from PySide6.QtWidgets import QHBoxLayout, QPushButton, QSizePolicy, QVBoxLayout, QWidget
 
@@ -15,16 +15,19 @@ from gainbench_app.theme import SMALL_PX
 from gainbench_app.what_we_ask.finding_links import what_to_move
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.card import Card
+from gainbench_app.widgets.grounded import Grounded
 from gainbench_app.widgets.level_mark import WORDS, LevelMark
 from gainbench_app.widgets.revealing import reveal
 from gainbench_app.widgets.wrapped_text import WrappedText
 
+_RESTS_MS = 120
+"""After the last change of a finding's numbers."""
 _UNIT = re.compile(r"(?<=\d) (?=(?:%|°|[GMkmµ]?[A-Za-z]{1,3})\b|%)")
 _MICRO = re.compile(r"(\d )us\b")
 _DEGREES = re.compile(r"(?<=\d) deg\b")
 
 
-class FindingRow(QWidget):
+class FindingRow(Grounded, QWidget):
     """One finding: its statement in sight, its reason and the way to its entry when it is open.
 
     It is filled anew rather than made anew.
@@ -38,7 +41,12 @@ class FindingRow(QWidget):
         super().__init__(parent)
         self._appearance = appearance
         self._leads_to = ""
+        self._sheet: Sheet | None = None
         self.finding: Finding | None = None
+        self._resting = QTimer(self)
+        self._resting.setSingleShot(True)
+        self._resting.setInterval(_RESTS_MS)
+        self._resting.timeout.connect(self._tell_all)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setCursor(Qt.CursorShape.PointingHandCursor)
         line = QHBoxLayout(self)
@@ -71,16 +79,29 @@ class FindingRow(QWidget):
     def show_finding(self, finding: Finding, *, sheet: Sheet, opened: bool) -> None:
         """Show another finding, and what it leads to in a sheet."""
         if finding != self.finding:
-            self.finding = finding
-            self._leads_to = what_to_move(finding, sheet)
+            another = self.finding is None or finding.code != self.finding.code
+            self.finding, self._sheet = finding, sheet
             self.mark.show_level(finding.level)
             self.title.setText(_set(finding.title))
-            self.reason.setText(_set(self._words(finding)))
-            self.way.setText(f"go to {_told(self._leads_to)}")
-            self.way.setAccessibleName(f"go to {_told(self._leads_to)}, which this finding asks to move")
-            self.setAccessibleDescription(f"{self._words(finding)} Return goes to {_told(self._leads_to)}.")
-            self._tell()
+            if another or opened or self.is_open:
+                self._tell_all()
+            else:
+                # Numbers run while a target is dragged; what is not in sight follows when they rest.
+                self._resting.start()
         self.open(opened)
+
+    def _tell_all(self) -> None:
+        """Reason, way and what a screen reader says."""
+        self._resting.stop()
+        finding = self.finding
+        if finding is None or self._sheet is None:
+            return
+        self._leads_to = what_to_move(finding, self._sheet)
+        self.reason.setText(_set(self._words(finding)))
+        self.way.setText(f"go to {_told(self._leads_to)}")
+        self.way.setAccessibleName(f"go to {_told(self._leads_to)}, which this finding asks to move")
+        self.setAccessibleDescription(f"{self._words(finding)} Return goes to {_told(self._leads_to)}.")
+        self._tell()
 
     def _words(self, finding: Finding) -> str:
         return " ".join(f"{part[0].upper()}{part[1:]}." for part in (finding.reason, finding.advice) if part)
@@ -95,6 +116,8 @@ class FindingRow(QWidget):
     def open(self, opened: bool) -> None:
         """Bring the reason in sight, or take it away."""
         if opened is not self.is_open:
+            if self._resting.isActive():
+                self._tell_all()
             self.reason.setVisible(opened)
             self.way.setVisible(opened)
             self._tell()
@@ -142,6 +165,7 @@ class FindingRow(QWidget):
         """A quiet ground below the mouse, a line around the focus."""
         theme = self._appearance.theme
         with QPainter(self) as painter:
+            painter.fillRect(self.rect(), QColor(theme.card))
             if self.underMouse():
                 painter.fillRect(self.rect(), QColor(theme.mixed(theme.outline, 0.10)))
             if self.hasFocus():

@@ -39,7 +39,8 @@ Array = NDArray[np.float64]
 _FOUR = ((-0.4, 0.0), (0.4, 0.0), (0.0, -0.4), (0.0, 0.4))
 _TWO = ((-0.35, -0.35), (0.35, 0.35))
 _ONE = ((0.0, 0.0),)
-_RIM = ((-1.4, -1.0), (1.4, -1.0), (-1.4, 1.0), (1.4, 1.0))
+_PATCH = 0.8
+"""How little the ground of a tag lets through."""
 _SHORT_PX, _LONG_PX = 6_000.0, 20_000.0
 _FAR = 20_000.0
 """Points beyond this many pixels are pulled in: the rasterizer works with bounded numbers."""
@@ -430,16 +431,16 @@ class Figure(QWidget):
             top += 15.0
 
     def paint_tag(self, painter: QPainter, words: str, *, at: QPointF, colour: str, axes: Axes) -> QRectF:
-        """Words right of a point, with a rim of card around the letters, kept within a panel."""
+        """Words right of a point, on a patch of card that lets little through, kept within a panel."""
         hand = self.hand(bold=True)
         painter.setFont(hand.font)
         box = QRectF(at.x(), at.y() - 8.0, hand.width(words) + 4.0, 16.0)
         box.moveLeft(min(max(box.left(), axes.box.left() + 2.0), axes.box.right() - box.width()))
         box.moveTop(min(max(box.top(), axes.box.top()), axes.box.bottom() - box.height()))
         align = int(Qt.AlignmentFlag.AlignCenter)
-        painter.setPen(QColor(self.theme.card))
-        for dx, dy in _RIM:
-            painter.drawText(box.translated(dx, dy), align, words)
+        patch = QColor(self.theme.card)
+        patch.setAlphaF(_PATCH)
+        painter.fillRect(box.adjusted(1.0, 1.0, -1.0, -1.0), patch)
         painter.setPen(QColor(colour))
         painter.drawText(box, align, words)
         return box
