@@ -145,14 +145,16 @@ def test_escape_in_a_box_takes_the_typing_back_first(filled, qtbot):
 # Logs
 
 
-def test_the_demo_log_by_its_button(page, qtbot, desk):
+def test_the_demo_logs_by_their_button(page, qtbot, desk):
     qtbot.mouseClick(page.list.demo, LEFT_BUTTON)
     settle(qtbot, page)
-    assert desk.sheet.evidence[0].experiment is Experiment.DRIVEN
+    assert [one.experiment for one in desk.sheet.evidence] == [Experiment.DRIVEN, Experiment.STEP_CHECK]
     assert "5\N{NARROW NO-BREAK SPACE}000 rows" in page.list.rows_shown[0].state.text()
     assert not page.list.demo.isVisible()
+    page.logs.choose(0)
     assert [one.name for one in page.signals.plots.shown] == ["angle", "current", "voltage"]
-    qtbot.mouseClick(page.list.rows_shown[0].remove, LEFT_BUTTON)
+    for _ in range(2):
+        qtbot.mouseClick(page.list.rows_shown[0].remove, LEFT_BUTTON)
     assert desk.sheet.evidence == ()
     assert not page.signals.isVisible()
     desk.undo()

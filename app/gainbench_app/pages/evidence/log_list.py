@@ -86,8 +86,8 @@ class LogList(Card):
         self._logs = logs
         self.add = QPushButton("Add a log...")
         self.add.setToolTip("choose a csv, tsv, .mat or parquet file; one can be dropped on the window as well")
-        self.demo = QPushButton("Try the demo log")
-        self.demo.setToolTip("an invented driven run of the label unwinder")
+        self.demo = QPushButton("Try the demo logs")
+        self.demo.setToolTip("an invented driven run and a step check of the label unwinder")
         self.head_line.addWidget(self.demo)
         self.head_line.addWidget(self.add)
         self.rows_shown: list[LogRow] = []

@@ -35,7 +35,7 @@ from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.figure import Figure
 from gainbench_resources import demo_log
 
-_DEMO = "label-unwinder-driven.csv"
+_DEMOS = ("label-unwinder-driven.csv", "label-unwinder-step.csv")
 _DETAIL_PX = 292
 _SETTLED_MS = 60
 """After new cards have their sizes."""
@@ -150,8 +150,8 @@ class EvidencePage(QFrame):
             self.add(path)
 
     def add_demo(self) -> None:
-        """Add the invented log."""
-        self.add(Path(str(demo_log(_DEMO))))
+        """Add the invented logs: one to fit, one to lie over the prediction."""
+        self.add_all([Path(str(demo_log(name))) for name in _DEMOS])
 
     def add(self, path: Path) -> None:
         """Add a log."""
