@@ -20,6 +20,7 @@ from gainbench.sheetfile import EntryValue, SheetDocument, parse_sheet, read_she
 from gainbench_app.desk_state import State, as_text, moved, settled, typed
 from gainbench_app.edge_stop import loop_of, stopped_at_edge
 from gainbench_app.live import FrameTimer, Readiness
+from gainbench_app.log_places import carried_along
 from gainbench_app.shown_tuning import ShownTuning
 from gainbench_app.starting_values import gains_by_hand, starting_values
 
@@ -207,6 +208,7 @@ class Desk(QObject):
         self.end_gesture()
         state = settled(self._state)
         document = state.document if target.name == state.document.name else state.document.renamed(target.name)
+        document = carried_along(document, before=self._path, after=target)
         write_sheet(document, target)
         self._path = target
         self._saved = document.text()

@@ -3,8 +3,8 @@ import math
 import pytest
 
 from gainbench.errors import SheetError
-from gainbench.model import DesignMethod
-from gainbench.sheetfile import SheetDocument, parse_sheet, read_sheet
+from gainbench.model import DesignMethod, EvidenceLog, Experiment, LogColumn, SignalName
+from gainbench.sheetfile import SheetDocument, add_evidence, parse_sheet, read_sheet
 from gainbench_app.desk import Desk
 from gainbench_app.live import Readiness
 
@@ -152,6 +152,24 @@ def test_it_saves_what_is_in_force(desk, tmp_path):
     assert desk.unsaved_since is None
     desk.undo()
     assert desk.unsaved_since is not None
+
+
+def test_saved_in_another_folder_it_still_finds_its_logs(desk, tmp_path):
+    here, there = tmp_path / "a" / "x.bench.toml", tmp_path / "b" / "x.bench.toml"
+    for one in (here, there):
+        one.parent.mkdir()
+    here.with_name("run.csv").write_text("t,i,n")
+    columns = tuple(
+        LogColumn(signal=SignalName(name), column=name, unit=unit)
+        for name, unit in (("time", "s"), ("current", "A"), ("speed", "rpm"))
+    )
+    log = EvidenceLog(log="run.csv", experiment=Experiment.DRIVEN, columns=columns)
+    desk.edit(lambda document: add_evidence(document, log))
+    desk.save(here)
+    assert read_sheet(here).sheet.evidence[0].log == "run.csv"
+    desk.save(there)
+    assert read_sheet(there).sheet.evidence[0].log == desk.sheet.evidence[0].log == "../a/run.csv"
+    assert desk.unsaved_since is None
 
 
 def test_it_does_not_save_what_is_not_valid(desk, tmp_path):

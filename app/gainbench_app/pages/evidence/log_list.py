@@ -8,9 +8,9 @@ from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QLabel, QPushButton, QVBoxLayout, QWidget
 
 from gainbench_app.desk import Desk
+from gainbench_app.log_places import words_of
 from gainbench_app.pages.evidence.guesses import EXPERIMENTS
 from gainbench_app.pages.evidence.logs import LogEntry, Logs
-from gainbench_app.pages.evidence.paths import words_of
 from gainbench_app.widgets.appearance import Appearance
 from gainbench_app.widgets.card import Card
 from gainbench_app.widgets.scales import frequency_text, number_text, time_text

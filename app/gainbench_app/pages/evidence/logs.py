@@ -17,10 +17,10 @@ from gainbench.evidence import Log, LogSurvey, SurveyedColumn, read_log, survey_
 from gainbench.model import EvidenceLog, Experiment, LogColumn, SignalName
 from gainbench.sheetfile import SheetDocument, remove_evidence
 from gainbench_app.desk import Desk
+from gainbench_app.log_places import file_of, place_of
 from gainbench_app.pages.evidence import edits
 from gainbench_app.pages.evidence.guesses import guessed_experiment
 from gainbench_app.pages.evidence.overview import LogOverview, overview
-from gainbench_app.pages.evidence.paths import file_of, place_of
 from gainbench_app.pages.evidence.reader import Reader
 from gainbench_app.what_it_does.spans import Span
 

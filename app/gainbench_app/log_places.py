@@ -5,6 +5,8 @@ from __future__ import annotations
 import os
 from pathlib import Path
 
+from gainbench.sheetfile import EntryValue, SheetDocument
+
 
 def place_of(log: Path, sheet: Path | None) -> str:
     """How a sheet names a log.
@@ -35,6 +37,39 @@ def place_of(log: Path, sheet: Path | None) -> str:
 def file_of(text: str, sheet: Path | None) -> Path:
     """The file that a sheet's name of a log leads to; without a file of the sheet, from the working folder."""
     return (sheet.parent if sheet is not None else Path()) / text
+
+
+def carried_along(document: SheetDocument, *, before: Path | None, after: Path) -> SheetDocument:
+    """A sheet whose logs are found from another folder as well.
+
+    Parameters
+    ----------
+    document : SheetDocument
+        As it is saved.
+    before : Path, optional
+        The sheet's file up to now; None where it had none.
+    after : Path
+        The sheet's file from now on.
+
+    Returns
+    -------
+    SheetDocument
+        The same where the folder stays, and where a log is not there anyhow.
+
+    Raises
+    ------
+    SheetError
+        If the text cannot be edited.
+    """
+    if before is not None and os.path.abspath(before.parent) == os.path.abspath(after.parent):
+        return document
+    values: dict[str, EntryValue] = {}
+    for index, log in enumerate(document.sheet.evidence):
+        file = file_of(log.log, before)
+        place = place_of(file, after)
+        if place != log.log and file.is_file():
+            values[f"evidence[{index}].log"] = place
+    return document.with_values(values) if values else document
 
 
 def words_of(text: str, sheet: Path | None) -> str:
