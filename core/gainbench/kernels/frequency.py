@@ -99,6 +99,22 @@ def inverse(value: complex) -> complex:
 
 
 @inlined
+def smoothing(plant: SampledPlant, half: float, level: float) -> complex:
+    """Window and filter of the measured value, without its scale and its whole periods."""
+    value = complex(1.0, 0.0)
+    if plant.window > 1:
+        # Sum of z^-i over the window: a ratio of sines with half the window's delay.
+        turn = math.atan2(half, level)
+        ratio = math.sin(turn * plant.window) / half
+        lag = -turn * (plant.window - 1)
+        value *= ratio * complex(math.cos(lag), math.sin(lag))
+    if plant.filter_gain != 1.0:
+        back = complex(1.0 - 2.0 * half * half, -2.0 * half * level)
+        value *= plant.filter_gain * inverse(1.0 - (1.0 - plant.filter_gain) * back)
+    return value
+
+
+@inlined
 def plant_turned(plant: SampledPlant, half: float, level: float, work: NDArray[np.complex128]) -> complex:
     """Measured value over controller output, ``plant.m`` upper Hessenberg; sine and cosine of w T/2 tell where."""
     n = plant.m.shape[0]
@@ -149,17 +165,9 @@ def plant_turned(plant: SampledPlant, half: float, level: float, work: NDArray[n
                 raw += plant.c[k] * value
             else:
                 loop += plant.c[k] * value
-    ahead = complex(plant.scale, 0.0)
-    if plant.window > 1:
-        # Sum of z^-i over the window: a ratio of sines with half the window's delay.
-        turn = math.atan2(half, level)
-        ratio = math.sin(turn * plant.window) / half
-        lag = -turn * (plant.window - 1)
-        ahead *= ratio * complex(math.cos(lag), math.sin(lag))
+    ahead = plant.scale * smoothing(plant, half, level)
     for _ in range(plant.shift):
         ahead *= back
-    if plant.filter_gain != 1.0:
-        ahead *= plant.filter_gain * inverse(1.0 - (1.0 - plant.filter_gain) * back)
     if fed:
         return ahead * raw / (1.0 - ahead * loop)
     return ahead * raw

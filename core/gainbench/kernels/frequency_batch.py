@@ -7,13 +7,11 @@ of one elimination after the other.
 
 from __future__ import annotations
 
-import math
-
 import numpy as np
 from numpy.typing import NDArray
 
-from gainbench.kernels.compiled import compiled, inlined
-from gainbench.kernels.frequency import inverse
+from gainbench.kernels.compiled import compiled
+from gainbench.kernels.frequency import inverse, smoothing
 from gainbench.kernels.loop_records import SampledPlant
 
 BLOCK = 64
@@ -26,22 +24,6 @@ def is_fed(plant: SampledPlant) -> bool:
     if plant.dw != 0.0:
         return True
     return bool(np.any(plant.bw != 0.0))
-
-
-@inlined
-def smoothing(plant: SampledPlant, half: float, level: float) -> complex:
-    """Window and filter of the measured value, without its scale and its whole periods."""
-    value = complex(1.0, 0.0)
-    if plant.window > 1:
-        # Sum of z^-i over the window: a ratio of sines with half the window's delay.
-        turn = math.atan2(half, level)
-        ratio = math.sin(turn * plant.window) / half
-        lag = -turn * (plant.window - 1)
-        value *= ratio * complex(math.cos(lag), math.sin(lag))
-    if plant.filter_gain != 1.0:
-        back = complex(1.0 - 2.0 * half * half, -2.0 * half * level)
-        value *= plant.filter_gain * inverse(1.0 - (1.0 - plant.filter_gain) * back)
-    return value
 
 
 @compiled
