@@ -21,6 +21,7 @@ from gainbench.evidence.prepared import Record, prepare
 from gainbench.evidence.reading import read_log
 from gainbench.evidence.step_check import LoggedStep, StepCheck, check_logged_step, logged_step
 from gainbench.model import EvidenceLog, Experiment, LogColumn, Sheet, Stage
+from gainbench_app.log_places import file_of
 from gainbench_resources import demo_log
 
 LAID_OVER = (Experiment.STEP_CHECK, Experiment.FREQUENCY_RESPONSE)
@@ -164,7 +165,7 @@ class LogReader:
     def _opened(self, entry: EvidenceLog, sheet: Path | None, used: dict[_FileState, _Known]) -> _Known:
         """The log on its even grid, read anew only where its file or its columns are other than before."""
         with ExitStack() as stack:
-            file = _file_of(entry.log, sheet, stack)
+            file = _open_file(entry.log, sheet, stack)
             state = _state_of(file, entry)
             known = used.get(state) or self._known.get(state) or _Known()
             used[state] = known
@@ -178,9 +179,9 @@ class LogReader:
         return known
 
 
-def _file_of(log: str, sheet: Path | None, stack: ExitStack) -> Path:
+def _open_file(log: str, sheet: Path | None, stack: ExitStack) -> Path:
     """The file of a log: beside the sheet; of a sheet without a file in the working folder, or among the demo logs."""
-    file = (sheet.parent if sheet is not None else Path()) / log
+    file = file_of(log, sheet)
     if sheet is None and Path(log).name == log and not file.exists():
         demo = demo_log(log)
         if demo.is_file():

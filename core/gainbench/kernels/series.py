@@ -93,44 +93,18 @@ def turning_point(series: NDArray[np.float64], end: float) -> float:
     return high
 
 
-@compiled
-def zero_between(series: NDArray[np.float64], low: float, high: float) -> float:
-    """Share at which the current, monotone from ``low`` to ``high`` and of other sign there, is zero."""
-    before, after = value_at(series, 0, low), value_at(series, 0, high)
-    rising = after > before
-    share = low + (high - low) * before / (before - after)
-    for _ in range(HALVINGS):
-        value = value_at(series, 0, share)
-        if (value > 0.0) == rising:
-            high = share
-        else:
-            low = share
-        slope = slope_at(series, 0, share)
-        closer = share - value / slope if slope != 0.0 else low
-        if abs(closer - share) < SAME_INSTANT:
-            break
-        share = closer if low < closer < high else 0.5 * (low + high)
-    return share
+@inlined
+def zero_from(series: NDArray[np.float64], share: float, low: float, high: float, rising: bool, enough: float) -> float:
+    """Share between ``low`` and ``high`` at which the current is zero, by Newton's method kept within its bracket.
 
-
-@compiled
-def charge_to_zero(series: NDArray[np.float64], after: float) -> float:
-    """Charge up to the one zero of a current that is monotone over the piece and ends at ``after`` [A s].
-
-    Newton's method from the zero of the parabola through both ends and the first slope. The charge does not change in
-    first order with the instant, so that a step below ``NEAR`` is the last.
+    It begins at ``share``, and a step shorter than ``enough`` is the last.
     """
-    before, first = series[0, 0], series[1, 0]
-    bend = after - before - first
-    root = first * first - 4.0 * bend * before
-    share = -2.0 * before / (first + (np.sqrt(root) if first > 0.0 else -np.sqrt(root))) if root > 0.0 else 0.5
-    low, high = 0.0, 1.0
     for _ in range(HALVINGS):
         value = slope = 0.0
         for term in range(series.shape[0] - 1, -1, -1):
             slope = slope * share + value
             value = value * share + series[term, 0]
-        if (value > 0.0) == (after > 0.0):
+        if (value > 0.0) == rising:
             high = share
         else:
             low = share
@@ -138,8 +112,31 @@ def charge_to_zero(series: NDArray[np.float64], after: float) -> float:
         if not low <= closer <= high:
             closer = 0.5 * (low + high)
         step, share = closer - share, closer
-        if abs(step) < NEAR:
+        if abs(step) < enough:
             break
+    return share
+
+
+@compiled
+def zero_between(series: NDArray[np.float64], low: float, high: float) -> float:
+    """Share at which the current, monotone from ``low`` to ``high`` and of other sign there, is zero."""
+    before, after = value_at(series, 0, low), value_at(series, 0, high)
+    share = low + (high - low) * before / (before - after)
+    return zero_from(series, share, low, high, after > before, SAME_INSTANT)
+
+
+@compiled
+def charge_to_zero(series: NDArray[np.float64], after: float) -> float:
+    """Charge up to the one zero of a current that is monotone over the piece and ends at ``after`` [A s].
+
+    The search begins at the zero of the parabola through both ends with the first slope. The charge does not change in
+    first order with the instant, so that a step below ``NEAR`` is the last.
+    """
+    before, first = series[0, 0], series[1, 0]
+    bend = after - before - first
+    root = first * first - 4.0 * bend * before
+    share = -2.0 * before / (first + (np.sqrt(root) if first > 0.0 else -np.sqrt(root))) if root > 0.0 else 0.5
+    share = zero_from(series, share, 0.0, 1.0, after > 0.0, NEAR)
     return value_at(series, int(np.int64(CHARGE)), share)
 
 
