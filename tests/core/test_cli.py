@@ -11,6 +11,7 @@ import sys
 import pytest
 
 from command_line import assert_refused, run_program
+from demo_log import EVIDENCE, LOG
 from gainbench import cli
 from gainbench.assess import assess
 from gainbench.handover import read_origin
@@ -320,19 +321,6 @@ def test_wrong_words_are_refused(bench, words, says):
     before = sorted(os.listdir(bench))
     assert_refused(run_program(*words, folder=bench), says=says)
     assert sorted(os.listdir(bench)) == before
-
-
-LOG = "label-unwinder-driven.csv"
-EVIDENCE = f"""
-[[evidence]]
-log = "{LOG}"
-experiment = "driven"
-[evidence.columns]
-time = {{ column = "time [s]", unit = "s" }}
-voltage = {{ column = "voltage [V]", unit = "V" }}
-current = {{ column = "current [A]", unit = "A" }}
-angle = {{ column = "angle [deg]", unit = "deg" }}
-"""
 
 
 @pytest.fixture

@@ -14,6 +14,18 @@ import numpy as np
 
 from bench_logs import Benches, counted, run, stepped_voltage
 
+LOG = "label-unwinder-driven.csv"
+EVIDENCE = f"""
+[[evidence]]
+log = "{LOG}"
+experiment = "driven"
+[evidence.columns]
+time = {{ column = "time [s]", unit = "s" }}
+voltage = {{ column = "voltage [V]", unit = "V" }}
+current = {{ column = "current [A]", unit = "A" }}
+angle = {{ column = "angle [deg]", unit = "deg" }}
+"""
+"""What a sheet says of it."""
 RATE, ROWS, COUNTS = 1000.0, 5000, 4096
 TRUE = Benches(
     resistance=np.array([0.66]),

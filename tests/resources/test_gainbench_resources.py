@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from demo_log import TRUE
+from demo_log import EVIDENCE, LOG, TRUE
 from demo_log import demo_log as made
 from demo_step_log import demo_step_log as made_step
 from gainbench.evidence.estimate import EstimateName
@@ -16,17 +16,6 @@ from gainbench.sheetfile import parse_sheet
 from gainbench_resources import demo_log, demo_sheet, demo_sheet_names, recipe
 from quantities import assert_quantity
 
-LOG = "label-unwinder-driven.csv"
-EVIDENCE = f"""
-[[evidence]]
-log = "{LOG}"
-experiment = "driven"
-[evidence.columns]
-time = {{ column = "time [s]", unit = "s" }}
-voltage = {{ column = "voltage [V]", unit = "V" }}
-current = {{ column = "current [A]", unit = "A" }}
-angle = {{ column = "angle [deg]", unit = "deg" }}
-"""
 STEP = "label-unwinder-step.csv"
 STEP_EVIDENCE = f"""
 [[evidence]]
