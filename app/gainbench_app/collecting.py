@@ -32,4 +32,6 @@ class CollectorHold:
             self._taken = False
             CollectorHold._taken_by -= 1
             if CollectorHold._taken_by == 0:
+                # What has piled up goes here: the thread that worked has some steps left in which it would go there.
+                gc.collect(0)
                 gc.enable()

@@ -19,7 +19,7 @@ from gainbench.model import DesignMethod, HandGains, Sheet
 from gainbench.sheetfile import EntryValue, SheetDocument, parse_sheet, read_sheet, write_sheet
 from gainbench_app.desk_state import State, as_text, moved, settled, typed
 from gainbench_app.edge_stop import loop_of, stopped_at_edge
-from gainbench_app.live import FrameTimer, Readiness
+from gainbench_app.live import AfterFrame, FrameTimer, Readiness
 from gainbench_app.log_places import carried_along
 from gainbench_app.shown_tuning import ShownTuning
 from gainbench_app.starting_values import gains_by_hand, starting_values
@@ -41,11 +41,13 @@ class Desk(QObject):
     """One open sheet."""
 
     changed = Signal()
-    """Texts, undo or saved state are other than before; along the live path told once per frame, before its result."""
+    """Texts, undo or saved state are other than before; along the live path told with the words."""
     number_moved = Signal(str)
     """The number at this path was moved along the live path just now."""
     assessed = Signal()
-    """``assessment`` is new."""
+    """``assessment`` is new: for what is drawn."""
+    words_due = Signal()
+    """The same for what is read: at once, or along the live path after the curves and not with every frame."""
     opened = Signal()
     """Another sheet is open."""
     trouble = Signal(str)
@@ -66,6 +68,7 @@ class Desk(QObject):
         self._clock = clock
         self._readiness = readiness
         self._timer = FrameTimer(self._compute, self)
+        self._words = AfterFrame(self._say, self)
         self._idle = QTimer(self)
         self._idle.setSingleShot(True)
         self._idle.setInterval(IDLE_MS)
@@ -228,6 +231,7 @@ class Desk(QObject):
 
     def _open(self, document: SheetDocument, path: Path | None) -> None:
         self._idle.stop()
+        self._words.stop()
         self._path = path
         self._saved = document.text()
         self._unsaved_since = None
@@ -360,7 +364,8 @@ class Desk(QObject):
         gesture, self._gesture = self._gesture, None
         if gesture is not None and gesture.before is not self._state:
             self._push(gesture.before)
-            self.changed.emit()
+            self._tell()
+        self._words.flush()
 
     def cancel_gesture(self) -> None:
         """The drag is taken back."""
@@ -401,7 +406,7 @@ class Desk(QObject):
         self._tell()
 
     def _move_to(self, state: State) -> None:
-        """The same along the live path, where events may come faster than frames: the frame tells of all of them."""
+        """The same along the live path, where events may come faster than frames: the words tell of all of them."""
         self._state = state
         self._mark_saved()
         self._idle.start()
@@ -445,8 +450,9 @@ class Desk(QObject):
     # The live path
 
     def compute_now(self) -> None:
-        """Compute what is asked for without waiting for the frame."""
+        """Compute what is asked for, and tell of it, without waiting for the frame."""
         self._timer.flush()
+        self._words.flush()
 
     @Slot(Readiness)
     def reach(self, readiness: Readiness) -> None:
@@ -456,27 +462,32 @@ class Desk(QObject):
         self.changed.emit()
 
     def _compute(self) -> None:
+        self._words.request()
+        if self._readiness is not Readiness.NOTHING:
+            self._assess_state()
+        if self._gesture is None:
+            self._words.flush()
+
+    def _say(self) -> None:
         if self._untold:
             self._tell()
-        if self._readiness is Readiness.NOTHING:
-            return
+        self.words_due.emit()
+
+    def _assess_state(self) -> None:
         state = self._state
         assessment = self._assess(state.assessed_sheet)
-        stopped = None
-        if self._gesture is not None and self._computed is not None and self._assessment is not None:
-            stopped = stopped_at_edge(
-                self._gesture.path,
-                state,
-                assessment,
-                good=self._computed,
-                before=self._assessment,
-                assess=self._assess,
-            )
+        good, before, stopped = self._computed, self._assessment, None
+        if self._gesture is not None and good is not None and before is not None:
+            path, again = self._gesture.path, self._assess
+            stopped = stopped_at_edge(path, state, assessment, good=good, before=before, assess=again)
         if stopped is not None:
             assessment = stopped.assessment
-            self._state = stopped.state
+            asked, self._state = self._state.live, stopped.state
             self._mark_saved()
-            self.changed.emit()
+            self._untold = True
+            for path, entry in stopped.state.live.items():
+                if asked.get(path) != entry:
+                    self.number_moved.emit(path)
         self._assessment = assessment
         self._computed = self._state
         self.assessed.emit()

@@ -1,4 +1,4 @@
-"""When to compute: at most once a frame, in place, and the kernels' compilation off the window's thread."""
+"""When to compute and when to say it: once a frame, in place; and the kernels' compilation off the window's thread."""
 
 from __future__ import annotations
 
@@ -9,6 +9,8 @@ from PySide6.QtCore import QElapsedTimer, QMetaObject, QObject, Qt, QThread, QTi
 
 FRAME_MS = 10
 """From the start of one run to the next. Less than a screen's frame, so that a run that came late is caught up."""
+WORDS_MS = 25
+"""While a hand moves: from one telling of the words to the next, at the least. No reader follows faster."""
 
 
 class FrameTimer(QObject):
@@ -51,6 +53,44 @@ class FrameTimer(QObject):
             return
         self.stop()
         self._since.start()
+        self._run()
+
+
+class AfterFrame(QObject):
+    """Runs a function after the frame under way is painted, and spares frames that come faster than ``WORDS_MS``.
+
+    Right after the frame where the last one with a run is so long ago; else when no other frame has come for so long.
+    A run in between would meet the next event.
+    """
+
+    def __init__(self, run: Callable[[], None], parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._run = run
+        self._timer = QTimer(self)
+        self._timer.setSingleShot(True)
+        self._timer.setTimerType(Qt.TimerType.PreciseTimer)
+        self._timer.timeout.connect(self._fire)
+        self._since = QElapsedTimer()
+
+    def request(self) -> None:
+        """Ask for a run, with the frame that is asked for."""
+        due = not self._since.isValid() or self._since.elapsed() >= WORDS_MS
+        if due:
+            self._since.start()
+        # A timer of 0 would be idle work, which a flood of events keeps back for good.
+        self._timer.start(1 if due else WORDS_MS)
+
+    def flush(self) -> None:
+        """Run now if a run is asked for."""
+        if self._timer.isActive():
+            self._fire()
+
+    def stop(self) -> None:
+        """Forget what was asked for."""
+        self._timer.stop()
+
+    def _fire(self) -> None:
+        self._timer.stop()
         self._run()
 
 

@@ -77,9 +77,10 @@ def open_window(path: str | None) -> int:
     status = application.exec()
     memory.change(partial(with_layout, window=window))
     memory.change(partial(_with_scheme, scheme=themes.scheme))
+    # What is carried over has a file of its own; one that stayed would be offered as unsaved work some day.
+    autosave.release()
     if restart.file is not None:
         start_again(restart.file, os.environ)
-    autosave.release()
     warming.requestInterruption()
     warming.wait()
     return status

@@ -169,9 +169,9 @@ class Window(QMainWindow):
         self.what_we_ask.pointed_at.connect(self.on_bench.point_at)
         self.desk.changed.connect(self._show_title)
         self.desk.changed.connect(self._show_handover)
-        self.desk.assessed.connect(self._show_handover)
-        # Places are shared anew before the frame is painted, and not once more after it.
-        self.desk.assessed.connect(lambda: QCoreApplication.sendPostedEvents(None, QEvent.Type.LayoutRequest.value))
+        self.desk.words_due.connect(self._show_handover)
+        # Places are shared anew before the words are painted, and not once more after it.
+        self.desk.words_due.connect(lambda: QCoreApplication.sendPostedEvents(None, QEvent.Type.LayoutRequest.value))
         self.desk.trouble.connect(lambda message: self.dialogs.tell(self, "The text cannot follow", message))
 
     # What is shown

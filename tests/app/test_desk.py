@@ -95,6 +95,45 @@ def test_a_slider_stops_at_the_edge_of_what_can_be_met(desk, path, value):
     assert (further.assessment.current if ".current." in path else further.assessment.speed).refusal is not None
 
 
+def test_words_follow_the_curves_of_a_drag_and_not_every_one(desk, qtbot):
+    told = []
+    desk.assessed.connect(lambda: told.append("curves"))
+    desk.changed.connect(lambda: told.append("changed"))
+    desk.words_due.connect(lambda: told.append("words"))
+    desk.begin_gesture(CROSSOVER)
+    desk.move(CROSSOVER, math.tau * 800.0)
+    qtbot.waitUntil(lambda: "words" in told)
+    assert told == ["curves", "changed", "words"]
+    told.clear()
+    for hertz in range(801, 811):
+        desk.move(CROSSOVER, math.tau * hertz)
+        qtbot.waitUntil(lambda hertz=hertz: desk.assessment.sheet.aims.current.crossover > math.tau * (hertz - 0.5))
+    assert 0 < told.count("words") < told.count("curves") == 10
+
+
+def test_the_end_of_a_drag_says_at_once_what_it_drew(desk):
+    said = []
+    desk.words_due.connect(lambda: said.append(desk.assessment.sheet.aims.current.crossover))
+    desk.begin_gesture(CROSSOVER)
+    desk.move(CROSSOVER, math.tau * 800.0)
+    desk.end_gesture()
+    assert said == [pytest.approx(math.tau * 800.0)]
+    desk.set_values({CROSSOVER: "900 Hz"})
+    desk.compute_now()
+    assert said[1:] == [pytest.approx(math.tau * 900.0)]
+
+
+def test_what_is_moved_beyond_the_edge_is_told_where_it_stopped(desk):
+    moved = []
+    desk.number_moved.connect(lambda path: moved.append((path, desk.text(path))))
+    desk.begin_gesture(CROSSOVER)
+    desk.move(CROSSOVER, math.tau * 9000.0)
+    assert moved == [(CROSSOVER, "9 kHz")]
+    desk.compute_now()
+    assert moved[1:] == [(CROSSOVER, desk.text(CROSSOVER))]
+    assert desk.text(CROSSOVER) != "9 kHz"
+
+
 def test_from_a_refused_target_a_slider_moves_freely(desk):
     desk.set_values({"aims.speed.crossover": "900 Hz"})
     desk.compute_now()

@@ -1,8 +1,11 @@
 import threading
+import time
 
-from PySide6.QtCore import QObject, Slot
+from PySide6.QtCore import QCoreApplication, QObject, QTimer, Slot
+from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QWidget
 
-from gainbench_app.live import FrameTimer, Readiness, WarmUp
+from gainbench_app.live import WORDS_MS, AfterFrame, FrameTimer, Readiness, WarmUp
 
 
 def test_many_requests_make_one_run(qtbot):
@@ -24,6 +27,53 @@ def test_a_flush_runs_at_once_and_only_what_was_asked_for(qapp):
     timer.flush()
     timer.flush()
     assert runs == [1]
+
+
+class Painted(QWidget):
+    def __init__(self, seen):
+        super().__init__()
+        self._seen = seen
+
+    def paintEvent(self, event):  # noqa: N802
+        self._seen.append("curves")
+
+
+def test_words_come_after_the_frame_that_they_belong_to(qtbot):
+    seen = []
+    widget, words = Painted(seen), AfterFrame(lambda: seen.append("words"))
+    qtbot.addWidget(widget)
+    widget.show()
+    qtbot.waitUntil(lambda: bool(seen))
+    seen.clear()
+
+    def frame():
+        widget.update()
+        words.request()
+        # It takes longer than the timer of the words.
+        time.sleep(0.003)
+
+    QTimer.singleShot(0, frame)
+    qtbot.waitUntil(lambda: len(seen) == 2)
+    assert seen == ["curves", "words"]
+
+
+def test_words_are_spared_while_frames_come_faster_and_come_once_they_rest(qtbot):
+    runs = []
+    words = AfterFrame(lambda: runs.append(1))
+    words.request()
+    qtbot.waitUntil(lambda: runs == [1])
+    for _ in range(3):
+        words.request()
+    QCoreApplication.processEvents()
+    assert runs == [1]
+    qtbot.waitUntil(lambda: runs == [1, 1])
+    QTest.qWait(WORDS_MS + 5)
+    words.request()
+    qtbot.waitUntil(lambda: runs == [1, 1, 1], timeout=WORDS_MS)
+    words.request()
+    words.stop()
+    words.flush()
+    assert runs == [1, 1, 1]
 
 
 class Listener(QObject):

@@ -92,8 +92,9 @@ def test_a_sheet_that_is_saved_stays_saved_and_another_one_does_not(desk, tmp_pa
 
 
 STARTS_AGAIN = """
-import json, os, sys
+import functools, json, os, sys
 from gainbench_app import session
+session.Autosave = functools.partial(session.Autosave, delay_ms=0)
 edits, seen = json.loads(sys.argv[2]), sys.argv[3]
 again = "GAINBENCH_CARRIED" in os.environ
 def act(window):
@@ -107,6 +108,8 @@ def act(window):
         return
     for path, text in edits.items():
         desk.set_values({path: text})
+    session.QApplication.processEvents()
+    assert list(session.unsaved_folder().glob("*.json"))
     window.dialogs.restart_now = lambda parent, message: True
     window.menu_of_more.scales[150].trigger()
 session.offer_recovery = act

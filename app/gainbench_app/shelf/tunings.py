@@ -93,7 +93,7 @@ class Shelf(QObject):
         self._idle = QTimer(self)
         self._idle.setSingleShot(True)
         self._idle.timeout.connect(self._compute_one)
-        desk.assessed.connect(self._follow)
+        desk.words_due.connect(self._follow)
         desk.changed.connect(self._list)
         desk.opened.connect(self._forget)
         self._follow()

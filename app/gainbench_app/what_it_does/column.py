@@ -76,7 +76,8 @@ class WhatItDoes(QWidget):
         self.third = ThirdView(appearance)
         self.measured = MeasuredReading(desk, self)
         self._lay_out()
-        desk.assessed.connect(self.refresh)
+        desk.assessed.connect(self._draw)
+        desk.words_due.connect(self._show_headroom)
         desk.changed.connect(self._show_verdict)
         desk.opened.connect(self._open)
         desk.kept_shown.connect(self._show_kept)
@@ -205,12 +206,28 @@ class WhatItDoes(QWidget):
 
     def refresh(self) -> None:
         """Show the newest assessment."""
+        self._draw()
+        self._show_headroom()
+
+    def _speed_unit(self) -> tuple[str, float]:
+        """The unit that speed is shown in, and its size [rad/s]."""
+        unit = self._chosen_unit or self._typed_unit()
+        return unit, unit_size(unit, Dimension.SPEED)
+
+    def _show_headroom(self) -> None:
+        assessment = self._desk.assessment
+        if assessment is not None:
+            figures = assessment.response.figures if assessment.response is not None else None
+            unit, size = self._speed_unit()
+            self.headroom.show_pieces(headroom_line(figures, assessment.plant, speed_unit=unit, speed_size=size))
+
+    def _draw(self) -> None:
+        """Verdict and curves."""
         self._show_verdict()
         assessment = self._desk.assessment
         if assessment is None:
             return
-        speed_unit = self._chosen_unit or self._typed_unit()
-        speed_size = unit_size(speed_unit, Dimension.SPEED)
+        speed_unit, speed_size = self._speed_unit()
         span, deviation = self._span(assessment)
         machine, plant = assessment.sheet.rig.machine, assessment.plant
         response = assessment.response
@@ -231,8 +248,6 @@ class WhatItDoes(QWidget):
                 deviation=deviation,
             )
         )
-        figures = response.figures if response is not None else None
-        self.headroom.show_pieces(headroom_line(figures, plant, speed_unit=speed_unit, speed_size=speed_size))
         loops = {"speed": assessment.speed, "current": assessment.current}
         self.bode.show_loops({name: loops[name] for name in _LOOPS[self.loops.word or "both loops"]})
         self.third.show_subject(

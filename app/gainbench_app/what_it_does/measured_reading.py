@@ -48,7 +48,7 @@ class MeasuredReading(QObject):
         self._asking.timeout.connect(self._ask)
         desk.changed.connect(self._follow)
         desk.opened.connect(self._follow)
-        desk.assessed.connect(self._follow)
+        desk.words_due.connect(self._follow)
         application = QGuiApplication.instance()
         if isinstance(application, QGuiApplication):
             application.applicationStateChanged.connect(self._come_back)

@@ -210,7 +210,7 @@ class FindingsCard(Card):
         self.all.setToolTip("say the reasons of all findings, or of none")
         self.all.clicked.connect(self._open_all)
         self.head_line.addWidget(self.all)
-        desk.assessed.connect(self.refresh)
+        desk.words_due.connect(self.refresh)
         desk.opened.connect(self._open_sheet)
         self.refresh()
 

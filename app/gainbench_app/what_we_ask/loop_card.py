@@ -51,7 +51,7 @@ class LoopCard(Card):
         self._asked: tuple[object, ...] = ()
         """What ``refresh`` has shown."""
         self._got: tuple[object, ...] = ()
-        """What ``show_assessment`` has."""
+        """What ``show_words`` has."""
         self.mark = LevelMark(appearance, size=10)
         self.hold = CheckBox("hold gains", f"hold the gains of the {loop} loop", appearance)
         self.hold.setToolTip("keep these gains while machine, train and stage are edited; the method waits")
@@ -113,9 +113,11 @@ class LoopCard(Card):
         outer.addWidget(self.gains)
         desk.changed.connect(self.refresh)
         desk.number_moved.connect(self._follow)
-        desk.assessed.connect(self.show_assessment)
+        desk.assessed.connect(lambda: self._show_map())
+        desk.words_due.connect(self.show_words)
         self.refresh()
-        self.show_assessment()
+        self._show_map()
+        self.show_words()
 
     def row(self, key: str) -> TargetRow:
         """The row of a target, ``crossover``."""
@@ -199,10 +201,9 @@ class LoopCard(Card):
         if not self._keeper.whole:
             self._resting.start()
 
-    def show_assessment(self) -> None:
-        """Show what the loop gets."""
+    def show_words(self) -> None:
+        """Say what the loop gets."""
         assessment = self._desk.assessment
-        self._show_map()
         there = assessment is not None and self._loop_of(assessment).gains is not None
         already = loop_aims(self._desk.sheet, self.loop).method is DesignMethod.BY_HAND
         self.by_hand.setEnabled(there and (not already or self._desk.held(self.loop)))
