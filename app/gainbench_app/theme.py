@@ -197,6 +197,7 @@ QPushButton[flat="true"] {{ background: transparent; border: 0; padding: 2px 4px
 QPushButton[flat="true"]:hover {{ color: {theme.ink}; }}
 QPushButton[flat="true"]:checked {{ color: {theme.ink}; text-decoration: underline; }}
 QPushButton[flat="true"]:focus {{ border: 1px solid {theme.ink}; border-radius: 3px; padding: 1px 3px; }}
+#verdictMore {{ text-align: left; }}
 QComboBox {{ background: {theme.card}; border: 1px solid {theme.outline}; border-radius: 4px;
   padding: 2px 20px 2px 8px; }}
 QComboBox:hover {{ background: {hover}; }}

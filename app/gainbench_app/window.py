@@ -167,6 +167,7 @@ class Window(QMainWindow):
         for figure in self.findChildren(Figure):
             self._give_picture_menu(figure)
         self.what_we_ask.pointed_at.connect(self.on_bench.point_at)
+        self.what_it_does.findings_wanted.connect(self.go_to_findings)
         self.desk.changed.connect(self._show_title)
         self.desk.changed.connect(self._show_handover)
         self.desk.words_due.connect(self._show_handover)

@@ -410,3 +410,12 @@ def test_gains_that_are_held_are_not_handed_over(window, desk, qtbot):
     desk.undo()
     desk.compute_now()
     assert window.handover_refusal() == ""
+
+
+def test_the_verdict_leads_to_the_findings(window, qtbot):
+    window.resize(1280, 720)
+    row = window.what_we_ask.findings.row(0)
+    assert row.visibleRegion().isEmpty()
+    qtbot.mouseClick(window.what_it_does.more, Qt.MouseButton.LeftButton)
+    assert row.hasFocus()
+    assert not row.visibleRegion().isEmpty()

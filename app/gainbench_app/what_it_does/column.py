@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from functools import partial
 
+from PySide6.QtCore import Signal
 from PySide6.QtGui import QKeySequence, QResizeEvent, QShortcut
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
 
@@ -36,6 +37,9 @@ _LOOPS = {"both loops": ("speed", "current"), "speed": ("speed",), "current": ("
 class WhatItDoes(QWidget):
     """The middle column."""
 
+    findings_wanted = Signal()
+    """The reasons of the verdict are asked for."""
+
     def __init__(self, desk: Desk, appearance: Appearance, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self._desk = desk
@@ -47,8 +51,11 @@ class WhatItDoes(QWidget):
         self.mark = LevelMark(appearance, size=12)
         self.words = QLabel()
         self.words.setProperty("role", "large")
-        self.more = QLabel()
-        self.more.setProperty("role", "muted")
+        self.more = QPushButton()
+        self.more.setObjectName("verdictMore")
+        self.more.setProperty("flat", True)
+        self.more.setToolTip("go to the findings (Ctrl+5)")
+        self.more.clicked.connect(self.findings_wanted)
         self.more.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
         self.spans = Choices(
             "span of the time plots",
@@ -285,7 +292,8 @@ class WhatItDoes(QWidget):
         self._verdict = found
         self.mark.show_level(found.level)
         self.words.setText(found.words)
-        self.more.setText(found.more)
+        self.more.setText(found.more.replace("&", "&&"))
+        self.more.setEnabled(bool(found.more))
         stale = "" if self._desk.valid else "last valid sheet"
         self.plots.show_stale(stale)
         self.bode.show_stale(stale)
