@@ -12,6 +12,7 @@ from PySide6.QtWidgets import QDialog, QFileDialog, QInputDialog, QMessageBox, Q
 
 from gainbench.sheetfile import SUFFIX, EntryValue
 from gainbench_app.desk import Desk
+from gainbench_app.guide.pages import GUIDE
 from gainbench_app.handover_dialog import HandoverChoice, HandoverDialog, HandoverRequest
 from gainbench_app.keep_dialog import KeepDialog, NamedTuning
 from gainbench_app.paste_dialog import PasteDialog
@@ -65,12 +66,13 @@ class Dialogs:
         """What becomes of unsaved work when the sheet is left."""
         box = QMessageBox(QMessageBox.Icon.NoIcon, "Unsaved work", f"{title} has changes that are not saved.")
         box.setParent(parent, box.windowFlags())
+        box.setProperty(GUIDE, "the-sheet")
         box.setInformativeText("Save them before the sheet is closed?")
         save = box.addButton("Save", QMessageBox.ButtonRole.AcceptRole)
         discard = box.addButton("Discard changes", QMessageBox.ButtonRole.DestructiveRole)
         box.addButton("Keep working", QMessageBox.ButtonRole.RejectRole)
         box.setDefaultButton(save)
-        box.exec()
+        _answered(box)
         if box.clickedButton() is save:
             return Unsaved.SAVE
         return Unsaved.DISCARD if box.clickedButton() is discard else Unsaved.CANCEL
@@ -78,22 +80,34 @@ class Dialogs:
     def handover(self, parent: QWidget, request: HandoverRequest) -> HandoverChoice | None:
         """Where the firmware files go, after the cautions were shown; None where nothing is to be written."""
         dialog = HandoverDialog(request, parent)
-        return dialog.choice() if dialog.exec() else None
+        return dialog.choice() if _answered(dialog) else None
 
     def replace_file(self, parent: QWidget, path: Path) -> bool:
         """Whether a file that is there may be replaced."""
-        answer = QMessageBox.question(parent, "Replace the file", f"{path.name} is there already. Replace it?")
-        return answer == QMessageBox.StandardButton.Yes
+        box = QMessageBox(
+            QMessageBox.Icon.Question,
+            "Replace the file",
+            f"{path.name} is there already. Replace it?",
+            QMessageBox.StandardButton.Yes | QMessageBox.StandardButton.No,
+        )
+        box.setParent(parent, box.windowFlags())
+        box.setProperty(GUIDE, "handover")
+        return _answered(box) == QMessageBox.StandardButton.Yes
 
     def name_of_tuning(self, parent: QWidget, suggestion: str) -> NamedTuning | None:
         """What a tuning is called on the shelf; None where it is not to be kept."""
         dialog = KeepDialog(suggestion, parent)
-        return dialog.named() if dialog.exec() else None
+        return dialog.named() if _answered(dialog) else None
 
     def note(self, parent: QWidget, name: str, note: str) -> str | None:
         """The note of a kept tuning; None where it stays."""
-        text, taken = QInputDialog.getMultiLineText(parent, "Note", f"note to {name}", note)
-        return text if taken else None
+        box = QInputDialog(parent)
+        box.setOption(QInputDialog.InputDialogOption.UsePlainTextEditForTextInput)
+        box.setWindowTitle("Note")
+        box.setLabelText(f"note to {name}")
+        box.setTextValue(note)
+        box.setProperty(GUIDE, "shelf#use")
+        return box.textValue() if _answered(box) else None
 
     def recover(self, parent: QWidget, name: str, when: str) -> Recovery:
         """What becomes of a sheet that was not saved when the program ended."""
@@ -101,12 +115,13 @@ class Dialogs:
             QMessageBox.Icon.NoIcon, "Unsaved work", f"{name} was not saved when Gainbench ended ({when})."
         )
         box.setParent(parent, box.windowFlags())
+        box.setProperty(GUIDE, "the-sheet")
         box.setInformativeText("Restore it?")
         restore = box.addButton("Restore", QMessageBox.ButtonRole.AcceptRole)
         discard = box.addButton("Discard it", QMessageBox.ButtonRole.DestructiveRole)
         box.addButton("Ask again next time", QMessageBox.ButtonRole.RejectRole)
         box.setDefaultButton(restore)
-        box.exec()
+        _answered(box)
         if box.clickedButton() is restore:
             return Recovery.RESTORE
         return Recovery.DISCARD if box.clickedButton() is discard else Recovery.LATER
@@ -120,7 +135,7 @@ class Dialogs:
         later = box.addButton("Later", QMessageBox.ButtonRole.RejectRole)
         box.setDefaultButton(now)
         box.setEscapeButton(later)
-        box.exec()
+        _answered(box)
         return box.clickedButton() is now
 
     def picture_to_save(self, parent: QWidget, suggestion: str) -> Path | None:
@@ -141,14 +156,21 @@ class Dialogs:
     def rows_to_set(self, parent: QWidget, desk: Desk) -> Mapping[str, EntryValue]:
         """What pasted rows of a data sheet are to set; nothing where it is not confirmed."""
         dialog = PasteDialog(desk, QGuiApplication.clipboard().text(), parent)
-        return dialog.values() if dialog.exec() else {}
+        return dialog.values() if _answered(dialog) else {}
 
     def show(self, dialog: QDialog) -> None:
         """Show something to read."""
-        dialog.exec()
+        _answered(dialog)
 
     def tell(self, parent: QWidget, title: str, message: str) -> None:
         """Say something that must be read."""
         box = QMessageBox(QMessageBox.Icon.NoIcon, title, message, QMessageBox.StandardButton.Ok)
         box.setParent(parent, box.windowFlags())
-        box.exec()
+        _answered(box)
+
+
+def _answered(dialog: QDialog) -> int:
+    """Show a dialog until it is answered; it goes once its answer was read."""
+    answer = dialog.exec()
+    dialog.deleteLater()
+    return answer

@@ -10,6 +10,8 @@ from gainbench_app.shortcuts import SHEET, WITHIN, Shortcut, told
 from gainbench_resources import guide_page
 
 FIRST = "first-steps"
+GUIDE = "guide"
+"""A property that a widget may carry: ``page#section``, for itself and all in it."""
 GROUPS: dict[str, tuple[str, ...]] = {
     "The window": (FIRST, "the-sheet", "asking", "reading", "shelf", "handover"),
     "Experiments": ("locked-rotor", "no-load", "coast-down", "driven", "step-check", "frequency-response"),

@@ -4,9 +4,13 @@ from __future__ import annotations
 
 from PySide6.QtWidgets import QWidget
 
-from gainbench_app.guide.pages import FIRST
+from gainbench_app.guide.pages import FIRST, GUIDE
+from gainbench_app.handover_dialog import HandoverDialog
+from gainbench_app.keep_dialog import KeepDialog
 from gainbench_app.on_bench.column import OnBench
+from gainbench_app.paste_dialog import PasteDialog
 from gainbench_app.shelf.panel import ShelfPanel
+from gainbench_app.shortcuts import ShortcutList
 from gainbench_app.top_bar import TopBar
 from gainbench_app.what_it_does.bode import BodePlot
 from gainbench_app.what_it_does.column import WhatItDoes
@@ -19,10 +23,11 @@ from gainbench_app.what_we_ask.target_row import TargetRow
 from gainbench_app.widgets.reach_plot import ReachPlot
 from gainbench_app.widgets.tolerance_box import ToleranceBox
 
-GUIDE = "guide"
-"""A property that a widget may carry: ``page#section``, for itself and all in it."""
-
 PLACES: tuple[tuple[type[QWidget], str], ...] = (
+    (HandoverDialog, "handover"),
+    (KeepDialog, "shelf#keep"),
+    (PasteDialog, "first-steps#2-put-in-your-motor"),
+    (ShortcutList, "keys"),
     (ToleranceBox, "the-sheet#tolerance"),
     (ReachPlot, "asking#reach-map"),
     (TargetRow, "asking#sliders-and-boxes"),

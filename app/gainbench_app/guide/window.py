@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from PySide6.QtCore import QSize, Qt
+from PySide6.QtCore import QPoint, QRect, QSize, Qt
 from PySide6.QtGui import QFont, QGuiApplication, QShortcut
 from PySide6.QtWidgets import (
     QAbstractItemView,
@@ -26,6 +26,8 @@ from gainbench_app.widgets.appearance import Appearance
 _SIZE = (880, 700)
 _LIST_PX = 190
 _ROW_PX, _HEAD_PX = 26, 30
+_GAP_PX = 8
+"""Between a dialog and the guide beside it."""
 _PAGE = Qt.ItemDataRole.UserRole
 
 
@@ -65,6 +67,19 @@ class GuideWindow(QWidget):
     def open(self, page: str, section: str = "") -> None:
         """Show a page at one of its sections."""
         self.view.open(page, section)
+
+    def stand_over(self, below: QWidget) -> None:
+        """Belong to a window or dialog: what a dialog shuts out are the windows that do not stand over it."""
+        if self.windowHandle() is None:
+            # What belongs to what is told to the screen when a window is shown first.
+            self.create()
+        self.windowHandle().setTransientParent(below.windowHandle())
+
+    def stand_beside(self, dialog: QWidget) -> None:
+        """Cover as little of a dialog as the screen lets; where the guide is in sight beside it, it stays."""
+        taken = dialog.frameGeometry()
+        if not self.isVisible() or self.frameGeometry().intersects(taken):
+            self.move(_beside(self.frameGeometry().size(), taken, room=dialog.screen().availableGeometry()))
 
     def bring_up(self) -> None:
         """Show the window before the others, with the keys in its page."""
@@ -144,3 +159,11 @@ class GuideWindow(QWidget):
             self.find_bar.leave()
         else:
             self.close()
+
+
+def _beside(size: QSize, taken: QRect, *, room: QRect) -> QPoint:
+    """The upper left corner beside a dialog, on the side where the screen has more room."""
+    on_right = room.right() - taken.right() >= taken.left() - room.left()
+    wanted = taken.right() + 1 + _GAP_PX if on_right else taken.left() - _GAP_PX - size.width()
+    x = max(room.left(), min(wanted, room.right() + 1 - size.width()))
+    return QPoint(x, max(room.top(), min(taken.top(), room.bottom() + 1 - size.height())))

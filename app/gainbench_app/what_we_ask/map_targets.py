@@ -7,14 +7,20 @@ import math
 from gainbench.model import DesignMethod, LoopAims
 from gainbench.results import LoopAssessment
 from gainbench.sampling import Loop
-from gainbench.tuning.bandwidth import bandwidth_margin, reached_bandwidth
+from gainbench.tuning.bandwidth import crossover_for_bandwidth, reached_bandwidth
 from gainbench_app.widgets.map_view import MapPoint
 
 POINT_METHODS = (DesignMethod.CROSSOVER_MARGIN, DesignMethod.BANDWIDTH_MARGIN)
 """Whose two targets are a point of the map."""
 _SAME = 1e-4
 """Relative distance within which the design comes back to the crossover that was asked for."""
-_HALVINGS = 8
+_DIGITS = 5e-4
+"""Largest relative distance of a bandwidth from the one that is saved, with four digits."""
+_BESIDE = 0.05
+"""Relative distance of the crossovers that these two may lead to."""
+_STEPS_BACK = tuple(1.0 - 0.5**power for power in range(6, -1, -1))
+"""Shares of the way to a place that are tried from the place on, before the last one is found by halving."""
+_HALVINGS = 5
 _USUAL_RATIO = 1.5
 """Bandwidth over crossover where the loop has none (common practice)."""
 
@@ -62,8 +68,8 @@ def targets_at(
     """The targets that lead to a place of the map.
 
     A bandwidth is that of the loop which crosses over there. Not every place has one of its own: behind a resonance
-    the loop may cross over twice, or another crossover may have the same bandwidth. Then it is the last place on the
-    way there that has.
+    the loop may have crossed over before, or another crossover may have the same bandwidth. Then it is the last place
+    on the way there that has, be it behind others that have none.
 
     Parameters
     ----------
@@ -85,22 +91,36 @@ def targets_at(
     """
     if method is DesignMethod.CROSSOVER_MARGIN:
         return {"crossover": crossover, "phase_margin": margin}
-    bandwidth = _own_bandwidth(sampled, crossover, margin=margin)
-    if bandwidth is not None:
-        return {"bandwidth": bandwidth, "phase_margin": margin}
-    if here is None:
+    found = _own_target(sampled, crossover, margin=margin)
+    if found or here is None:
+        return found
+
+    def on_the_way(share: float) -> dict[str, float]:
+        between = here.crossover * (crossover / here.crossover) ** share
+        return _own_target(sampled, between, margin=here.margin + (margin - here.margin) * share)
+
+    unmet = 1.0
+    for met in _STEPS_BACK:
+        found = on_the_way(met)
+        if found:
+            break
+        unmet = met
+    if not found:
         return {}
-    met, unmet, found = 0.0, 1.0, {}
     for _ in range(_HALVINGS):
         middle = 0.5 * (met + unmet)
-        between = here.crossover * (crossover / here.crossover) ** middle
-        level = here.margin + (margin - here.margin) * middle
-        bandwidth = _own_bandwidth(sampled, between, margin=level)
-        if bandwidth is None:
-            unmet = middle
+        further = on_the_way(middle)
+        if further:
+            met, found = middle, further
         else:
-            met, found = middle, {"bandwidth": bandwidth, "phase_margin": level}
+            unmet = middle
     return found
+
+
+def _own_target(sampled: Loop, crossover: float, *, margin: float) -> dict[str, float]:
+    """Bandwidth and margin that lead to a place; empty where no bandwidth does."""
+    bandwidth = _own_bandwidth(sampled, crossover, margin=margin)
+    return {} if bandwidth is None else {"bandwidth": bandwidth, "phase_margin": margin}
 
 
 def _own_bandwidth(sampled: Loop, crossover: float, *, margin: float) -> float | None:
@@ -108,5 +128,9 @@ def _own_bandwidth(sampled: Loop, crossover: float, *, margin: float) -> float |
     bandwidth = reached_bandwidth(sampled, crossover, margin=margin)
     if bandwidth is None:
         return None
-    found = bandwidth_margin(sampled, bandwidth=bandwidth, margin=margin).asked_crossover
-    return bandwidth if found is not None and abs(found / crossover - 1.0) < _SAME else None
+    # Also in the digits that are saved: next to an edge they are refused, or lead to a crossover far away.
+    for asked, away in ((1.0, _SAME), (1.0 - _DIGITS, _BESIDE), (1.0 + _DIGITS, _BESIDE)):
+        found = crossover_for_bandwidth(sampled, asked * bandwidth, margin=margin)
+        if found is None or abs(found / crossover - 1.0) > away:
+            return None
+    return bandwidth

@@ -10,8 +10,9 @@ import numpy as np
 
 from gainbench.assess import Assessment, assess
 from gainbench.assessed import LoopName, assessed_loop
+from gainbench.bandwidth_reach import FINE, QUICK, with_own_bandwidth
 from gainbench.kept import with_kept
-from gainbench.model import KeptTuning
+from gainbench.model import DesignMethod, KeptTuning
 from gainbench.reach import ReachArea, ReachMap, reach_areas, reach_map
 from gainbench.results import LoopAssessment
 from gainbench.sampling import Loop
@@ -64,7 +65,7 @@ class KeptPoints:
 
 
 class ReachKeeper:
-    """The map of one loop."""
+    """The map of one loop; where a bandwidth is asked for, only what a bandwidth leads to."""
 
     def __init__(self, loop: LoopName, kept: KeptPoints) -> None:
         self._loop: LoopName = loop
@@ -106,7 +107,8 @@ class ReachKeeper:
         -------
         MapView
         """
-        self._compute(assessment, quick=quick and self._ranges is not None)
+        by_bandwidth = asked and loop_aims(assessment.sheet, self._loop).method is DesignMethod.BANDWIDTH_MARGIN
+        self._compute(assessment, quick=quick and self._ranges is not None, by_bandwidth=by_bandwidth)
         own = assessment.current if self._loop == "current" else assessment.speed
         point = self._point(assessment, own, asked=asked)
         kept = self._kept.of(assessment, self._loop)
@@ -123,11 +125,12 @@ class ReachKeeper:
             kept=kept,
         )
 
-    def _compute(self, assessment: Assessment, *, quick: bool) -> None:
+    def _compute(self, assessment: Assessment, *, quick: bool, by_bandwidth: bool) -> None:
         firmware = assessment.sheet.aims.firmware
         inner = assessment.current.gains if self._loop == "speed" else None
         # The gains of the current loop are in the speed loop's map, its own targets are not.
-        key = (assessment.plant, assessment.sheet.rig.stage, firmware.integrator, firmware.back_emf_feedforward, inner)
+        rules = (firmware.integrator, firmware.back_emf_feedforward)
+        key = (assessment.plant, assessment.sheet.rig.stage, *rules, inner, by_bandwidth)
         if key == self._of and (quick or self._whole):
             return
         self._of, self._whole = key, not quick
@@ -140,9 +143,11 @@ class ReachKeeper:
             low, high = (math.tau * 10.0**one for one in (self._ranges[0].low, self._ranges[0].high))
             if low < 0.9 * nyquist:
                 found = reach_map(loop, lowest=low / _BESIDE, highest=high * _BESIDE, columns=QUICK_COLUMNS)
-                self._areas = reach_areas(found)
+                self._areas = reach_areas(with_own_bandwidth(loop, found, step=QUICK) if by_bandwidth else found)
                 return
         found = reach_map(loop, lowest=nyquist * 10.0**-DECADES, columns=COLUMNS)
+        if by_bandwidth:
+            found = with_own_bandwidth(loop, found, step=FINE)
         self._areas, self._whole = reach_areas(found), True
         self._wanted = _wanted(found)
 

@@ -48,7 +48,7 @@ def bandwidth_margin(loop: Loop, *, bandwidth: float, margin: float) -> Design:
         return Design(
             refusal=Refusal(reason=reason, nearest_bandwidth=nearest_bandwidth(loop, bandwidth, margin=margin))
         )
-    crossover = _crossover_for(loop, bandwidth, margin=margin)
+    crossover = crossover_for_bandwidth(loop, bandwidth, margin=margin)
     if crossover is not None:
         return Design(gains=gains_for(loop, crossover, margin=margin), stable=True, asked_crossover=crossover)
     nearest = nearest_bandwidth(loop, bandwidth, margin=margin)
@@ -91,6 +91,33 @@ def reached_bandwidth(loop: Loop, crossover: float, *, margin: float) -> float |
     return figures.bandwidth_hz * math.tau
 
 
+def crossover_for_bandwidth(loop: Loop, bandwidth: float, *, margin: float) -> float | None:
+    """The crossover that :func:`bandwidth_margin` designs for, without what is nearest where there is none.
+
+    Parameters
+    ----------
+    loop : Loop
+        Current or speed loop.
+    bandwidth : float
+        First frequency where ``|L/(1 + L)|`` falls through ``1/sqrt(2)`` [rad/s], > 0 and below the Nyquist frequency.
+    margin : float
+        Phase margin at the crossover [rad], 0 to pi/2.
+
+    Returns
+    -------
+    float or None
+        The highest [rad/s]; None where no positive gains with a stable loop meet both.
+    """
+    from gainbench.kernels.targets import crossovers_for_bandwidth
+
+    found = crossovers_for_bandwidth(loop.plant, loop.rule, margin, bandwidth, crossover_grid(loop))
+    for crossover in found:
+        reached = reached_bandwidth(loop, float(crossover), margin=margin)
+        if reached is not None and abs(reached / bandwidth - 1.0) < AGREES:
+            return float(crossover)
+    return None
+
+
 def nearest_bandwidth(loop: Loop, bandwidth: float, *, margin: float) -> float | None:
     """The bandwidth closest to the asked one, by ratio, that can be met with the margin [rad/s]; None if none."""
     grid = crossover_grid(loop)[::COARSE]
@@ -115,26 +142,15 @@ def nearest_bandwidth(loop: Loop, bandwidth: float, *, margin: float) -> float |
     return best
 
 
-def _crossover_for(loop: Loop, bandwidth: float, *, margin: float) -> float | None:
-    from gainbench.kernels.targets import crossovers_for_bandwidth
-
-    found = crossovers_for_bandwidth(loop.plant, loop.rule, margin, bandwidth, crossover_grid(loop))
-    for crossover in found:
-        reached = reached_bandwidth(loop, float(crossover), margin=margin)
-        if reached is not None and abs(reached / bandwidth - 1.0) < AGREES:
-            return float(crossover)
-    return None
-
-
 def _largest_margin(loop: Loop, bandwidth: float) -> float | None:
     """The largest margin, up to 90 degrees, with which the bandwidth can be met [rad]."""
     unmet = math.pi / 2.0
     for margin in np.arange(math.pi / 2.0, -1e-9, -MARGIN_STEP):
-        if _crossover_for(loop, bandwidth, margin=float(margin)) is not None:
+        if crossover_for_bandwidth(loop, bandwidth, margin=float(margin)) is not None:
             met = float(margin)
             while unmet - met > MARGIN_FINEST:
                 middle = 0.5 * (met + unmet)
-                if _crossover_for(loop, bandwidth, margin=middle) is not None:
+                if crossover_for_bandwidth(loop, bandwidth, margin=middle) is not None:
                     met = middle
                 else:
                     unmet = middle

@@ -107,3 +107,20 @@ def test_a_speed_loop_without_a_current_loop_has_no_map(demo_texts):
 def test_a_refused_loop_is_nowhere(demo_texts):
     refused = assess(sheet_of(demo_texts, {"aims.speed.crossover": "900 Hz"}), simulated=False)
     assert reached(refused.speed) is None
+
+
+@pytest.mark.parametrize("quick", [False, True])
+def test_where_a_bandwidth_is_asked_for_only_what_it_leads_to_is_filled(demo_texts, quick):
+    keeper = ReachKeeper("speed", KeptPoints())
+    sheet = sheet_of(demo_texts, name="sieve-drum")
+
+    def last(areas):
+        return max(float(one.crossover[-1]) for one in areas) / math.tau
+
+    by_crossover = view_of(keeper, sheet)
+    assert last(by_crossover.areas) > 300.0
+    values = {"aims.speed.method": "bandwidth-margin", "aims.speed.bandwidth": "60 Hz"}
+    asking = sheet_of(demo_texts, values, name="sieve-drum")
+    # Behind the resonance the loop has crossed over before.
+    assert last(view_of(keeper, asking, quick=quick).areas) < 110.0
+    assert last(view_of(keeper, asking, asked=False).areas) > 300.0

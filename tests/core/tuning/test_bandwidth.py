@@ -10,7 +10,7 @@ from gainbench.margins import read_loop
 from gainbench.model import Firmware
 from gainbench.plant import refer
 from gainbench.sampling import current_loop, hardware
-from gainbench.tuning.bandwidth import bandwidth_margin, nearest_bandwidth, reached_bandwidth
+from gainbench.tuning.bandwidth import bandwidth_margin, crossover_for_bandwidth, nearest_bandwidth, reached_bandwidth
 from gainbench.tuning.exact import crossover_grid, gains_for, holds
 from quantities import assert_quantity
 from rigs import fixed_sheet
@@ -78,3 +78,10 @@ def test_what_a_crossover_reaches_is_what_asks_for_it(loop):
 
 def test_a_crossover_that_cannot_be_met_reaches_nothing(loop):
     assert reached_bandwidth(loop, 0.9 * math.pi / loop.plant.period, margin=math.radians(60.0)) is None
+
+
+def test_the_crossover_alone_is_that_of_the_design(loop):
+    margin = math.radians(60.0)
+    design = bandwidth_margin(loop, bandwidth=math.tau * 600.0, margin=margin)
+    assert crossover_for_bandwidth(loop, math.tau * 600.0, margin=margin) == design.asked_crossover
+    assert crossover_for_bandwidth(loop, math.tau * 4000.0, margin=margin) is None
