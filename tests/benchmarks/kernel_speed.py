@@ -107,7 +107,7 @@ def demo_run() -> Run:
 
 def c_run(run: Run) -> CRun:
     """The same run as the C source takes it, with its steps ready made; for a rigid train with short segments."""
-    from gainbench.kernels.motion import flow_matrix, prepare_motion, read_flow, read_segments
+    from gainbench.kernels.motion import flow_matrix, prepare_motion, read_flow, read_step
 
     sampling, script = run.sampling, run.script
     first = sampling.held_part * sampling.period
@@ -132,7 +132,9 @@ def c_run(run: Run) -> CRun:
     for name, law in (("current", run.current_law), ("speed", run.speed_law)):
         setattr(out, name, CLaw(law.kp, law.ki_period, law.weight, law.relief, law.rule, int(law.hold)))
     for resting in range(2):
-        for segment, step in enumerate(read_segments(motion, resting)):
+        for segment in range(2):
+            # Without a first segment, its step is without meaning.
+            step = read_step(motion, segment if first > 0.0 else 1, resting, motion.fine)
             out.step[segment][resting] = CStep(
                 i=_four(step.current),
                 w=_four(step.speed),

@@ -9,7 +9,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from gainbench.assess import assess, is_compiled, warm_up
+from gainbench.assess import _small_sheet, assess, is_compiled, warm_up
 from gainbench.model import DesignMethod, HandGains, LoopAims, SpeedAims
 from gainbench.results import Level
 from gainbench.sheetfile import parse_sheet
@@ -125,3 +125,10 @@ def test_warm_up_leaves_its_code_on_disk(monkeypatch, tmp_path):
     assert is_compiled()
     monkeypatch.setenv("NUMBA_CACHE_DIR", str(tmp_path))
     assert not is_compiled()
+
+
+def test_the_sheet_to_warm_up_with_has_words_that_look_for_causes():
+    for method in (DesignMethod.CROSSOVER_MARGIN, DesignMethod.BANDWIDTH_MARGIN):
+        found = {one.code: one for one in assess(_small_sheet(method), simulated=False).findings}
+        for name in ("current", "speed"):
+            assert "takes most" in found[f"{name}-phase-margin-thin"].reason

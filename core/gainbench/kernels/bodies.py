@@ -33,11 +33,18 @@ def load_pull(flow: Flow, x: PlantState) -> float:
 
 
 @inlined
-def start_way(pull: float, backwards: float, forwards: float) -> int:
-    """Way a resting body would accelerate against the drag of that way, both [rad/s^2]; 0 if it stays."""
-    if pull - forwards > SLACK * abs(forwards):
+def start_bounds(weight: float, backwards: float, forwards: float) -> tuple[float, float]:
+    """Accelerations below and above which a body at rest starts [rad/s^2], of its drags and what one weighs there."""
+    low, high = -weight * backwards, -weight * forwards
+    return low - SLACK * abs(low), high + SLACK * abs(high)
+
+
+@inlined
+def start_way(pull: float, bounds: tuple[float, float]) -> int:
+    """Way a resting body would accelerate; 0 if it stays."""
+    if pull > bounds[1]:
         return 1
-    if pull - backwards < -SLACK * abs(backwards):
+    if pull < bounds[0]:
         return -1
     return 0
 
@@ -45,13 +52,13 @@ def start_way(pull: float, backwards: float, forwards: float) -> int:
 @inlined
 def motor_start(flow: Flow, drag: Drag, x: PlantState) -> int:
     """Way the resting motor body would start; 0 if it stays."""
-    return start_way(motor_pull(flow, x), -flow.wd * drag.motor_backwards, -flow.wd * drag.motor_forwards)
+    return start_way(motor_pull(flow, x), start_bounds(flow.wd, drag.motor_backwards, drag.motor_forwards))
 
 
 @inlined
 def load_start(flow: Flow, drag: Drag, x: PlantState) -> int:
     """Way the resting load body would start; 0 if it stays."""
-    return start_way(load_pull(flow, x), -flow.ld * drag.load_backwards, -flow.ld * drag.load_forwards)
+    return start_way(load_pull(flow, x), start_bounds(flow.ld, drag.load_backwards, drag.load_forwards))
 
 
 @inlined

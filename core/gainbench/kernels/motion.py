@@ -11,13 +11,15 @@ from numpy.typing import NDArray
 
 from gainbench.kernels.compiled import compiled, inlined
 from gainbench.kernels.linalg import expm_minus_identity
-from gainbench.kernels.response_records import Flow, Inputs, Layout, Motion, PlantState, Row, Segments, Step
+from gainbench.kernels.response_records import Flow, Inputs, Layout, Motion, PlantState, Row, Step
 
 STATES = 7
 """The six of PlantState and the charge, the integral of the current."""
 INPUTS = 3
 """Voltage and the drag on either body."""
+FILTERED = 2
 CHARGE = 6
+"""States that have a rule of their own."""
 SIZE = STATES + INPUTS
 SHORT = 2.0
 """A piece is short where the plant's rate times its length is at most this: its series loses no digit that counts."""
@@ -71,10 +73,15 @@ def read_flow(matrix: NDArray[np.float64], elastic: bool) -> Flow:
 
 
 @compiled
-def plant_rate(matrix: NDArray[np.float64]) -> float:
-    """Bound on the plant's own rates [1/s]: its largest row sum, scaled so that each pair of states couples alike."""
+def plant_rate(matrix: NDArray[np.float64], filtered: bool) -> float:
+    """Bound on the plant's own rates [1/s]: its largest row sum, scaled so that each pair of states couples alike.
+
+    The filtered current, which drives nothing, can be left out.
+    """
     rate = 0.0
     for row in range(6):
+        if row == FILTERED and not filtered:
+            continue
         own = abs(matrix[row, row])
         for column in range(6):
             if column != row:
@@ -86,7 +93,7 @@ def plant_rate(matrix: NDArray[np.float64]) -> float:
 @compiled
 def prepare_motion(matrix: NDArray[np.float64], first: float, second: float) -> Motion:
     """The plant over segments of these lengths [s]; ``first`` may be 0. No step is computed yet."""
-    span = plant_rate(matrix) * max(first, second)
+    span = plant_rate(matrix, True) * max(first, second)
     fine = 0
     while span > SHORT:
         span *= 0.5
@@ -160,15 +167,6 @@ def read_step(motion: Motion, segment: int, resting: int, level: int) -> Step:
         read_row(step, 5),
         read_row(step, CHARGE),
     )
-
-
-@compiled
-def read_segments(motion: Motion, resting: int) -> Segments:
-    """The steps over both segments of a tick in a mode."""
-    # A written 0 or 1 is a type of its own to the compiler: everything below would be compiled twice.
-    second = read_step(motion, int(SECOND), resting, motion.fine)
-    first = read_step(motion, int(FIRST), resting, motion.fine) if motion.width[FIRST] > 0.0 else second
-    return Segments(first, second)
 
 
 @inlined

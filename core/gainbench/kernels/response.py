@@ -2,37 +2,39 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 import numpy as np
 from numpy.typing import NDArray
 
-from gainbench.kernels.bodies import depart, eventless, inputs_of, resting_bodies
+from gainbench.kernels.bodies import depart
 from gainbench.kernels.compiled import compiled, inlined
-from gainbench.kernels.motion import (
-    FIRST,
-    SECOND,
-    change,
-    flow_matrix,
-    prepare_motion,
-    read_flow,
-    read_segments,
-    stride,
-)
+from gainbench.kernels.gliding import SIZE, fill_table, glide, strays
+from gainbench.kernels.motion import FIRST, SECOND, flow_matrix, prepare_motion, read_flow
 from gainbench.kernels.pi import pi_step
+from gainbench.kernels.response_figures import size_figures
 from gainbench.kernels.response_records import (
-    Drag,
-    Flow,
-    Heading,
-    Motion,
+    BACKWARD,
     PiInputs,
+    PiLaw,
     PiState,
     PlantState,
     Run,
     Sampling,
     Script,
-    Step,
     Tally,
 )
-from gainbench.kernels.series import build_series, charge_to_zero, series_energy, sign_kept
+from gainbench.kernels.returned import (
+    CURRENT_AFTER,
+    CURRENT_BEFORE,
+    LOAD_SPEED_BEFORE,
+    LOGGED,
+    SPEED_BEFORE,
+    TWIST_BEFORE,
+    VOLTAGE_DURING,
+    new_log,
+    returned_energy,
+)
 from gainbench.kernels.travel import travel
 
 REFERENCE = 0
@@ -75,54 +77,218 @@ def voltage_room(sampling: Sampling, speed: float, current: float) -> float:
     return float(np.sqrt(square)) if square > 0.0 else 0.0
 
 
-SURE = 0
-TURNS = 1
-UNSURE = 2
+@inlined
+def plain_law(law: PiLaw) -> PiLaw:
+    """The law of the backward rule, its rule known to the compiler."""
+    return PiLaw(law.kp, law.ki_period, law.weight, int(np.int64(BACKWARD)), law.hold, law.relief)
 
 
 @inlined
-def glide(
-    step: Step, flow: Flow, drag: Drag, heading: Heading, x: PlantState, voltage: float
-) -> tuple[int, PlantState, float]:
-    """Take one step in one mode: what came of it, the state after it, the energy given back [J].
+def voltage_of(held_ticks: int, newest: float, held: float, older: float) -> float:
+    """The voltage that acts when an update takes ``held_ticks`` whole periods [V]."""
+    return newest if held_ticks == 0 else (held if held_ticks == 1 else older)
 
-    SURE: nothing happened. TURNS: no body left the mode, but the current may have changed its sign, so that the energy
-    is to be found otherwise. UNSURE: a body may have left the mode.
+
+NONE = np.int64(-1)
+"""No segment."""
+
+
+def tick_loop(elastic: bool, plain: bool) -> Callable[[Run, NDArray[np.float64], NDArray[np.bool_]], Tally]:
+    """The tick loop for one kind of drive, of the one source below; its machine code leaves out what the kind has not.
+
+    Parameters
+    ----------
+    elastic : bool
+        Whether the train is.
+    plain : bool
+        Whether :func:`is_plain` holds of its drives.
+
+    Returns
+    -------
+    callable
+        As :func:`respond`.
     """
-    u = inputs_of(drag, heading, voltage)
-    y = stride(step, flow, x, u)
-    if not eventless(flow, drag, heading, x, y, u, step.width):
-        return UNSURE, y, 0.0
-    kept = sign_kept(flow, x, y, voltage, step.width)
-    if kept > 0:
-        return SURE, y, 0.0
-    return (SURE if kept < 0 else TURNS), y, -voltage * change(step.charge, flow.elastic, x, u)
+
+    # A written truth is a type of its own to the compiler: what is called with it would be compiled for either.
+    has_shaft = np.bool_(elastic)
+
+    @compiled
+    def run_ticks(run: Run, traces: NDArray[np.float64], flags: NDArray[np.bool_]) -> Tally:
+        layout, sampling, script, start = run.layout, run.sampling, run.script, run.start
+        sprung = bool(has_shaft)
+        filtered = layout.filtered >= 0 and not plain
+        first = 0.0 if plain else sampling.held_part * sampling.period
+        held_ticks = 1 if plain else sampling.held_ticks
+        current_law = plain_law(run.current_law) if plain else run.current_law
+        motion = prepare_motion(flow_matrix(run.plant[0], run.plant[1], layout), first, sampling.period - first)
+
+        drag = run.drags[0]
+        x = PlantState(start.current, 0.0, start.current if filtered else 0.0, 0.0, start.twist, 0.0)
+        heading = depart(read_flow(motion.matrix, sprung), drag, x)
+        first_table, table = np.zeros(SIZE), np.zeros(SIZE)
+        log = new_log()
+        first_log = new_log() if first > 0.0 else log
+        stale, rests = True, False
+
+        current_pi = PiState(start.voltage, 0.0)
+        speed_pi = PiState(start.current, 0.0)
+        newest = held = older = oldest = start.voltage
+        measured = 0.0
+        reference = 0.0
+        current_reference = next_reference = start.current
+        flags[:] = False
+
+        encoder = sampling.counts_per_radian > 0.0
+        counts = np.zeros(sampling.window)
+        counted = 0
+        per_count = 0.0
+        if encoder:
+            per_count = 1.0 / (sampling.counts_per_radian * sampling.window * sampling.divisor * sampling.period)
+
+        given = 0.0
+        current_clamps = voltage_clamps = 0
+        tick = phase = logged = 0
+        while tick < sampling.ticks:
+            if phase == sampling.divisor:
+                phase = 0
+            if phase == 0:
+                if encoder:
+                    count = np.floor(x.angle * sampling.counts_per_radian + 0.5)
+                    raw = (count - counts[counted]) * per_count
+                    counts[counted] = count
+                    counted += 1
+                    if counted == sampling.window:
+                        counted = 0
+                else:
+                    raw = x.speed
+                measured += sampling.filter_gain * (raw - measured)
+                reference = reference_at(script, tick, tick * sampling.period)
+                speed_pi, asked = pi_step(
+                    run.speed_law, speed_pi, PiInputs(reference, measured, 0.0, sampling.current_limit)
+                )
+                next_reference = asked.value
+                if asked.clamped:
+                    current_clamps += 1
+                    for later in range(tick, min(tick + sampling.divisor, sampling.ticks)):
+                        flags[CURRENT_CLAMPED, later] = True
+            if phase == sampling.reference_delay:
+                current_reference = next_reference
+            if tick == script.load_tick:
+                drag = run.drags[1]
+                heading = depart(read_flow(motion.matrix, sprung), drag, x)
+                stale = True
+            if stale:
+                rests = fill_table(table, motion, sprung, drag, heading, int(SECOND))
+                if first > 0.0:
+                    fill_table(first_table, motion, sprung, drag, heading, int(FIRST))
+                stale = False
+
+            # Up to the next tick at which anything but the current loop has its turn.
+            phase_end = sampling.reference_delay if phase < sampling.reference_delay else sampling.divisor
+            end = min(tick + phase_end - phase, tick + LOGGED - logged, sampling.ticks)
+            if tick < script.load_tick:
+                end = min(end, script.load_tick)
+            phase -= tick
+            strayed = int(NONE)
+            while tick < end:
+                # Known to be no negative index, so that none is looked for.
+                at, place = np.uint64(tick), logged & (LOGGED - 1)
+                sample = x.filtered if filtered else x.current
+                # Minus zero, since to add it is nothing to the compiler.
+                addend = -0.0 if plain else sampling.feedforward * measured
+                room = sampling.voltage_limit if plain else voltage_room(sampling, measured, sample)
+                current_pi, output = pi_step(current_law, current_pi, PiInputs(current_reference, sample, addend, room))
+                oldest, older, held, newest = older, held, newest, output.value
+                traces[REFERENCE, at] = reference
+                traces[SPEED, at] = x.speed
+                traces[CURRENT, at] = x.current
+                traces[CURRENT_REFERENCE, at] = current_reference
+                traces[VOLTAGE, at] = output.value
+                if elastic:
+                    traces[LOAD_SPEED, at] = x.load_speed
+                if output.clamped:
+                    voltage_clamps += 1
+                    flags[VOLTAGE_CLAMPED, at] = True
+
+                if first > 0.0:
+                    voltage = voltage_of(held_ticks, held, older, oldest)
+                    y = glide(first_table, elastic, not plain, x, voltage)
+                    if strays(first_table, elastic, rests, x, y):
+                        strayed = int(FIRST)
+                        break
+                    first_log[CURRENT_BEFORE + place] = x.current
+                    first_log[SPEED_BEFORE + place] = x.speed
+                    first_log[VOLTAGE_DURING + place] = voltage
+                    first_log[CURRENT_AFTER + place] = y.current
+                    if elastic:
+                        first_log[LOAD_SPEED_BEFORE + place] = x.load_speed
+                        first_log[TWIST_BEFORE + place] = x.twist
+                    x = y
+                voltage = voltage_of(held_ticks, newest, held, older)
+                y = glide(table, elastic, not plain, x, voltage)
+                if strays(table, elastic, rests, x, y):
+                    strayed = int(SECOND)
+                    break
+                log[CURRENT_BEFORE + place] = x.current
+                log[SPEED_BEFORE + place] = x.speed
+                log[VOLTAGE_DURING + place] = voltage
+                log[CURRENT_AFTER + place] = y.current
+                if elastic:
+                    log[LOAD_SPEED_BEFORE + place] = x.load_speed
+                    log[TWIST_BEFORE + place] = x.twist
+                x = y
+                logged += 1
+                tick += 1
+            phase += tick
+
+            if strayed != NONE or logged == LOGGED or tick == sampling.ticks or tick == script.load_tick:
+                given += returned_energy(motion, sprung, drag, heading, int(SECOND), log, logged)
+                if first > 0.0:
+                    firsts = logged + (1 if strayed == SECOND else 0)
+                    given += returned_energy(motion, sprung, drag, heading, int(FIRST), first_log, firsts)
+                logged = 0
+            if strayed != NONE:
+                flow = read_flow(motion.matrix, sprung)
+                if strayed == FIRST:
+                    voltage = voltage_of(held_ticks, held, older, oldest)
+                    heading, x, back = travel(motion, flow, drag, int(FIRST), x, voltage)
+                    given += back
+                voltage = voltage_of(held_ticks, newest, held, older)
+                heading, x, back = travel(motion, flow, drag, int(SECOND), x, voltage)
+                given += back
+                stale = True
+                tick += 1
+                phase += 1
+
+        for tick in range(sampling.ticks):
+            traces[TIME, tick] = tick * sampling.period
+        squares, peak_current = size_figures(traces[CURRENT])
+        _, peak_voltage = size_figures(traces[VOLTAGE])
+        return Tally(peak_current, squares, peak_voltage, current_clamps, voltage_clamps, given)
+
+    return run_ticks
 
 
-@inlined
-def turning_energy(
-    motion: Motion, step: Step, flow: Flow, drag: Drag, heading: Heading, x: PlantState, y: PlantState, voltage: float
-) -> float:
-    """Energy given back over a step in one mode, from x to y, in which the current changes its sign [J]."""
-    u = inputs_of(drag, heading, voltage)
-    build_series(motion.series, flow, resting_bodies(flow, heading), x, u, step.width)
-    pushed = flow.iv * voltage
-    slope = flow.ii * x.current + flow.iw * x.speed + pushed
-    slope_after = flow.ii * y.current + flow.iw * y.speed + pushed
-    if x.current * y.current < 0.0 and slope * slope_after > 0.0:
-        charge = charge_to_zero(motion.series, y.current)
-        if voltage * x.current > 0.0:
-            charge = change(step.charge, flow.elastic, x, u) - charge
-        return -voltage * charge
-    return series_energy(motion.series, voltage, 1.0)
+run_plain = tick_loop(False, True)
+run_rigid = tick_loop(False, False)
+run_elastic = tick_loop(True, False)
 
 
-@compiled
-def respond(
-    run: Run,
-    traces: NDArray[np.float64],
-    flags: NDArray[np.bool_],
-) -> Tally:
+def is_plain(run: Run) -> bool:
+    """Whether a drive is as most are: rigid, no filter, no feedforward, no d axis, one period late, backward rule."""
+    sampling = run.sampling
+    return (
+        run.layout.filtered < 0
+        and run.layout.load_speed < 0
+        and sampling.held_ticks == 1
+        and sampling.held_part == 0.0
+        and sampling.feedforward == 0.0
+        and sampling.reactance == 0.0
+        and run.current_law.rule == BACKWARD
+    )
+
+
+def respond(run: Run, traces: NDArray[np.float64], flags: NDArray[np.bool_]) -> Tally:
     """Run the duty tick by tick.
 
     At a speed tick the speed is measured and the speed PI gives a new current reference, which acts
@@ -143,115 +309,6 @@ def respond(
     Tally
         Sums and peaks of the whole duty.
     """
-    layout, sampling, script, start = run.layout, run.sampling, run.script, run.start
-    first = sampling.held_part * sampling.period
-    matrix = flow_matrix(run.plant[0], run.plant[1], layout)
-    flow = read_flow(matrix, layout.load_speed >= 0)
-    motion = prepare_motion(matrix, first, sampling.period - first)
-    filtered = layout.filtered >= 0
-
-    drag = run.drags[0]
-    x = PlantState(start.current, 0.0, start.current if filtered else 0.0, 0.0, start.twist, 0.0)
-    heading = depart(flow, drag, x)
-    resting = resting_bodies(flow, heading)
-    steps = read_segments(motion, resting)
-    fresh = True
-
-    current_pi = PiState(start.voltage, 0.0)
-    speed_pi = PiState(start.current, 0.0)
-    newest = held = older = oldest = start.voltage
-    measured = 0.0
-    reference = 0.0
-    current_reference = next_reference = start.current
-    current_clamped = False
-
-    encoder = sampling.counts_per_radian > 0.0
-    counts = np.zeros(sampling.window)
-    counted = 0
-    per_count = 0.0
-    if encoder:
-        per_count = 1.0 / (sampling.counts_per_radian * sampling.window * sampling.divisor * sampling.period)
-
-    peak_current = squares = peak_voltage = given = 0.0
-    current_clamps = voltage_clamps = 0
-    to_speed_tick = 0
-    for tick in range(sampling.ticks):
-        if to_speed_tick == 0:
-            to_speed_tick = sampling.divisor
-            if encoder:
-                count = np.floor(x.angle * sampling.counts_per_radian + 0.5)
-                raw = (count - counts[counted]) * per_count
-                counts[counted] = count
-                counted += 1
-                if counted == sampling.window:
-                    counted = 0
-            else:
-                raw = x.speed
-            measured += sampling.filter_gain * (raw - measured)
-            reference = reference_at(script, tick, tick * sampling.period)
-            speed_pi, asked = pi_step(
-                run.speed_law, speed_pi, PiInputs(reference, measured, 0.0, sampling.current_limit)
-            )
-            next_reference, current_clamped = asked.value, asked.clamped
-            if current_clamped:
-                current_clamps += 1
-        if sampling.divisor - to_speed_tick == sampling.reference_delay:
-            current_reference = next_reference
-        to_speed_tick -= 1
-
-        sample = x.filtered if filtered else x.current
-        room = voltage_room(sampling, measured, sample)
-        current_pi, output = pi_step(
-            run.current_law, current_pi, PiInputs(current_reference, sample, sampling.feedforward * measured, room)
-        )
-        oldest, older, held, newest = older, held, newest, output.value
-        if output.clamped:
-            voltage_clamps += 1
-
-        traces[REFERENCE, tick] = reference
-        traces[SPEED, tick] = x.speed
-        traces[CURRENT, tick] = x.current
-        traces[CURRENT_REFERENCE, tick] = current_reference
-        traces[VOLTAGE, tick] = output.value
-        traces[TIME, tick] = tick * sampling.period
-        if flow.elastic:
-            traces[LOAD_SPEED, tick] = x.load_speed
-        flags[CURRENT_CLAMPED, tick] = current_clamped
-        flags[VOLTAGE_CLAMPED, tick] = output.clamped
-        peak_current = max(peak_current, abs(x.current))
-        peak_voltage = max(peak_voltage, abs(output.value))
-        squares += x.current * x.current
-
-        if tick == script.load_tick:
-            drag = run.drags[1]
-            fresh = True
-        if first > 0.0:
-            voltage = held if sampling.held_ticks == 0 else (older if sampling.held_ticks == 1 else oldest)
-            came, y, back = glide(steps.first, flow, drag, heading, x, voltage)
-            if came == SURE and not fresh:
-                x = y
-            elif came == TURNS and not fresh and motion.fine == 0:
-                back = turning_energy(motion, steps.first, flow, drag, heading, x, y, voltage)
-                x = y
-            else:
-                heading, x, back = travel(motion, flow, drag, int(FIRST), x, voltage)
-                fresh = False
-                if resting != resting_bodies(flow, heading):
-                    resting = resting_bodies(flow, heading)
-                    steps = read_segments(motion, resting)
-            given += back
-        voltage = newest if sampling.held_ticks == 0 else (held if sampling.held_ticks == 1 else older)
-        came, y, back = glide(steps.second, flow, drag, heading, x, voltage)
-        if came == SURE and not fresh:
-            x = y
-        elif came == TURNS and not fresh and motion.fine == 0:
-            back = turning_energy(motion, steps.second, flow, drag, heading, x, y, voltage)
-            x = y
-        else:
-            heading, x, back = travel(motion, flow, drag, int(SECOND), x, voltage)
-            fresh = False
-            if resting != resting_bodies(flow, heading):
-                resting = resting_bodies(flow, heading)
-                steps = read_segments(motion, resting)
-        given += back
-    return Tally(peak_current, squares, peak_voltage, current_clamps, voltage_clamps, given)
+    if run.layout.load_speed >= 0:
+        return run_elastic(run, traces, flags)
+    return (run_plain if is_plain(run) else run_rigid)(run, traces, flags)

@@ -10,6 +10,8 @@ from numpy.typing import NDArray
 from gainbench.kernels.compiled import compiled
 
 NEVER = -1
+LANES = 64
+"""Sums and maxima kept beside each other, so that several ticks are taken at once."""
 
 
 class StepTicks(NamedTuple):
@@ -40,9 +42,11 @@ def step_ticks(speed: NDArray[np.float64], goal: float, first: int, end: int, ba
     sign = 1.0 if goal > 0.0 else -1.0
     size = abs(goal)
     tenth = ninth = outside = NEVER
-    excess = 0.0
-    for tick in range(first, end):
-        excess = max(excess, sign * speed[tick] - size)
+    excesses = np.zeros(LANES)
+    for begin in range(first, end, LANES):
+        part = speed[begin : min(begin + LANES, end)]
+        for lane in range(part.size):
+            excesses[lane] = max(excesses[lane], sign * part[lane] - size)
     for tick in range(first, end):
         if sign * speed[tick] >= 0.1 * size:
             tenth = tick
@@ -56,7 +60,7 @@ def step_ticks(speed: NDArray[np.float64], goal: float, first: int, end: int, ba
         if abs(speed[tick] - goal) > band:
             outside = tick
             break
-    return StepTicks(excess, tenth, ninth, outside)
+    return StepTicks(excesses.max(), tenth, ninth, outside)
 
 
 @compiled
@@ -64,11 +68,27 @@ def load_ticks(
     speed: NDArray[np.float64], reference: NDArray[np.float64], first: int, end: int, band: float
 ) -> LoadTicks:
     """Look at the speed's distance from the reference in force in ticks ``first`` to before ``end``."""
-    dip = 0.0
     outside = NEVER
-    for tick in range(first, end):
-        distance = abs(speed[tick] - reference[tick])
-        dip = max(dip, distance)
-        if distance > band:
+    dips = np.zeros(LANES)
+    for begin in range(first, end, LANES):
+        part, asked = speed[begin : min(begin + LANES, end)], reference[begin : min(begin + LANES, end)]
+        for lane in range(part.size):
+            dips[lane] = max(dips[lane], abs(part[lane] - asked[lane]))
+    for tick in range(end - 1, first - 1, -1):
+        if abs(speed[tick] - reference[tick]) > band:
             outside = tick
-    return LoadTicks(dip, outside)
+            break
+    return LoadTicks(dips.max(), outside)
+
+
+@compiled
+def size_figures(values: NDArray[np.float64]) -> tuple[float, float]:
+    """Sum of the squares, and the largest size."""
+    squares, sizes = np.zeros(LANES), np.zeros(LANES)
+    for first in range(0, values.size, LANES):
+        part = values[first : first + LANES]
+        for lane in range(part.size):
+            value = part[lane]
+            squares[lane] += value * value
+            sizes[lane] = max(sizes[lane], abs(value))
+    return squares.sum(), sizes.max()

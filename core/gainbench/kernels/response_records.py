@@ -228,13 +228,6 @@ class Step(NamedTuple):
     """The integral of the current."""
 
 
-class Segments(NamedTuple):
-    """The steps over the two segments of a tick; the first is without meaning where its length is 0."""
-
-    first: Step
-    second: Step
-
-
 class Motion(NamedTuple):
     """Steps of the plant over the two segments of a tick, and over binary parts of them, computed where needed."""
 

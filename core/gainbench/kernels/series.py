@@ -11,8 +11,6 @@ from gainbench.kernels.response_records import Flow, Inputs, PlantState
 
 HALVINGS = 52
 """Of a piece, to find an instant in it: to the rounding of the instant itself."""
-NEAR = 1e-8
-"""Share of a piece: a step of Newton's method below it leaves an error of its square."""
 SAME_INSTANT = 1e-15
 """Share of a piece below which the search for a zero ends."""
 
@@ -93,12 +91,15 @@ def turning_point(series: NDArray[np.float64], end: float) -> float:
     return high
 
 
-@inlined
-def zero_from(series: NDArray[np.float64], share: float, low: float, high: float, rising: bool, enough: float) -> float:
-    """Share between ``low`` and ``high`` at which the current is zero, by Newton's method kept within its bracket.
+@compiled
+def zero_between(series: NDArray[np.float64], low: float, high: float) -> float:
+    """Share at which the current, monotone from ``low`` to ``high`` and of other sign there, is zero.
 
-    It begins at ``share``, and a step shorter than ``enough`` is the last.
+    By Newton's method kept within its bracket.
     """
+    before, after = value_at(series, 0, low), value_at(series, 0, high)
+    rising = after > before
+    share = low + (high - low) * before / (before - after)
     for _ in range(HALVINGS):
         value = slope = 0.0
         for term in range(series.shape[0] - 1, -1, -1):
@@ -112,32 +113,9 @@ def zero_from(series: NDArray[np.float64], share: float, low: float, high: float
         if not low <= closer <= high:
             closer = 0.5 * (low + high)
         step, share = closer - share, closer
-        if abs(step) < enough:
+        if abs(step) < SAME_INSTANT:
             break
     return share
-
-
-@compiled
-def zero_between(series: NDArray[np.float64], low: float, high: float) -> float:
-    """Share at which the current, monotone from ``low`` to ``high`` and of other sign there, is zero."""
-    before, after = value_at(series, 0, low), value_at(series, 0, high)
-    share = low + (high - low) * before / (before - after)
-    return zero_from(series, share, low, high, after > before, SAME_INSTANT)
-
-
-@compiled
-def charge_to_zero(series: NDArray[np.float64], after: float) -> float:
-    """Charge up to the one zero of a current that is monotone over the piece and ends at ``after`` [A s].
-
-    The search begins at the zero of the parabola through both ends with the first slope. The charge does not change in
-    first order with the instant, so that a step below ``NEAR`` is the last.
-    """
-    before, first = series[0, 0], series[1, 0]
-    bend = after - before - first
-    root = first * first - 4.0 * bend * before
-    share = -2.0 * before / (first + (np.sqrt(root) if first > 0.0 else -np.sqrt(root))) if root > 0.0 else 0.5
-    share = zero_from(series, share, 0.0, 1.0, after > 0.0, NEAR)
-    return value_at(series, int(np.int64(CHARGE)), share)
 
 
 @compiled
@@ -166,8 +144,7 @@ def sign_kept(flow: Flow, x: PlantState, y: PlantState, voltage: float, time: fl
     """1: v i stays at or above 0 from x to y; -1: at or below 0; 0: it may change its sign."""
     ahead = x.current + (flow.ii * x.current + flow.iw * x.speed + flow.iv * voltage) * time
     before, after, aimed = voltage * x.current, voltage * y.current, voltage * ahead
-    if before >= 0.0 and after >= 0.0 and aimed >= 0.0:
-        return 1
-    if before <= 0.0 and after <= 0.0 and aimed <= 0.0:
-        return -1
-    return 0
+    # Without a branch, so that many are looked at together.
+    takes = (before >= 0.0) & (after >= 0.0) & (aimed >= 0.0)
+    gives = (before <= 0.0) & (after <= 0.0) & (aimed <= 0.0)
+    return 1 if takes else (-1 if gives else 0)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 
 import numpy as np
 
@@ -146,7 +147,10 @@ def simulate(
 
 
 def warm_up_response() -> None:
-    """Compile the kernels of the time response, or load them from the disk cache: after it :func:`simulate` is fast."""
+    """Compile the kernels of the time response, or load them from the disk cache: after it :func:`simulate` is fast.
+
+    The tick loop has a machine code for each of three kinds of drive, and one of each is run.
+    """
     plant = Plant(
         kind=MachineKind.BRUSHED_DC,
         resistance=1.0,
@@ -177,14 +181,16 @@ def warm_up_response() -> None:
         speed_rate=1e3,
         speed_sensor=SpeedSensor.IDEAL,
     )
+    sprung = replace(plant, elastic=True, load_inertia=1e-4, stiffness=1.0, damping=1e-3)
     gains = Gains(kp=1.0, ki=1.0)
-    simulate(
-        plant,
-        stage,
-        Firmware(),
-        Duty(reference_speed=1.0, length=2e-3, load_step=1e-3),
-        load_torque=0.0,
-        reference_weight=1.0,
-        current=gains,
-        speed=gains,
-    )
+    for one, delay in ((plant, 1.0), (plant, 1.5), (sprung, 1.0)):
+        simulate(
+            one,
+            replace(stage, update_delay=delay),
+            Firmware(),
+            Duty(reference_speed=1.0, length=2e-3, load_step=1e-3),
+            load_torque=0.0,
+            reference_weight=1.0,
+            current=gains,
+            speed=gains,
+        )

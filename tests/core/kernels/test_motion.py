@@ -16,7 +16,6 @@ from gainbench.kernels.motion import (
     plant_rate,
     prepare_motion,
     read_flow,
-    read_segments,
     read_step,
     stride,
 )
@@ -127,7 +126,7 @@ def test_e10_a_stiff_plant_is_halved_into_short_pieces():
     matrix = matrix_of(stiff)
     poles = sorted(np.linalg.eigvals(matrix[:2, :2]))
     assert_quantity(poles, [-1.4545e6, -59.226], rtol=5e-5, unit="1/s", why="published digits")
-    assert plant_rate(matrix) >= 1.4545e6
+    assert plant_rate(matrix, True) >= 1.4545e6
     motion, flow = prepare_motion(matrix, 0.0, 1e-3), read_flow(matrix, False)
     assert motion.fine == 10
     x, u = PlantState(1.5, 80.0, 0.0, 0.0, 0.0, 3.0), Inputs(12.0, 0.002, 0.0)
@@ -139,7 +138,7 @@ def test_e10_a_stiff_plant_is_halved_into_short_pieces():
         assert_quantity(stride(step, flow, x, u), wanted[:6], rtol=1e-11, atol=1e-12, unit="SI", why=ROUNDING)
 
 
-def test_without_a_first_segment_there_is_one_step():
-    segments = read_segments(prepare_motion(matrix_of(RIGID), 0.0, 5e-5), 0)
-    assert segments.first == segments.second
-    assert segments.second.width == 5e-5
+def test_the_filtered_current_can_be_left_out_of_the_rate():
+    matrix = matrix_of(replace(ELASTIC, filter_time=1e-6))
+    assert plant_rate(matrix, True) >= 1e6
+    assert plant_rate(matrix, False) == plant_rate(matrix_of(replace(ELASTIC, filter_time=0.0)), True)

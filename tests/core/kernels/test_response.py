@@ -7,34 +7,31 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from drives import CURRENT_GAINS, DUTY, ENCODER, FIRMWARE, RIGID, SINE, SPEED_GAINS, matrix_of
-from gainbench.kernels.bodies import inputs_of
-from gainbench.kernels.motion import prepare_motion, read_flow, read_step
+from drives import CURRENT_GAINS, DUTY, ELASTIC, ENCODER, FIRMWARE, RIGID, SINE, SPEED_GAINS, STAGE
 from gainbench.kernels.response import (
     CURRENT,
-    SURE,
-    TURNS,
-    UNSURE,
-    glide,
+    CURRENT_REFERENCE,
+    TIME,
+    is_plain,
+    plain_law,
     reference_at,
     respond,
-    turning_energy,
+    run_plain,
+    run_rigid,
+    voltage_of,
     voltage_room,
 )
-from gainbench.kernels.response_records import Drag, Heading, PlantState, Script
-from gainbench.kernels.series import build_series, series_energy
+from gainbench.kernels.response_records import Script
+from gainbench.model import Duty, Firmware, IntegratorRule, WindupRule
 from gainbench.simulate import schedule
 from gainbench.simulate.preparation import prepare_run
 
-FREE = Drag(0.0, 0.0, 0.0, 0.0)
-RUBBING = Drag(-0.05, 0.05, 0.0, 0.0)
 
-
-def run_of(duty=DUTY, *, plant=RIGID, stage=ENCODER):
+def run_of(duty=DUTY, *, plant=RIGID, stage=ENCODER, firmware=FIRMWARE):
     return prepare_run(
         plant,
         stage,
-        FIRMWARE,
+        firmware,
         duty,
         plan=schedule(duty, stage),
         load_torque=0.0,
@@ -78,41 +75,64 @@ def test_the_q_axis_gets_what_the_d_axis_leaves():
     assert voltage_room(run_of().sampling, 500.0, 20.0) == RIGID.voltage_limit
 
 
-def glided(x, voltage, drag=FREE, heading=1):
-    matrix = matrix_of(RIGID)
-    motion, flow = prepare_motion(matrix, 0.0, 50e-6), read_flow(matrix, False)
-    return motion, flow, glide(read_step(motion, 1, 0, 0), flow, drag, Heading(heading, 1), x, voltage)
+@pytest.mark.parametrize(("ticks", "voltage"), [(0, 4.0), (1, 3.0), (2, 2.0)])
+def test_a_voltage_acts_when_its_update_comes(ticks, voltage):
+    assert voltage_of(ticks, 4.0, 3.0, 2.0) == voltage
 
 
-def test_a_gliding_step_says_whether_something_happened():
-    moving = PlantState(5.0, 100.0, 0.0, 0.0, 0.0, 0.0)
-    assert glided(moving, 8.0)[2][0] == SURE
-    came, y, given = glided(moving, -8.0)[2]
-    assert came == SURE
-    assert given == pytest.approx(8.0 * 50e-6 * (5.0 + y.current) / 2.0, rel=1e-2)
-    turning = moving._replace(current=0.2)
-    assert glided(turning, -8.0)[2][0] == TURNS
-    assert glided(moving._replace(speed=1e-4), 8.0, RUBBING, -1)[2][0] == UNSURE
+def test_which_drives_are_plain():
+    assert is_plain(run_of())
+    assert not is_plain(run_of(plant=SINE))
+    assert not is_plain(run_of(plant=ELASTIC))
+    assert not is_plain(run_of(plant=replace(RIGID, filter_time=1e-5)))
+    for delay in (0.0, 0.5, 1.5, 2.0):
+        assert not is_plain(run_of(stage=replace(ENCODER, update_delay=delay)))
+    assert not is_plain(run_of(firmware=Firmware(integrator=IntegratorRule.TRAPEZOID)))
+    assert not is_plain(run_of(firmware=Firmware(back_emf_feedforward=True)))
 
 
-def test_energy_of_a_step_in_which_the_current_turns():
-    turning = PlantState(0.2, 100.0, 0.0, 0.0, 0.0, 0.0)
-    motion, flow, (_, y, _) = glided(turning, -8.0)
-    step = read_step(motion, 1, 0, 0)
-    got = turning_energy(motion, step, flow, FREE, Heading(1, 1), turning, y, -8.0)
-    # The current falls by (8 + 5.2 + 0.1)/0.45 mH = 29.6 A/ms: a triangle of 6.8 us.
-    assert got == pytest.approx(8.0 * 0.2 * 0.2 / (2.0 * 29.6e3), rel=1e-2)
+@pytest.mark.parametrize("coulomb", [0.0, 0.05])
+@pytest.mark.parametrize("windup", list(WindupRule))
+def test_the_code_of_a_kind_is_that_of_a_wider_kind(coulomb, windup):
+    # A plain drive on the loop for rigid ones: the same law, left whole.
+    duty = replace(DUTY, stop_at=40e-3, length=60e-3)
+    run = run_of(duty, plant=replace(RIGID, motor_coulomb=coulomb), firmware=Firmware(windup=windup))
+    assert plain_law(run.current_law) == run.current_law
+    plain, wide = np.zeros((6, 1200)), np.ones((6, 1200))
+    flags, wide_flags = np.zeros((2, 1200), dtype=bool), np.ones((2, 1200), dtype=bool)
+    tally, wide_tally = run_plain(run, plain, flags), run_rigid(run, wide, wide_flags)
+    scale = np.abs(plain).max(axis=1, keepdims=True)
+    assert np.all(np.abs(plain - wide) <= 1e-12 * scale)
+    assert np.array_equal(flags, wide_flags)
+    assert tally == pytest.approx(wide_tally, rel=1e-11)
+    assert tally.returned > 0.0
 
 
-@pytest.mark.parametrize("first", [-3.0, -0.2, 0.1, 1.2, 3.0])
-@pytest.mark.parametrize("voltage", [-30.0, -8.0, 3.0, 30.0])
-def test_energy_is_that_of_the_search_through_the_whole_step(first, voltage):
-    x = PlantState(first, 100.0, 0.0, 0.0, 0.0, 0.0)
-    motion, flow, (came, y, _) = glided(x, voltage)
-    if came == TURNS:
-        got = turning_energy(motion, read_step(motion, 1, 0, 0), flow, FREE, Heading(1, 1), x, y, voltage)
-        build_series(motion.series, flow, 0, x, inputs_of(FREE, Heading(1, 1), voltage), 50e-6)
-        assert got == pytest.approx(series_energy(motion.series, voltage, 1.0), rel=1e-12, abs=1e-18)
+def test_a_rigid_train_is_an_elastic_one_of_a_stiff_shaft():
+    stiff = replace(RIGID, elastic=True, motor_inertia=5e-5, load_inertia=2.1e-5, stiffness=2e4, damping=0.5)
+    duty = replace(DUTY, reference_ramp=4e3, length=40e-3)
+    rigid, elastic = np.zeros((6, 800)), np.zeros((7, 800))
+    flags = np.zeros((2, 800), dtype=bool)
+    tally = respond(run_of(duty, plant=RIGID, stage=STAGE), rigid, flags)
+    elastic_tally = respond(run_of(duty, plant=stiff, stage=STAGE), elastic, flags)
+    assert np.abs(rigid[CURRENT] - elastic[CURRENT]).max() < 2e-3 * tally.peak_current
+    assert elastic_tally.squares == pytest.approx(tally.squares, rel=1e-3)
+
+
+@pytest.mark.parametrize("stage", [ENCODER, replace(ENCODER, update_delay=1.5)])
+def test_a_log_may_fill_in_the_midst_of_a_phase(stage):
+    # Ticks of the duty in logs of 1024, by speed periods of 7: no boundary falls together with another.
+    odd = replace(stage, current_rate=21e3, speed_rate=3e3, speed_delay=3)
+    duty = Duty(reference_speed=100.0, load_step=0.06, load_at=1100 / 21e3, length=2500 / 21e3)
+    run = run_of(duty, stage=odd)
+    traces, flags = np.full((6, 2500), np.nan), np.zeros((2, 2500), dtype=bool)
+    respond(run, traces, flags)
+    assert np.isfinite(traces).all()
+    assert np.array_equal(traces[TIME], np.arange(2500) * run.sampling.period)
+    # References change at their own ticks only.
+    changed = 1 + np.flatnonzero(np.diff(traces[CURRENT_REFERENCE]))
+    assert len(changed) > 100
+    assert set(changed % 7) == {3}
 
 
 def test_a_run_fills_every_tick_and_adds_up():

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import numpy as np
+import pytest
 
-from gainbench.kernels.response_figures import NEVER, load_ticks, step_ticks
+from gainbench.kernels.response_figures import LANES, NEVER, load_ticks, size_figures, step_ticks
 
 
 def test_step_of_either_sign():
@@ -33,3 +34,18 @@ def test_the_load_moves_the_speed_away_from_the_reference_in_force():
     reference = np.array([0.0, 10.0, 9.0, 10.0, 10.0])
     assert tuple(load_ticks(speed, reference, 1, 5, 0.2)) == (2.0, 3)
     assert tuple(load_ticks(speed, reference, 1, 2, 0.2)) == (0.0, NEVER)
+
+
+@pytest.mark.parametrize("ticks", [1, LANES - 1, LANES, 3 * LANES + 5])
+def test_figures_do_not_depend_on_how_many_ticks_are_taken_at_once(ticks):
+    numbers = np.random.default_rng(ticks)
+    speed, reference = numbers.normal(size=ticks), numbers.normal(size=ticks)
+    squares, size = size_figures(speed)
+    assert squares == pytest.approx(np.sum(speed**2), rel=1e-13)
+    assert size == np.abs(speed).max()
+    assert size_figures(np.stack([reference, speed])[1]) == (squares, size)
+    assert step_ticks(speed, 0.1, 0, ticks, 0.2).excess == max(0.0, speed.max() - 0.1)
+    distance = np.abs(speed - reference)
+    load = load_ticks(speed, reference, 0, ticks, 0.2)
+    assert load.dip == distance.max()
+    assert load.outside == max(np.flatnonzero(distance > 0.2), default=NEVER)

@@ -16,7 +16,6 @@ from gainbench.kernels.motion import CHARGE, prepare_motion, read_flow, read_ste
 from gainbench.kernels.response_records import Inputs, PlantState
 from gainbench.kernels.series import (
     build_series,
-    charge_to_zero,
     series_energy,
     sign_kept,
     slope_at,
@@ -108,14 +107,6 @@ def test_a_zero_is_found(root, bend, sign):
     # (s - root) (1 + bend s): monotone or nearly, one zero.
     series = polynomial(-sign * root, sign * (1.0 - bend * root), sign * bend)
     assert zero_between(series, 0.0, 1.0) == pytest.approx(root, abs=4e-15)
-
-
-@given(root=st.floats(1e-6, 1.0 - 1e-6), bend=st.floats(-0.45, 0.45), sign=st.sampled_from([-1.0, 1.0]))
-def test_the_charge_up_to_a_zero_is_found(root, bend, sign):
-    # (s - root) (1 + bend s + 0.05 s^2): monotone, one zero.
-    shape = np.polynomial.Polynomial([-sign * root, sign]) * np.polynomial.Polynomial([1.0, bend, 0.05])
-    got = charge_to_zero(polynomial(*shape.coef), float(shape(1.0)))
-    assert_quantity(got, float(shape.integ()(root)), rtol=1e-12, atol=1e-16, unit="A s", why=ROUNDING)
 
 
 def test_values_and_slopes_of_a_polynomial():

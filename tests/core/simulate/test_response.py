@@ -22,6 +22,7 @@ from drives import (
     STAGE,
     respond_to,
 )
+from gainbench.kernels.response import run_elastic, run_plain, run_rigid
 from gainbench.model import Duty, Firmware, IntegratorRule, MachineKind, WindupRule
 from gainbench.results import Gains
 from gainbench.simulate import start_breaks, warm_up_response
@@ -300,5 +301,6 @@ def test_what_stands_in_the_way_of_a_start():
     assert start_breaks(plant, 3.0 * 0.8 * 0.052 * 20.0) is None
 
 
-def test_warming_up_needs_nothing():
+def test_warming_up_needs_nothing_and_leaves_nothing_to_compile():
     warm_up_response()
+    assert all(loop.signatures for loop in (run_plain, run_rigid, run_elastic))
