@@ -287,7 +287,7 @@ def constant_disagreements(machine: Machine) -> tuple[ConstantCheck, ...]:
         In the contract's order; empty where the sheet gives one constant or none.
     """
     candidates = list(back_emf_candidates(machine).items())
-    if not candidates:
+    if len(candidates) < 2:
         return ()
     used, used_value = candidates[0]
     return tuple(

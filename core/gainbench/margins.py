@@ -21,6 +21,8 @@ POLE_TOLERANCE = 1e-9
 """A closed-loop pole below 1 by less than this, or above by less, is on the unit circle and counts as stable."""
 LARGEST_WINDOW = 60
 """Speed windows of more periods are judged by the argument principle: their state matrices take seconds."""
+_NOTHING = np.empty(0)
+_NOTHING.setflags(write=False)
 _SHARP = 0.35
 """A pole whose decay is less than this share of its frequency gets points of its own on the curve."""
 
@@ -36,9 +38,6 @@ class LoopReading:
 def is_stable(loop: Loop, gains: Gains) -> bool:
     """Whether all closed-loop poles are below 1 + 1e-9 in size, the free rotor angle left out.
 
-    With ``lambda`` an eigenvalue of the state matrix less one, ``|1 + lambda|^2 - 1 = 2 Re lambda + |lambda|^2``
-    keeps the digits of poles close to one.
-
     Parameters
     ----------
     loop : Loop
@@ -52,7 +51,27 @@ def is_stable(loop: Loop, gains: Gains) -> bool:
     """
     if loop.plant.window > LARGEST_WINDOW:
         return _winds_inside(loop, gains)
-    return all(_inside(pole) for pole in _poles(loop.closed(gains)))
+    return all(_inside(pole) for pole in closed_poles(loop, gains))
+
+
+def closed_poles(loop: Loop, gains: Gains) -> list[complex]:
+    """All closed-loop poles less one, the free rotor angle left out.
+
+    Parameters
+    ----------
+    loop : Loop
+        Current or speed loop.
+    gains : Gains
+        Of its PI controller.
+
+    Returns
+    -------
+    list
+        Of the states of plant and controller.
+    """
+    from gainbench.kernels.lifting import closed_loop
+
+    return _poles(closed_loop(loop.plant, gains.kp, gains.ki * loop.plant.period, loop.rule))
 
 
 def _poles(matrix: NDArray[np.float64]) -> list[complex]:
@@ -66,7 +85,7 @@ def _poles(matrix: NDArray[np.float64]) -> list[complex]:
 
 
 def _inside(pole: complex) -> bool:
-    """Whether a pole, less one, is on or within the unit circle."""
+    """Whether a pole, less one, is on or within the unit circle: ``|1 + pole|^2 - 1`` keeps the digits close to one."""
     return 2.0 * pole.real + pole.real * pole.real + pole.imag * pole.imag < 2.0 * POLE_TOLERANCE
 
 
@@ -79,12 +98,11 @@ def _winds_inside(loop: Loop, gains: Gains) -> bool:
     slow = slowest.real if taken_out else math.nan
     if taken_out:
         others.remove(slowest)
-    nothing = np.empty(0)
-    grid = loop_grid(loop.plant.period, loop.plant.window, peaks=nothing, spreads=nothing)
+    grid = loop_grid(loop.plant.period, loop.plant.window, peaks=_NOTHING, spreads=_NOTHING)
     turns = growth(loop.plant, gains.kp, gains.ki * loop.plant.period, loop.rule, slow, grid.w)
+    beyond = sum(not _inside(pole) for pole in others)
     # Zeros within less poles within, of what is left: poles that were taken out leave a zero more.
-    outside = sum(not _inside(pole) for pole in others) + int(taken_out) + int(gains.ki != 0.0) - round(turns)
-    return outside == 0
+    return bool(beyond + int(taken_out) + int(gains.ki != 0.0) - round(turns) == 0)
 
 
 def plant_response(loop: Loop, frequency: NDArray[np.float64]) -> NDArray[np.complex128]:
@@ -156,30 +174,30 @@ def read_loop(loop: Loop, gains: Gains, *, stable: bool | None = None) -> LoopRe
     LoopReading
         Figures other than ``stable`` are None where the loop is unstable.
     """
-    from gainbench.kernels import loop_figures
+    from gainbench.kernels.loop_figures import loop_numbers
 
     if stable is None:
         stable = is_stable(loop, gains)
     period = loop.plant.period
     peaks, spreads = sharp_modes(loop)
     grid = loop_grid(period, loop.plant.window, peaks=peaks, spreads=spreads)
-    numbers, frequency, response = loop_figures.loop_numbers(loop.plant, gains.kp, gains.ki * period, loop.rule, grid)
-    frequency_hz = frequency / math.tau
+    found, frequency_hz, response = loop_numbers(loop.plant, gains.kp, gains.ki * period, loop.rule, grid)
     frequency_hz.setflags(write=False)
     response.setflags(write=False)
     curve = LoopCurve(frequency_hz=frequency_hz, open_loop=response)
     if not stable:
         return LoopReading(figures=LoopFigures(stable=False), curve=curve)
+    crossover, phase_margin, delay_margin, gain_margin, gain_reduction, sensitivity, bandwidth = map(_known, found)
     return LoopReading(
         figures=LoopFigures(
             stable=True,
-            crossover_hz=_known(numbers.crossover / math.tau),
-            phase_margin_deg=_known(math.degrees(numbers.phase_margin)),
-            delay_margin_s=_known(numbers.delay_margin),
-            gain_margin_db=_known(20.0 * math.log10(numbers.gain_margin)),
-            gain_reduction_db=_known(20.0 * math.log10(numbers.gain_reduction)),
-            peak_sensitivity=_known(numbers.peak_sensitivity),
-            bandwidth_hz=_known(numbers.bandwidth / math.tau),
+            crossover_hz=crossover,
+            phase_margin_deg=phase_margin,
+            delay_margin_s=delay_margin,
+            gain_margin_db=gain_margin,
+            gain_reduction_db=gain_reduction,
+            peak_sensitivity=sensitivity,
+            bandwidth_hz=bandwidth,
         ),
         curve=curve,
     )
@@ -196,10 +214,14 @@ def sharp_modes(loop: Loop) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     if loop.plant.m.shape[0] > 2:
         period = loop.plant.period
         for pole in _poles(loop.plant.m):
-            turn = math.atan2(pole.imag, 1.0 + pole.real)
-            size = abs(1.0 + pole)
+            # The lower one of a pair turns the other way, and a positive real one not at all.
+            if pole.imag < 0.0 or (pole.imag == 0.0 and pole.real > -1.0):
+                continue
+            turn, size = math.atan2(pole.imag, 1.0 + pole.real), abs(1.0 + pole)
             if turn > 0.0 and size > 0.0 and abs(math.log(size)) < _SHARP * turn:
                 modes.append(complex(math.log(size), turn) / period)
+    if not modes:
+        return _NOTHING, _NOTHING
     return np.array([mode.imag for mode in modes]), np.array([abs(mode.real) for mode in modes])
 
 
@@ -226,31 +248,15 @@ def locked_step(own: Hardware, plant: Plant, *, gains: Gains, rule: int) -> Lock
         Figures are None where the step does not get there, as with a locked loop that does not settle.
     """
     from gainbench.kernels import locked_step as kernel
-    from gainbench.kernels.lifting import held_step
 
-    filtered = plant.filter_time > 0.0
-    a = np.zeros((2, 2))
-    a[0, 0] = -plant.resistance / plant.inductance
-    if filtered:
-        a[1, 0], a[1, 1] = 1.0 / plant.filter_time, -1.0 / plant.filter_time
-    column = np.array([1.0 / plant.inductance, 0.0])
-    part = own.delay.part
-    winding = kernel.Winding(
-        plant.resistance,
-        plant.inductance / plant.resistance,
-        filtered,
-        *held_step(a, column, part * own.period),
-        *held_step(a, column, (1.0 - part) * own.period),
-    )
+    winding = kernel.Winding(plant.resistance, plant.inductance, plant.filter_time)
     pi = kernel.LockedPi(gains.kp, gains.ki * own.period, rule)
-    times, curve, per_tick = kernel.locked_step(winding, own.period, own.delay.held, part, pi)
-    time = np.arange(curve.size, dtype=np.float64)
-    time *= own.period / per_tick
+    rise, largest, time, curve = kernel.locked_step(winding, own.period, own.delay.held, own.delay.part, pi)
     time.setflags(write=False)
     curve.setflags(write=False)
     return LockedStep(
-        rise_s=_known(times.at_high - times.at_low),
-        overshoot_percent=_known(max(100.0 * (times.largest - 1.0), 0.0 * times.largest)),
+        rise_s=_known(rise),
+        overshoot_percent=_known(max(100.0 * (largest - 1.0), 0.0 * largest)),
         time=time,
         current=curve,
     )

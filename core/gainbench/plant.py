@@ -255,6 +255,38 @@ def state_space(plant: Plant, *, locked: bool = False) -> StateSpace:
     StateSpace
         Read-only arrays.
     """
+    a, b = state_matrices(plant, locked=locked)
+    a.setflags(write=False)
+    b.setflags(write=False)
+    filtered = plant.filter_time > 0.0
+    return StateSpace(
+        a=a,
+        b=b,
+        sampled_current=sampled_state(plant),
+        load_speed=2 + int(filtered) if plant.elastic else 1,
+        twist=3 + int(filtered) if plant.elastic else -1,
+    )
+
+
+def sampled_state(plant: Plant) -> int:
+    """Index of the current that is sampled, among the states of :class:`StateSpace`."""
+    return 2 if plant.filter_time > 0.0 else 0
+
+
+def state_matrices(plant: Plant, *, locked: bool = False) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """The two matrices of :func:`state_space`, for a caller that hands them on at once.
+
+    Parameters
+    ----------
+    plant : Plant
+        Values at the motor shaft.
+    locked : bool
+        True holds the rotor: speed and angle stay.
+
+    Returns
+    -------
+    a, b : ndarray, shapes (n, n) and (n, 3)
+    """
     filtered = plant.filter_time > 0.0
     count = 3 + int(filtered) + 2 * int(plant.elastic)
     a = np.zeros((count, count))
@@ -289,12 +321,4 @@ def state_space(plant: Plant, *, locked: bool = False) -> StateSpace:
         a[load, load] = -(plant.load_viscous + plant.damping) / plant.load_inertia
         a[load, twist] = plant.stiffness / plant.load_inertia
         b[load, 2] = -1.0 / plant.load_inertia
-    a.setflags(write=False)
-    b.setflags(write=False)
-    return StateSpace(
-        a=a,
-        b=b,
-        sampled_current=2 if filtered else i,
-        load_speed=load if plant.elastic else w,
-        twist=twist,
-    )
+    return a, b

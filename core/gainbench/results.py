@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from enum import StrEnum
+from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -145,8 +147,25 @@ class Level(StrEnum):
     BREAKS = "breaks"
 
 
+class Words(NamedTuple):
+    """What a finding says."""
+
+    title: str
+    """The statement, with its number, as one short sentence without a full stop."""
+    reason: str
+    """Why, with its numbers, without a full stop."""
+    advice: str = ""
+    """The next thing to try; empty where nothing is to be done."""
+
+
+class _Unsaid:
+    """Room for what makes the words of a finding, until one of them is read."""
+
+    __slots__ = ("_words",)
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Finding:
+class Finding(_Unsaid):
     """One judged statement about an assessment."""
 
     code: str
@@ -155,11 +174,53 @@ class Finding:
     subject: str
     """What it speaks of: ``machine``, ``train``, ``stage``, ``current``, ``speed``, ``duty``."""
     title: str
-    """The statement, with its number, as one short sentence without a full stop."""
+    """As :class:`Words`."""
     reason: str
-    """Why, with its numbers, without a full stop."""
+    """As :class:`Words`."""
     advice: str = ""
-    """The next thing to try; empty where nothing is to be done."""
+    """As :class:`Words`."""
+
+    @classmethod
+    def on(cls, subject: str, code: str, *, level: Level, words: Callable[[], Words]) -> Finding:
+        """A finding whose words are made when one of them is first read: most are judged by their level alone.
+
+        Parameters
+        ----------
+        subject : str
+            As the field.
+        code : str
+            As the field.
+        level : Level
+            As the field.
+        words : callable
+            Makes the words, of values that no longer change.
+
+        Returns
+        -------
+        Finding
+            Equal to one that was made with the words themselves.
+        """
+        finding = object.__new__(cls)
+        put = object.__setattr__
+        put(finding, "code", code)
+        put(finding, "level", level)
+        put(finding, "subject", subject)
+        put(finding, "_words", words)
+        return finding
+
+    if not TYPE_CHECKING:  # To a type checker every name would be an attribute.
+
+        def __getattr__(self, name: str) -> str:
+            """Make the words, when one of them is read that is not there yet."""
+            if name not in Words._fields:
+                raise AttributeError(f"a finding has no {name!r}")
+            words, put = self._words, object.__setattr__
+            # None where another thread has made them since.
+            if words is not None:
+                for field, said in zip(Words._fields, words(), strict=True):
+                    put(self, field, said)
+                put(self, "_words", None)
+            return object.__getattribute__(self, name)
 
     @property
     def text(self) -> str:

@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 
 from gainbench.kernels.loop_records import SampledPlant
 from gainbench.model import Firmware, IntegratorRule, SpeedSensor, Stage
-from gainbench.plant import Plant, state_space
+from gainbench.plant import Plant, sampled_state, state_matrices
 from gainbench.results import Gains
 
 _RULES = {IntegratorRule.BACKWARD: 0, IntegratorRule.FORWARD: 1, IntegratorRule.TRAPEZOID: 2}
@@ -41,9 +41,6 @@ class Loop(Protocol):
     @property
     def modes(self) -> tuple[complex, ...]:
         """Continuous eigenvalues whose resonance or antiresonance the loop may show [1/s]."""
-
-    def closed(self, gains: Gains) -> NDArray[np.float64]:
-        """The closed loop's state matrix less one, every state but the free angle, shape (n, n)."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -87,22 +84,6 @@ class CurrentLoop:
         """As :class:`Loop`."""
         return self.hardware.modes
 
-    def closed(self, gains: Gains) -> NDArray[np.float64]:
-        """As :class:`Loop`; the feedforward is cut."""
-        from gainbench.kernels.lifting import closed_current
-
-        own, delay = self.hardware, self.hardware.delay
-        matrix: NDArray[np.float64] = closed_current(
-            own.tick,
-            own.sampled_current,
-            delay.held,
-            delay.part > 0.0,
-            gains.kp,
-            gains.ki * own.period,
-            self.rule,
-        )
-        return matrix
-
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class SpeedLoop:
@@ -111,13 +92,6 @@ class SpeedLoop:
     plant: SampledPlant
     rule: int
     modes: tuple[complex, ...]
-
-    def closed(self, gains: Gains) -> NDArray[np.float64]:
-        """As :class:`Loop`; the closed current loop and the feedforward included."""
-        from gainbench.kernels.lifting import closed_speed
-
-        matrix: NDArray[np.float64] = closed_speed(self.plant, gains.kp, gains.ki * self.plant.period, self.rule)
-        return matrix
 
 
 def hardware(plant: Plant, stage: Stage) -> Hardware:
@@ -137,12 +111,12 @@ def hardware(plant: Plant, stage: Stage) -> Hardware:
     """
     from gainbench.kernels.lifting import tick_step
 
-    space = state_space(plant)
-    delay = update_delay(stage)
+    a, b = state_matrices(plant)
+    delay, period = update_delay(stage), stage.current_period
     return Hardware(
-        tick=tick_step(np.array(space.a), np.array(space.b[:, 0]), stage.current_period, delay.part),
-        sampled_current=space.sampled_current,
-        period=stage.current_period,
+        tick=tick_step(a, b[:, 0].copy(), period, delay.part),
+        sampled_current=sampled_state(plant),
+        period=period,
         delay=delay,
         modes=_elastic_modes(plant),
     )
@@ -225,11 +199,11 @@ def speed_loop(own: Hardware, plant: Plant, *, stage: Stage, firmware: Firmware,
     ----------
     T. Chen, B. Francis, Optimal Sampled-Data Control Systems, 1995, chapter 8, for the lifting (from memory).
     """
-    from gainbench.kernels.lifting import closed_tick, lifted_tick
+    from gainbench.kernels.lifting import lifted_loop
 
     encoder = stage.speed_sensor is SpeedSensor.ENCODER
-    rule = _RULES[firmware.integrator]
-    closed = closed_tick(
+    period, rule = stage.speed_period, _RULES[firmware.integrator]
+    lifted, by_new, by_older, by_measured = lifted_loop(
         own.tick,
         own.sampled_current,
         own.delay.held,
@@ -238,27 +212,30 @@ def speed_loop(own: Hardware, plant: Plant, *, stage: Stage, firmware: Firmware,
         current.ki * own.period,
         rule,
         plant.back_emf if firmware.back_emf_feedforward else 0.0,
+        stage.speed_delay,
+        stage.speed_divisor,
     )
-    whole = lifted_tick(closed, own.tick.shape[0] - 1, stage.speed_delay, stage.speed_divisor)
-    n = whole.shape[0] - 1
-    speed = np.zeros(n)
-    speed[_SPEED] = 1.0
-    growth = whole[n] if encoder else np.zeros(n + 3)
+    n = lifted.shape[1]
+    seen = lifted[n + 3]
+    if not encoder:
+        seen = np.zeros(n)
+        seen[_SPEED] = 1.0
+        by_new = by_older = by_measured = 0.0
     return SpeedLoop(
         plant=SampledPlant(
-            m=whole[:n, :n].copy(),
-            c=growth[:n].copy() if encoder else speed,
-            b0=whole[:n, n].copy(),
-            b1=whole[:n, n + 1].copy(),
-            bw=whole[:n, n + 2].copy(),
-            d0=float(growth[n]),
-            d1=float(growth[n + 1]),
-            dw=float(growth[n + 2]),
-            period=stage.speed_period,
+            m=lifted[:n],
+            c=seen,
+            b0=lifted[n],
+            b1=lifted[n + 1],
+            bw=lifted[n + 2],
+            d0=by_new,
+            d1=by_older,
+            dw=by_measured,
+            period=period,
             shift=1 if encoder else 0,
             window=stage.speed_window if encoder else 1,
-            scale=1.0 / (stage.speed_window * stage.speed_period) if encoder else 1.0,
-            filter_gain=1.0 if stage.speed_filter <= 0.0 else -math.expm1(-stage.speed_period / stage.speed_filter),
+            scale=1.0 / (stage.speed_window * period) if encoder else 1.0,
+            filter_gain=1.0 if stage.speed_filter <= 0.0 else -math.expm1(-period / stage.speed_filter),
         ),
         rule=rule,
         modes=own.modes,

@@ -8,7 +8,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from gainbench.margins import is_stable, locked_step, open_loop, plant_response, read_loop
+from gainbench.margins import closed_poles, is_stable, locked_step, open_loop, plant_response, read_loop
 from gainbench.model import Firmware
 from gainbench.plant import refer, state_space
 from gainbench.results import Gains
@@ -97,8 +97,8 @@ def test_the_cancelled_pole_of_a_free_train_does_not_count():
     sheet = fixed_sheet("plain")
     rig = replace(sheet.rig, machine=replace(sheet.rig.machine, viscous_friction=0.0))
     loop = current_loop(hardware(refer(rig), rig.stage), Firmware())
-    poles = np.linalg.eigvals(loop.closed(CURRENT))
-    assert np.abs(poles).min() < 1e-9
+    poles = closed_poles(loop, CURRENT)
+    assert min(map(abs, poles)) < 1e-9
     assert is_stable(loop, CURRENT)
 
 
@@ -119,8 +119,8 @@ def test_a_long_window_is_judged_like_a_short_one(sheet):
     per_speed = plant.inertia / plant.torque
     assert is_stable(loop, Gains(kp=per_speed * 1.0, ki=per_speed * 0.2))
     assert not is_stable(loop, Gains(kp=per_speed * 200.0, ki=per_speed * 0.2))
-    poles = np.linalg.eigvals(loop.closed(Gains(kp=per_speed * 1.0, ki=per_speed * 0.2)))
-    assert np.abs(1.0 + poles).max() < 1.0
+    poles = closed_poles(loop, Gains(kp=per_speed * 1.0, ki=per_speed * 0.2))
+    assert max(abs(1.0 + pole) for pole in poles) < 1.0
 
 
 def test_known_stability_is_taken_as_told(inner):

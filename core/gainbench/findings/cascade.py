@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from gainbench.findings import thresholds
 from gainbench.findings.case import Case
 from gainbench.findings.numbers import amount, degrees, digits
-from gainbench.results import Finding, Level
+from gainbench.results import Finding, Level, Words
 
 
 def cascade_findings(case: Case) -> Iterator[Finding]:
@@ -46,26 +46,31 @@ def cascade_findings(case: Case) -> Iterator[Finding]:
 def _rate(name: str, rate: float, crossover: float) -> Iterator[Finding]:
     if rate >= thresholds.TICKS_PER_CROSSOVER * crossover:
         return
-    hold = degrees(180.0 * crossover / rate)
-    yield Finding(
-        code=f"{name}-rate-slow",
+    yield Finding.on(
+        "stage",
+        f"{name}-rate-slow",
         level=Level.THIN,
-        subject="stage",
-        title=f"The {name} loop has {digits(rate / crossover)} ticks per period of its crossover",
-        reason=f"a rate of {amount(rate, 'Hz')} on a crossover of {amount(crossover, 'Hz')} is below the "
-        f"usual {thresholds.TICKS_PER_CROSSOVER:.0f}; half a period of hold alone costs {hold}",
-        advice=f"Raise {name}_rate, or ask for a crossover below {amount(rate / thresholds.TICKS_PER_CROSSOVER, 'Hz')}",
+        words=lambda: Words(
+            title=f"The {name} loop has {digits(rate / crossover)} ticks per period of its crossover",
+            reason=f"a rate of {amount(rate, 'Hz')} on a crossover of {amount(crossover, 'Hz')} is below the "
+            f"usual {thresholds.TICKS_PER_CROSSOVER:.0f}; half a period of hold alone costs "
+            f"{degrees(180.0 * crossover / rate)}",
+            advice=f"Raise {name}_rate, or ask for a crossover below "
+            f"{amount(rate / thresholds.TICKS_PER_CROSSOVER, 'Hz')}",
+        ),
     )
 
 
 def _near(figure: str, inner: float, outer: float) -> Finding:
-    return Finding(
-        code="loop-separation-thin",
+    return Finding.on(
+        "speed",
+        "loop-separation-thin",
         level=Level.THIN,
-        subject="speed",
-        title=f"The current loop is only {digits(inner / outer)} times as fast as the speed loop",
-        reason=f"{figure} {amount(inner, 'Hz')} against {amount(outer, 'Hz')}: whatever the current loop loses, to a "
-        "sagging bus or at its voltage limit, the speed loop's margin loses with it",
-        advice=f"Ask for a speed loop below {amount(inner / thresholds.LOOP_SEPARATION, 'Hz')} of {figure}, "
-        "or for a faster current loop",
+        words=lambda: Words(
+            title=f"The current loop is only {digits(inner / outer)} times as fast as the speed loop",
+            reason=f"{figure} {amount(inner, 'Hz')} against {amount(outer, 'Hz')}: whatever the current loop loses, to "
+            "a sagging bus or at its voltage limit, the speed loop's margin loses with it",
+            advice=f"Ask for a speed loop below {amount(inner / thresholds.LOOP_SEPARATION, 'Hz')} of {figure}, "
+            "or for a faster current loop",
+        ),
     )

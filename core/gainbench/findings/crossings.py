@@ -39,6 +39,13 @@ def crossings(curve: LoopCurve) -> tuple[Crossing, ...]:
     return tuple(_crossing(curve, edge) for edge in edges_of_one(curve.open_loop).tolist())
 
 
+def crosses_again(curve: LoopCurve) -> bool:
+    """Whether there is more than one crossing of \\|L\\| = 1."""
+    from gainbench.kernels.loop_curve import edge_count
+
+    return edge_count(curve.open_loop) > 1
+
+
 def _crossing(curve: LoopCurve, edge: int) -> Crossing:
     first, second = complex(curve.open_loop[edge]), complex(curve.open_loop[edge + 1])
     low, high = float(curve.frequency_hz[edge]), float(curve.frequency_hz[edge + 1])

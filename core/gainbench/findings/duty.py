@@ -10,7 +10,7 @@ from gainbench.findings.case import Case
 from gainbench.findings.demand import Demand, sheet_amperes
 from gainbench.findings.numbers import amount, percent, speed
 from gainbench.model import MachineKind
-from gainbench.results import Finding, Level
+from gainbench.results import Finding, Level, Words
 
 
 def start_findings(case: Case) -> Iterator[Finding]:
@@ -26,15 +26,18 @@ def start_findings(case: Case) -> Iterator[Finding]:
     Finding
         One of level ``breaks``, or none.
     """
-    if case.start_problem is None:
+    problem = case.start_problem
+    if problem is None:
         return
-    yield Finding(
-        code="start-over-limit",
+    yield Finding.on(
+        "duty",
+        "start-over-limit",
         level=Level.BREAKS,
-        subject="duty",
-        title="The drive cannot hold its load at rest, so there is no response",
-        reason=case.start_problem.removesuffix(".") + _terms(case),
-        advice="Lower load_torque, or choose another ratio or a larger stage or machine",
+        words=lambda: Words(
+            title="The drive cannot hold its load at rest, so there is no response",
+            reason=problem.removesuffix(".") + _terms(case),
+            advice="Lower load_torque, or choose another ratio or a larger stage or machine",
+        ),
     )
 
 
@@ -59,30 +62,34 @@ def reach_findings(case: Case, states: tuple[Demand, ...]) -> Iterator[Finding]:
     strongest = max(states, key=lambda state: abs(state.current))
     current_breaks = abs(strongest.current) > plant.current_limit
     if current_breaks:
-        yield Finding(
-            code="duty-over-current-limit",
+        yield Finding.on(
+            "duty",
+            "duty-over-current-limit",
             level=Level.BREAKS,
-            subject="duty",
-            title=f"Holding the duty's {'load' if strongest.loaded else 'speed'} takes "
-            f"{sheet_amperes(abs(strongest.current), machine)}, "
-            f"the limit is {sheet_amperes(plant.current_limit, machine)}",
-            reason=f"friction and load at {speed(strongest.speed)} need more torque than the limit lets through, "
-            "so the speed does not stay at its reference",
-            advice="Lower the load, raise the limit where the machine bears it, or choose another ratio",
+            words=lambda: Words(
+                title=f"Holding the duty's {'load' if strongest.loaded else 'speed'} takes "
+                f"{sheet_amperes(abs(strongest.current), machine)}, "
+                f"the limit is {sheet_amperes(plant.current_limit, machine)}",
+                reason=f"friction and load at {speed(strongest.speed)} need more torque than the limit lets through, "
+                "so the speed does not stay at its reference",
+                advice="Lower the load, raise the limit where the machine bears it, or choose another ratio",
+            ),
         )
     highest = max(states, key=lambda state: state.voltage)
     share = highest.voltage / plant.voltage_limit
     if share > 1.0 and not (current_breaks and highest is strongest):
         yield _over_voltage(case, highest)
     elif thresholds.VOLTAGE_NEED < share <= 1.0:
-        yield Finding(
-            code="voltage-headroom-thin",
+        yield Finding.on(
+            "duty",
+            "voltage-headroom-thin",
             level=Level.THIN,
-            subject="duty",
-            title=f"Holding {speed(highest.speed)} takes {percent(share)} of the voltage",
-            reason=f"{amount(highest.voltage, 'V')} of {amount(plant.voltage_limit, 'V')}{_terms(case)} are used up "
-            "in steady state; with what is left the current loop is slow, and a bus that sags takes it",
-            advice="Lower reference_speed, or raise bus_voltage or voltage_use",
+            words=lambda: Words(
+                title=f"Holding {speed(highest.speed)} takes {percent(share)} of the voltage",
+                reason=f"{amount(highest.voltage, 'V')} of {amount(plant.voltage_limit, 'V')}{_terms(case)} are used "
+                "up in steady state; with what is left the current loop is slow, and a bus that sags takes it",
+                advice="Lower reference_speed, or raise bus_voltage or voltage_use",
+            ),
         )
 
 
@@ -100,12 +107,14 @@ def _over_voltage(case: Case, state: Demand) -> Finding:
         limit = f"against friction alone it tops out at {speed(ceiling.running_speed)}"
     else:
         limit = "friction alone it could turn, with the load it cannot"
-    return Finding(
-        code="duty-over-voltage",
+    return Finding.on(
+        "duty",
+        "duty-over-voltage",
         level=Level.BREAKS,
-        subject="duty",
-        title=f"Holding {speed(state.speed)} takes {amount(state.voltage, 'V')}, "
-        f"the stage gives {amount(plant.voltage_limit, 'V')}{_terms(case)}",
-        reason=f"{limit}; the speed stays below its reference, and the speed integrator winds up meanwhile",
-        advice="Lower reference_speed, raise bus_voltage, or choose a winding or a ratio for a higher speed",
+        words=lambda: Words(
+            title=f"Holding {speed(state.speed)} takes {amount(state.voltage, 'V')}, "
+            f"the stage gives {amount(plant.voltage_limit, 'V')}{_terms(case)}",
+            reason=f"{limit}; the speed stays below its reference, and the speed integrator winds up meanwhile",
+            advice="Lower reference_speed, raise bus_voltage, or choose a winding or a ratio for a higher speed",
+        ),
     )

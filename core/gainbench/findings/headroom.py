@@ -12,7 +12,7 @@ from gainbench.findings import thresholds
 from gainbench.findings.case import Case
 from gainbench.findings.demand import Demand, current_at_voltage, sheet_amperes, top_speed
 from gainbench.findings.numbers import acceleration, amount, digits, percent, speed
-from gainbench.results import Finding, Level, Response
+from gainbench.results import Finding, Level, Response, Words
 from gainbench.simulate.duty import schedule
 
 
@@ -65,21 +65,25 @@ def _clamped_current(case: Case, response: Response, *, reachable: bool) -> Iter
     limited = response.figures.current_limited_s
     if limited <= 0.0:
         return
-    plant, machine = case.plant, case.sheet.rig.machine
+
+    def words() -> Words:
+        asks, advice = _what_clamps(case, _most_clamped(case, response))
+        limit = sheet_amperes(case.plant.current_limit, case.sheet.rig.machine)
+        return Words(
+            title=f"The current sits on its limit for {amount(limited, 's')}",
+            reason=f"{asks} for more than {limit}; for that time the limit sets the pace, not the gains",
+            advice=advice if reachable else "First ask for a duty that can be held",
+        )
+
+    yield Finding.on("duty", "current-clamped", level=Level.THIN, words=words)
+
+
+def _most_clamped(case: Case, response: Response) -> str:
+    """The part of the duty that has most ticks on the current limit."""
     parts, clamped = _parts(case), response.trace.current_clamped
     ends = [part.first for part in parts[1:]] + [clamped.shape[0]]
     counts = [int(np.count_nonzero(clamped[part.first : end])) for part, end in zip(parts, ends, strict=True)]
-    name = parts[counts.index(max(counts))].name
-    limit = sheet_amperes(plant.current_limit, machine)
-    asks, advice = _what_clamps(case, name)
-    yield Finding(
-        code="current-clamped",
-        level=Level.THIN,
-        subject="duty",
-        title=f"The current sits on its limit for {amount(limited, 's')}",
-        reason=f"{asks} for more than {limit}; for that time the limit sets the pace, not the gains",
-        advice=advice if reachable else "First ask for a duty that can be held",
-    )
+    return parts[counts.index(max(counts))].name
 
 
 def _what_clamps(case: Case, part: str) -> tuple[str, str]:
@@ -129,19 +133,22 @@ def _clamped_voltage(case: Case, response: Response) -> Iterator[Finding]:
         patience = max(stage.speed_period, thresholds.VOLTAGE_LAG / (math.tau * figures.crossover_hz))
     if limited <= patience:
         return
-    off = np.abs(trace.current_reference - trace.current) > thresholds.CURRENT_LAG * case.plant.current_limit
-    lagging = int(np.count_nonzero(off & trace.voltage_clamped)) * stage.current_period
+    on_limit = np.flatnonzero(trace.voltage_clamped)
+    off = np.abs(trace.current_reference[on_limit] - trace.current[on_limit])
+    lagging = int(np.count_nonzero(off > thresholds.CURRENT_LAG * case.plant.current_limit)) * stage.current_period
     if lagging <= patience:
         return
-    yield Finding(
-        code="voltage-clamped",
+    yield Finding.on(
+        "duty",
+        "voltage-clamped",
         level=Level.THIN,
-        subject="duty",
-        title=f"The voltage sits on its limit for {amount(limited, 's')}, "
-        f"for {amount(lagging, 's')} with the current off its reference",
-        reason="the speed PI is not told that the current it asks for does not come: its integrator winds up "
-        "meanwhile, and the speed overshoots when the voltage comes free",
-        advice="Lower reference_speed or give it a ramp, lower current_limit, or raise the bus",
+        words=lambda: Words(
+            title=f"The voltage sits on its limit for {amount(limited, 's')}, "
+            f"for {amount(lagging, 's')} with the current off its reference",
+            reason="the speed PI is not told that the current it asks for does not come: its integrator winds up "
+            "meanwhile, and the speed overshoots when the voltage comes free",
+            advice="Lower reference_speed or give it a ramp, lower current_limit, or raise the bus",
+        ),
     )
 
 
@@ -153,15 +160,17 @@ def _peak(case: Case, response: Response) -> Iterator[Finding]:
     whose = "stage"
     if machine.peak_current is not None and machine.peak_current <= stage.current_limit:
         whose = "machine"
-    yield Finding(
-        code="current-peak-over-limit",
+    yield Finding.on(
+        whose,
+        "current-peak-over-limit",
         level=Level.THIN,
-        subject=whose,
-        title=f"The current peaks at {sheet_amperes(peak, machine)}, {percent(peak / limit - 1.0)} above its limit",
-        reason=f"the limit of {sheet_amperes(limit, machine)} is the {whose}'s and clamps the reference; "
-        "the current loop overshoots it",
-        advice=f"Set current_limit near {sheet_amperes(limit * limit / peak, machine)}, "
-        "or ask for more margin in the current loop",
+        words=lambda: Words(
+            title=f"The current peaks at {sheet_amperes(peak, machine)}, {percent(peak / limit - 1.0)} above its limit",
+            reason=f"the limit of {sheet_amperes(limit, machine)} is the {whose}'s and clamps the reference; "
+            "the current loop overshoots it",
+            advice=f"Set current_limit near {sheet_amperes(limit * limit / peak, machine)}, "
+            "or ask for more margin in the current loop",
+        ),
     )
 
 
@@ -176,13 +185,16 @@ def _returned(case: Case, response: Response, states: tuple[Demand, ...]) -> Ite
     bus = case.sheet.rig.stage.bus_voltage
     braking = f"braking from {speed(duty.reference_speed)} frees the {amount(stored, 'J')} that the train holds"
     room = 0.5 * bus**2 * ((1.0 + thresholds.BUS_RISE) ** 2 - 1.0)
-    yield Finding(
-        code="energy-returned",
+    yield Finding.on(
+        "stage",
+        "energy-returned",
         level=Level.THIN,
-        subject="stage",
-        title=f"The machine gives {amount(energy, 'J')} back to the bus",
-        reason=f"{'a load that drives works it as a generator' if driven else braking}; a bus whose supply takes "
-        "nothing back rises, while this model keeps it at its voltage",
-        advice=f"To keep the rise within {percent(thresholds.BUS_RISE)} takes {amount(energy / room, 'F')} on the bus "
-        f"or a brake resistor, or a slower stop; the trip must lie above {digits(bus * (1.0 + thresholds.BUS_RISE))} V",
+        words=lambda: Words(
+            title=f"The machine gives {amount(energy, 'J')} back to the bus",
+            reason=f"{'a load that drives works it as a generator' if driven else braking}; a bus whose supply takes "
+            "nothing back rises, while this model keeps it at its voltage",
+            advice=f"To keep the rise within {percent(thresholds.BUS_RISE)} takes {amount(energy / room, 'F')} on the "
+            "bus or a brake resistor, or a slower stop; the trip must lie above "
+            f"{digits(bus * (1.0 + thresholds.BUS_RISE))} V",
+        ),
     )

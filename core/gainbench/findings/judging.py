@@ -15,7 +15,7 @@ from gainbench.findings.stage import angle_findings, count_findings
 from gainbench.findings.train import driving_findings, efficiency_findings, resonance_findings
 from gainbench.results import Finding, Level
 
-_ORDER = {Level.BREAKS: 0, Level.THIN: 1, Level.HOLDS: 2}
+_WORST_FIRST = (Level.BREAKS, Level.THIN, Level.HOLDS)
 
 
 def judge(case: Case) -> tuple[Finding, ...]:
@@ -57,5 +57,4 @@ def judge(case: Case) -> tuple[Finding, ...]:
     ]
     if reachable:
         found += outcome_findings(case)
-    found.sort(key=lambda one: _ORDER[one.level])
-    return tuple(found)
+    return tuple(one for level in _WORST_FIRST for one in found if one.level is level)

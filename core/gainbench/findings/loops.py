@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 
 from gainbench.findings import thresholds
 from gainbench.findings.case import Case, LoopName
@@ -11,7 +11,7 @@ from gainbench.findings.crossings import crossings
 from gainbench.findings.ledger import costliest, costliest_lag
 from gainbench.findings.numbers import amount, decibels, degrees, digits, hertz
 from gainbench.model import DesignMethod, LoopAims
-from gainbench.results import Finding, Level, LoopAssessment, LoopCurve, LoopFigures, Refusal
+from gainbench.results import Finding, Level, LoopAssessment, LoopCurve, LoopFigures, Refusal, Words
 
 
 def loop_findings(case: Case, name: LoopName) -> Iterator[Finding]:
@@ -46,25 +46,29 @@ def loop_findings(case: Case, name: LoopName) -> Iterator[Finding]:
 
 def _waiting(case: Case) -> Finding:
     missing = case.current.gains is None
-    return Finding(
-        code="speed-loop-waits",
+    return Finding.on(
+        "speed",
+        "speed-loop-waits",
         level=Level.BREAKS,
-        subject="speed",
-        title="The speed loop cannot be judged" if not missing else "The speed loop cannot be designed",
-        reason=f"the current loop inside it {'has no gains' if missing else 'is unstable'}",
-        advice="Put the current loop right first",
+        words=lambda: Words(
+            title="The speed loop cannot be judged" if not missing else "The speed loop cannot be designed",
+            reason=f"the current loop inside it {'has no gains' if missing else 'is unstable'}",
+            advice="Put the current loop right first",
+        ),
     )
 
 
 def _refused(case: Case, name: LoopName, refusal: Refusal | None) -> Finding:
     aims: LoopAims = case.sheet.aims.current if name == "current" else case.sheet.aims.speed
-    return Finding(
-        code=f"{name}-loop-refused",
+    return Finding.on(
+        name,
+        f"{name}-loop-refused",
         level=Level.BREAKS,
-        subject=name,
-        title=f"The {name} loop cannot be had with {_asked(aims)}",
-        reason=refusal.reason if refusal is not None and refusal.reason else "no positive gains give a stable loop",
-        advice=_nearest(aims, refusal) + _less_lag(case, name, aims),
+        words=lambda: Words(
+            title=f"The {name} loop cannot be had with {_asked(aims)}",
+            reason=refusal.reason if refusal is not None and refusal.reason else "no positive gains give a stable loop",
+            advice=_nearest(aims, refusal) + _less_lag(case, name, aims),
+        ),
     )
 
 
@@ -110,13 +114,15 @@ def _nearest(aims: LoopAims, refusal: Refusal | None) -> str:
 
 
 def _unstable(name: LoopName, loop: LoopAssessment) -> Finding:
-    return Finding(
-        code=f"{name}-loop-unstable",
+    return Finding.on(
+        name,
+        f"{name}-loop-unstable",
         level=Level.BREAKS,
-        subject=name,
-        title=f"The {name} loop is unstable",
-        reason=f"a pole of the closed sampled loop lies outside the unit circle{_last_fall(loop.curve)}",
-        advice="Lower its gains or its crossover, or take delay out of the loop; do not run these gains",
+        words=lambda: Words(
+            title=f"The {name} loop is unstable",
+            reason=f"a pole of the closed sampled loop lies outside the unit circle{_last_fall(loop.curve)}",
+            advice="Lower its gains or its crossover, or take delay out of the loop; do not run these gains",
+        ),
     )
 
 
@@ -139,67 +145,76 @@ def _last_fall(curve: LoopCurve | None) -> str:
 
 
 def _thin_margins(case: Case, name: LoopName, figures: LoopFigures) -> Iterator[Finding]:
-    stage = case.sheet.rig.stage
-    period = stage.current_period if name == "current" else stage.speed_period
-    crossover = figures.crossover_hz
-    than = f" than {amount(crossover, 'Hz')}" if crossover is not None else ""
     margin, gain, reduction = figures.phase_margin_deg, figures.gain_margin_db, figures.gain_reduction_db
     thin_phase = margin is not None and margin < thresholds.PHASE_MARGIN_DEG
     if margin is not None and thin_phase:
-        cost = costliest(case, name)
-        yield _thin(
-            name,
-            "phase-margin",
-            title=f"The {name} loop's phase margin is {degrees(margin)}",
-            reason=f"below {degrees(thresholds.PHASE_MARGIN_DEG)} it rings, and parts that differ from the sheet "
-            f"can take what is left{_sensitivity(figures)}" + (f"; {cost.reason}" if cost is not None else ""),
-            advice=f"Ask for more margin or a lower crossover{than}"
-            + (f"; {cost.advice}" if cost is not None and cost.advice else ""),
-        )
+        yield _thin(name, "phase-margin", lambda: _thin_phase(case, name, figures, margin=margin))
     thin_gain = gain is not None and gain < thresholds.GAIN_MARGIN_DB
     if gain is not None and thin_gain:
         yield _thin(
             name,
             "gain-margin",
-            title=f"The {name} loop's gain margin is {decibels(gain)}",
-            reason=f"a loop gain {digits(10.0 ** (gain / 20.0))} times as high is unstable; {_what_raises(name)}",
-            advice=f"Ask for a lower crossover{than}, or take delay out of the loop",
+            lambda: Words(
+                title=f"The {name} loop's gain margin is {decibels(gain)}",
+                reason=f"a loop gain {digits(10.0 ** (gain / 20.0))} times as high is unstable; {_what_raises(name)}",
+                advice=f"Ask for a lower crossover{_than(figures)}, or take delay out of the loop",
+            ),
         )
     thin_reduction = reduction is not None and reduction > -thresholds.GAIN_MARGIN_DB
     if reduction is not None and thin_reduction:
         yield _thin(
             name,
             "gain-reduction",
-            title=f"The {name} loop bears {decibels(-reduction)} less gain and no more",
-            reason=f"at {digits(10.0 ** (reduction / 20.0))} times its gain it is unstable; {_what_lowers(name)}",
-            advice="Ask for more phase margin, or lower Ki",
+            lambda: Words(
+                title=f"The {name} loop bears {decibels(-reduction)} less gain and no more",
+                reason=f"at {digits(10.0 ** (reduction / 20.0))} times its gain it is unstable; {_what_lowers(name)}",
+                advice="Ask for more phase margin, or lower Ki",
+            ),
         )
     peak = figures.peak_sensitivity
     if peak is not None and peak > thresholds.PEAK_SENSITIVITY and not (thin_phase or thin_gain or thin_reduction):
         yield _thin(
             name,
             "sensitivity",
-            title=f"The {name} loop's peak sensitivity is {digits(peak)}",
-            reason=f"its curve comes within {digits(1.0 / peak)} of -1: each margin by itself looks better than both "
-            f"together; values above {digits(thresholds.PEAK_SENSITIVITY)} are seldom wanted",
-            advice=f"Ask for more margin or a lower crossover{than}",
+            lambda: Words(
+                title=f"The {name} loop's peak sensitivity is {digits(peak)}",
+                reason=f"its curve comes within {digits(1.0 / peak)} of -1: each margin by itself looks better than "
+                f"both together; values above {digits(thresholds.PEAK_SENSITIVITY)} are seldom wanted",
+                advice=f"Ask for more margin or a lower crossover{_than(figures)}",
+            ),
         )
-    delay = figures.delay_margin_s
+    delay, stage = figures.delay_margin_s, case.sheet.rig.stage
+    period = stage.current_period if name == "current" else stage.speed_period
     if delay is not None and delay < thresholds.DELAY_MARGIN_PERIODS * period:
         yield _thin(
             name,
             "delay-margin",
-            title=f"The {name} loop bears {amount(delay, 's')} more delay and no more",
-            reason=f"that is {digits(delay / period)} of its period of {amount(period, 's')}: one period of delay that "
-            "the sheet does not count makes it unstable",
-            advice=f"Measure the delay of the real loop, or ask for a lower crossover{than}",
+            lambda: Words(
+                title=f"The {name} loop bears {amount(delay, 's')} more delay and no more",
+                reason=f"that is {digits(delay / period)} of its period of {amount(period, 's')}: one period of delay "
+                "that the sheet does not count makes it unstable",
+                advice=f"Measure the delay of the real loop, or ask for a lower crossover{_than(figures)}",
+            ),
         )
 
 
-def _thin(name: LoopName, code: str, *, title: str, reason: str, advice: str) -> Finding:
-    return Finding(
-        code=f"{name}-{code}-thin", level=Level.THIN, subject=name, title=title, reason=reason, advice=advice
+def _thin(name: LoopName, code: str, words: Callable[[], Words]) -> Finding:
+    return Finding.on(name, f"{name}-{code}-thin", level=Level.THIN, words=words)
+
+
+def _thin_phase(case: Case, name: LoopName, figures: LoopFigures, *, margin: float) -> Words:
+    cost = costliest(case, name)
+    return Words(
+        title=f"The {name} loop's phase margin is {degrees(margin)}",
+        reason=f"below {degrees(thresholds.PHASE_MARGIN_DEG)} it rings, and parts that differ from the sheet "
+        f"can take what is left{_sensitivity(figures)}" + (f"; {cost.reason}" if cost is not None else ""),
+        advice=f"Ask for more margin or a lower crossover{_than(figures)}"
+        + (f"; {cost.advice}" if cost is not None and cost.advice else ""),
     )
+
+
+def _than(figures: LoopFigures) -> str:
+    return f" than {amount(figures.crossover_hz, 'Hz')}" if figures.crossover_hz is not None else ""
 
 
 def _sensitivity(figures: LoopFigures) -> str:
@@ -220,6 +235,10 @@ def _what_lowers(name: LoopName) -> str:
 
 
 def _holds(name: LoopName, figures: LoopFigures) -> Finding:
+    return Finding.on(name, f"{name}-loop-holds", level=Level.HOLDS, words=lambda: _holding(name, figures))
+
+
+def _holding(name: LoopName, figures: LoopFigures) -> Words:
     margin, crossover = figures.phase_margin_deg, figures.crossover_hz
     title = f"The {name} loop holds"
     if margin is not None:
@@ -234,10 +253,6 @@ def _holds(name: LoopName, figures: LoopFigures) -> Finding:
     if figures.peak_sensitivity is not None and figures.peak_sensitivity > 0.0:
         clear = digits(1.0 / figures.peak_sensitivity)
         parts.append(f"peak sensitivity {digits(figures.peak_sensitivity)}: the curve stays {clear} clear of -1")
-    return Finding(
-        code=f"{name}-loop-holds",
-        level=Level.HOLDS,
-        subject=name,
-        title=title,
-        reason=", ".join(parts) or "all poles of the closed sampled loop lie inside the unit circle",
+    return Words(
+        title=title, reason=", ".join(parts) or "all poles of the closed sampled loop lie inside the unit circle"
     )

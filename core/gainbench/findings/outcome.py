@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from gainbench.findings import thresholds
 from gainbench.findings.case import Case
 from gainbench.findings.numbers import amount, digits, percent, speed
-from gainbench.results import Finding, Level, Response
+from gainbench.results import Finding, Level, Response, Words
 from gainbench.simulate.duty import first_tick
 
 
@@ -24,16 +24,18 @@ def step_findings(case: Case) -> Iterator[Finding]:
     Finding
         One of level ``thin``, or none.
     """
-    step = case.locked_step
-    if step is None or step.overshoot_percent is None or step.overshoot_percent <= thresholds.OVERSHOOT_PERCENT:
+    overshoot = case.locked_step.overshoot_percent if case.locked_step is not None else None
+    if overshoot is None or overshoot <= thresholds.OVERSHOOT_PERCENT:
         return
-    yield Finding(
-        code="current-overshoot",
+    yield Finding.on(
+        "current",
+        "current-overshoot",
         level=Level.THIN,
-        subject="current",
-        title=f"A step of the current overshoots by {digits(step.overshoot_percent)} %",
-        reason="with the rotor locked and no clamp; torque and overcurrent trip see that peak at every step",
-        advice="Ask for more margin or a lower crossover, or lower Ki",
+        words=lambda: Words(
+            title=f"A step of the current overshoots by {digits(overshoot)} %",
+            reason="with the rotor locked and no clamp; torque and overcurrent trip see that peak at every step",
+            advice="Ask for more margin or a lower crossover, or lower Ki",
+        ),
     )
 
 
@@ -67,15 +69,17 @@ def outcome_findings(case: Case) -> Iterator[Finding]:
 
 def _overshoot(case: Case, overshoot: float) -> Finding:
     weighted = case.sheet.aims.speed.reference_weight > 0.0
-    return Finding(
-        code="speed-overshoot",
+    return Finding.on(
+        "speed",
+        "speed-overshoot",
         level=Level.THIN,
-        subject="speed",
-        title=f"The speed overshoots by {digits(overshoot)} %",
-        reason=f"it reaches {speed(case.sheet.duty.reference_speed * (1.0 + overshoot / 100.0))} "
-        f"on a reference of {speed(case.sheet.duty.reference_speed)}",
-        advice=("Lower reference_weight, which touches no margin, or give" if weighted else "Give")
-        + " the reference a ramp, or ask for more phase margin",
+        words=lambda: Words(
+            title=f"The speed overshoots by {digits(overshoot)} %",
+            reason=f"it reaches {speed(case.sheet.duty.reference_speed * (1.0 + overshoot / 100.0))} "
+            f"on a reference of {speed(case.sheet.duty.reference_speed)}",
+            advice=("Lower reference_weight, which touches no margin, or give" if weighted else "Give")
+            + " the reference a ramp, or ask for more phase margin",
+        ),
     )
 
 
@@ -112,14 +116,16 @@ def _not_settled(case: Case, response: Response) -> Finding:
         why = f"the current sits on its limit for {amount(response.figures.current_limited_s, 's')}"
     else:
         why = _slow_integral(case, window)
-    return Finding(
-        code="speed-not-settled",
+    return Finding.on(
+        "speed",
+        "speed-not-settled",
         level=Level.THIN,
-        subject="speed",
-        title=f"The speed does not settle within the {amount(window, 's')} it is given",
-        reason=f"at their end it is {speed(error)} off, {percent(error / reference)} of the reference, and "
-        f"{percent(thresholds.SETTLED_SHARE)} are the band{'; ' if why else ''}{why}",
-        advice="Give the duty more time, or ask for a faster speed loop",
+        words=lambda: Words(
+            title=f"The speed does not settle within the {amount(window, 's')} it is given",
+            reason=f"at their end it is {speed(error)} off, {percent(error / reference)} of the reference, and "
+            f"{percent(thresholds.SETTLED_SHARE)} are the band{'; ' if why else ''}{why}",
+            advice="Give the duty more time, or ask for a faster speed loop",
+        ),
     )
 
 
@@ -129,14 +135,16 @@ def _not_recovered(case: Case, response: Response) -> Finding:
     window = end - duty.load_time
     error = _error_before(case, response, end)
     why = _slow_integral(case, window)
-    return Finding(
-        code="load-not-recovered",
+    return Finding.on(
+        "speed",
+        "load-not-recovered",
         level=Level.THIN,
-        subject="speed",
-        title=f"The speed does not come back within {amount(window, 's')} of the load step",
-        reason=f"at their end it is {speed(error)} off, {percent(error / abs(duty.reference_speed))} of the reference, "
-        f"and {percent(thresholds.SETTLED_SHARE)} are the band{'; ' if why else ''}{why}",
-        advice="Raise Ki, by a lower phase margin or a higher crossover" if why else "Ask for a faster speed loop",
+        words=lambda: Words(
+            title=f"The speed does not come back within {amount(window, 's')} of the load step",
+            reason=f"at their end it is {speed(error)} off, {percent(error / abs(duty.reference_speed))} of the "
+            f"reference, and {percent(thresholds.SETTLED_SHARE)} are the band{'; ' if why else ''}{why}",
+            advice="Raise Ki, by a lower phase margin or a higher crossover" if why else "Ask for a faster speed loop",
+        ),
     )
 
 
@@ -154,13 +162,15 @@ def _off_at_end(case: Case, response: Response) -> Iterator[Finding]:
     if error <= band or end <= duty.reference_at:
         return
     why = _slow_integral(case, end - (duty.load_time if duty.load_step != 0.0 else duty.reference_at))
-    yield Finding(
-        code="speed-off-at-end",
+    yield Finding.on(
+        "speed",
+        "speed-off-at-end",
         level=Level.THIN,
-        subject="speed",
-        title=f"The speed is still {speed(error)} off at {amount(end, 's')}",
-        reason=(why or f"that is more than {speed(band)}, which would count as settled"),
-        advice="Give the duty more time, raise Ki, or ask for a faster speed loop",
+        words=lambda: Words(
+            title=f"The speed is still {speed(error)} off at {amount(end, 's')}",
+            reason=(why or f"that is more than {speed(band)}, which would count as settled"),
+            advice="Give the duty more time, raise Ki, or ask for a faster speed loop",
+        ),
     )
 
 

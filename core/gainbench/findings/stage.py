@@ -12,7 +12,7 @@ from gainbench.findings.demand import Demand, sheet_amperes
 from gainbench.findings.numbers import amount, degrees, digits, percent, speed
 from gainbench.model import IntegratorRule, MachineKind
 from gainbench.plant import current_size
-from gainbench.results import Finding, Level
+from gainbench.results import Finding, Level, Words
 
 _AT_ONCE = {IntegratorRule.BACKWARD: 1.0, IntegratorRule.TRAPEZOID: 0.5, IntegratorRule.FORWARD: 0.0}
 """Share of Ki T e that a PI puts out at the tick at which the error comes."""
@@ -45,19 +45,20 @@ def count_findings(case: Case) -> Iterator[Finding]:
     share = current / (machine.rated_current * current_size(machine))
     if share <= thresholds.COUNT_CURRENT_SHARE:
         return
-    doubled = 2 * stage.speed_window
-    cost = ""
-    if figures.crossover_hz is not None:
-        cost = f" and costs {degrees(180.0 * figures.crossover_hz * stage.speed_window * period)} of phase"
-    yield Finding(
-        code="encoder-count-coarse",
-        level=Level.THIN,
-        subject="stage",
-        title=f"One encoder count asks for {sheet_amperes(current, machine)}",
-        reason=f"a count is {speed(step)} at {amount(stage.speed_rate, 'Hz')}, and the speed PI makes "
-        f"{percent(share)} of the rated current of it: it is heard, and it heats",
-        advice=f"A speed_window of {doubled} halves it{cost}; a speed_filter or a finer encoder does as well",
-    )
+
+    def words() -> Words:
+        doubled = 2 * stage.speed_window
+        cost = ""
+        if figures.crossover_hz is not None:
+            cost = f" and costs {degrees(180.0 * figures.crossover_hz * stage.speed_window * period)} of phase"
+        return Words(
+            title=f"One encoder count asks for {sheet_amperes(current, machine)}",
+            reason=f"a count is {speed(step)} at {amount(stage.speed_rate, 'Hz')}, and the speed PI makes "
+            f"{percent(share)} of the rated current of it: it is heard, and it heats",
+            advice=f"A speed_window of {doubled} halves it{cost}; a speed_filter or a finer encoder does as well",
+        )
+
+    yield Finding.on("stage", "encoder-count-coarse", level=Level.THIN, words=words)
 
 
 def angle_findings(case: Case, states: tuple[Demand, ...]) -> Iterator[Finding]:
@@ -83,16 +84,18 @@ def angle_findings(case: Case, states: tuple[Demand, ...]) -> Iterator[Finding]:
     angle = 360.0 * electrical * (stage.update_delay + 0.5) * stage.current_period
     per_turn = stage.current_rate / electrical if electrical > 0.0 else math.inf
     if per_turn < thresholds.TICKS_PER_TURN:
-        yield Finding(
-            code="commutation-too-slow",
+        yield Finding.on(
+            "stage",
+            "commutation-too-slow",
             level=Level.BREAKS,
-            subject="stage",
-            title=f"At {speed(reference)} an electrical turn has {digits(per_turn)} current ticks",
-            reason=f"{amount(electrical, 'Hz')} electrical at a rate of {amount(stage.current_rate, 'Hz')}: below "
-            f"{thresholds.TICKS_PER_TURN:.0f} ticks the steps of the voltage make no rotating field that this model "
-            "could stand for",
-            advice=f"Raise current_rate above {amount(thresholds.TICKS_PER_TURN * electrical, 'Hz')}, "
-            "or lower reference_speed",
+            words=lambda: Words(
+                title=f"At {speed(reference)} an electrical turn has {digits(per_turn)} current ticks",
+                reason=f"{amount(electrical, 'Hz')} electrical at a rate of {amount(stage.current_rate, 'Hz')}: below "
+                f"{thresholds.TICKS_PER_TURN:.0f} ticks the steps of the voltage make no rotating field that this "
+                "model could stand for",
+                advice=f"Raise current_rate above {amount(thresholds.TICKS_PER_TURN * electrical, 'Hz')}, "
+                "or lower reference_speed",
+            ),
         )
     elif angle > thresholds.DELAY_ANGLE_DEG:
         sine = case.plant.kind is MachineKind.PM_SINE
@@ -100,14 +103,17 @@ def angle_findings(case: Case, states: tuple[Demand, ...]) -> Iterator[Finding]:
         astray = (
             f"{share} of the voltage lands on the other axis" if sine else "each pair of windings is switched that late"
         )
-        yield Finding(
-            code="commutation-angle-late",
+        yield Finding.on(
+            "stage",
+            "commutation-angle-late",
             level=Level.THIN,
-            subject="stage",
-            title=f"The rotor turns {degrees(angle)} electrical between sample and voltage",
-            reason=f"that is {digits(stage.update_delay + 0.5)} current periods at {speed(reference)}; uncorrected, "
-            f"{astray}, which this model leaves out",
-            advice="Advance the angle by that much, in proportion to the speed, where firmware turns the voltage back"
-            if sine
-            else "Advance the commutation by that much, in proportion to the speed",
+            words=lambda: Words(
+                title=f"The rotor turns {degrees(angle)} electrical between sample and voltage",
+                reason=f"that is {digits(stage.update_delay + 0.5)} current periods at {speed(reference)}; "
+                f"uncorrected, {astray}, which this model leaves out",
+                advice="Advance the angle by that much, in proportion to the speed, where firmware turns the voltage "
+                "back"
+                if sine
+                else "Advance the commutation by that much, in proportion to the speed",
+            ),
         )

@@ -10,7 +10,7 @@ from gainbench.findings import thresholds
 from gainbench.findings.case import Case
 from gainbench.findings.demand import Demand, sheet_amperes
 from gainbench.findings.numbers import amount, digits, hertz, percent, speed
-from gainbench.results import Finding, Level
+from gainbench.results import Finding, Level, Words
 
 
 def resonance_findings(case: Case) -> Iterator[Finding]:
@@ -40,15 +40,17 @@ def resonance_findings(case: Case) -> Iterator[Finding]:
         reason += "and steps leave the load swinging"
     else:
         reason = f"the load cannot follow: the loop holds the motor, and the load swings behind it at {where}"
-    yield Finding(
-        code="train-resonance-near",
+    yield Finding.on(
+        "train",
+        "train-resonance-near",
         level=Level.THIN,
-        subject="train",
-        title=f"The crossover of {hertz(crossover)} is near the shaft's antiresonance at {where}"
-        if crossover < low
-        else f"The crossover of {hertz(crossover)} is above the shaft's antiresonance at {where}",
-        reason=f"{reason}; motor and load swing against each other at {hertz(high)}",
-        advice=f"Ask for a crossover below {hertz(low / thresholds.RESONANCE_DISTANCE)}, or stiffen the shaft",
+        words=lambda: Words(
+            title=f"The crossover of {hertz(crossover)} is near the shaft's antiresonance at {where}"
+            if crossover < low
+            else f"The crossover of {hertz(crossover)} is above the shaft's antiresonance at {where}",
+            reason=f"{reason}; motor and load swing against each other at {hertz(high)}",
+            advice=f"Ask for a crossover below {hertz(low / thresholds.RESONANCE_DISTANCE)}, or stiffen the shaft",
+        ),
     )
 
 
@@ -70,14 +72,16 @@ def efficiency_findings(case: Case) -> Iterator[Finding]:
         return
     share = train.load_inertia / train.ratio**2 / plant.inertia
     more = share * (1.0 / train.efficiency - 1.0)
-    yield Finding(
-        code="train-efficiency-low",
+    yield Finding.on(
+        "train",
+        "train-efficiency-low",
         level=Level.THIN,
-        subject="train",
-        title=f"An efficiency of {percent(train.efficiency)} is not counted for the torque that accelerates",
-        reason="the losses enlarge load torque and load friction, but not the inertia's torque; speeding up may take "
-        f"up to {percent(more)} more current than computed, slowing down less",
-        advice="Leave that much room below the current limit, or measure a run-up on the bench",
+        words=lambda: Words(
+            title=f"An efficiency of {percent(train.efficiency)} is not counted for the torque that accelerates",
+            reason="the losses enlarge load torque and load friction, but not the inertia's torque; speeding up may "
+            f"take up to {percent(more)} more current than computed, slowing down less",
+            advice="Leave that much room below the current limit, or measure a run-up on the bench",
+        ),
     )
 
 
@@ -107,14 +111,16 @@ def driving_findings(case: Case, states: tuple[Demand, ...]) -> Iterator[Finding
         if brakes
         else "friction holds it back"
     )
-    yield Finding(
-        code="load-drives",
+    yield Finding.on(
+        "train",
+        "load-drives",
         level=Level.THIN,
-        subject="train",
-        title=f"The load of {amount(abs(worst.load), 'N*m')} drives the motion",
-        reason=f"at {speed(worst.speed)} it pushes the way the shaft turns, so that {held}; without power it runs away "
-        "or falls",
-        advice="Give it a holding brake, and the bus a place for the energy that comes back"
-        if brakes
-        else "Give it a holding brake, and check that friction is there to stay",
+        words=lambda: Words(
+            title=f"The load of {amount(abs(worst.load), 'N*m')} drives the motion",
+            reason=f"at {speed(worst.speed)} it pushes the way the shaft turns, so that {held}; without power it runs "
+            "away or falls",
+            advice="Give it a holding brake, and the bus a place for the energy that comes back"
+            if brakes
+            else "Give it a holding brake, and check that friction is there to stay",
+        ),
     )

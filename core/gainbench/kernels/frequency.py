@@ -15,64 +15,24 @@ from numpy.typing import NDArray
 
 from gainbench.kernels.compiled import compiled, inlined
 from gainbench.kernels.lifting import BACKWARD, FORWARD
+from gainbench.kernels.linalg import to_hessenberg
 from gainbench.kernels.loop_records import SampledPlant
 
 
 @compiled
 def hessenberg(plant: SampledPlant) -> SampledPlant:
-    """The same plant in other coordinates, by Householder reflections: m is zero below its first subdiagonal.
-
-    References
-    ----------
-    G. H. Golub, C. F. Van Loan, Matrix Computations, section 7.4 (from memory).
-    """
+    """The same plant in other coordinates, by reflections: m is zero below its first subdiagonal."""
     n = plant.m.shape[0]
-    m, c = plant.m.copy(), plant.c.copy()
-    b0, b1, bw = plant.b0.copy(), plant.b1.copy(), plant.bw.copy()
-    v = np.zeros(n)
-    for k in range(n - 2):
-        norm = 0.0
-        for r in range(k + 1, n):
-            norm += m[r, k] * m[r, k]
-        norm = math.sqrt(norm)
-        rest = 0.0
-        for r in range(k + 2, n):
-            rest += abs(m[r, k])
-        if rest == 0.0:
-            continue
-        for r in range(n):
-            v[r] = m[r, k] if r > k else 0.0
-        v[k + 1] += norm if v[k + 1] >= 0.0 else -norm
-        size = 0.0
-        for r in range(k + 1, n):
-            size += v[r] * v[r]
-        beta = 2.0 / size
-        for j in range(n):
-            total = 0.0
-            for r in range(k + 1, n):
-                total += v[r] * m[r, j]
-            for r in range(k + 1, n):
-                m[r, j] -= beta * total * v[r]
-        for r in range(n):
-            total = 0.0
-            for j in range(k + 1, n):
-                total += m[r, j] * v[j]
-            for j in range(k + 1, n):
-                m[r, j] -= beta * total * v[j]
-        for column in (c, b0, b1, bw):
-            total = 0.0
-            for r in range(k + 1, n):
-                total += v[r] * column[r]
-            for r in range(k + 1, n):
-                column[r] -= beta * total * v[r]
-        for r in range(k + 2, n):
-            m[r, k] = 0.0
+    m, columns = plant.m.copy(), np.empty((4, n))
+    for k in range(n):
+        columns[0, k], columns[1, k], columns[2, k], columns[3, k] = plant.c[k], plant.b0[k], plant.b1[k], plant.bw[k]
+    to_hessenberg(m, columns)
     return SampledPlant(
         m,
-        c,
-        b0,
-        b1,
-        bw,
+        columns[0],
+        columns[1],
+        columns[2],
+        columns[3],
         plant.d0,
         plant.d1,
         plant.dw,

@@ -24,6 +24,8 @@ def held_step(
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """exp(a width) - I and the integral of exp(a t) bv over ``width``."""
     n = a.shape[0]
+    if width == 0.0:
+        return np.zeros((n, n)), np.zeros(n)
     joint = np.zeros((n + 1, n + 1))
     for r in range(n):
         for c in range(n):
@@ -123,61 +125,62 @@ def closed_tick(
 
 
 @compiled
-def without(d: NDArray[np.float64], index: int, size: int) -> NDArray[np.float64]:
-    """The leading ``size`` rows and columns without the one at ``index``."""
-    out = np.empty((size - 1, size - 1))
-    for r in range(size - 1):
-        for c in range(size - 1):
-            out[r, c] = d[r if r < index else r + 1, c if c < index else c + 1]
-    return out
+def lifted_loop(
+    tick: NDArray[np.float64],
+    sampled: int,
+    held: int,
+    split: bool,
+    kp: float,
+    ki_period: float,
+    rule: int,
+    back_emf: float,
+    delay: int,
+    divisor: int,
+) -> tuple[NDArray[np.float64], float, float, float]:
+    """``divisor`` ticks of the loop of :func:`closed_tick`, without the column of the angle, the last state of a plant.
 
-
-@compiled
-def closed_current(
-    tick: NDArray[np.float64], sampled: int, held: int, split: bool, kp: float, ki_period: float, rule: int
-) -> NDArray[np.float64]:
-    """Closed current loop in delta form, feedforward cut, the free angle left out."""
-    d = closed_tick(tick, sampled, held, split, kp, ki_period, rule, 0.0)
-    return without(d, tick.shape[0] - 1, d.shape[0] - 2)
-
-
-@compiled
-def lifted_tick(d: NDArray[np.float64], angle: int, delay: int, divisor: int) -> NDArray[np.float64]:
-    """``divisor`` ticks of a closed loop, shape (n + 1, n + 3), without the column of the angle.
-
-    The leading columns are the states; then come the new reference, the older one, which acts through the first
-    ``delay`` ticks, and the measured speed. The row of the angle stands last: its growth over the period.
+    Returns shape (n + 4, n): the states' change, then a row for what the new reference, the older one, which acts
+    through the first ``delay`` ticks, and the measured speed each add to it, and one for what the states add to the
+    angle; beside it what those three add to the angle.
     """
-    size = d.shape[0] - 2
+    d = closed_tick(tick, sampled, held, split, kp, ki_period, rule, back_emf)
+    size, angle = d.shape[0] - 2, tick.shape[0] - 1
     before = power_minus_identity(d, delay)
     after = power_minus_identity(d, divisor - delay)
-    whole = matmul(after, before)
-    out = np.empty((size, size + 2))
+    both = matmul(after, before)
+    out = np.empty((size + 3, size - 1))
+    still = np.empty(3)
     for r in range(size):
         source = r if r < angle else (r + 1 if r < size - 1 else angle)
+        row = r if r < size - 1 else size + 2
         for c in range(size - 1):
             column = c if c < angle else c + 1
-            out[r, c] = whole[source, column] + before[source, column] + after[source, column]
+            out[row, c] = both[source, column] + before[source, column] + after[source, column]
         new = after[source, size]
-        out[r, size - 1] = new
-        out[r, size] = whole[source, size] + before[source, size] + after[source, size] - new
-        out[r, size + 1] = whole[source, size + 1] + before[source, size + 1] + after[source, size + 1]
-    return out
+        older = both[source, size] + before[source, size]
+        measured = both[source, size + 1] + before[source, size + 1] + after[source, size + 1]
+        if r < size - 1:
+            out[size - 1, r], out[size, r], out[size + 1, r] = new, older, measured
+        else:
+            still[0], still[1], still[2] = new, older, measured
+    return out, still[0], still[1], still[2]
 
 
 @compiled
-def closed_speed(plant: SampledPlant, kp: float, ki_period: float, rule: int) -> NDArray[np.float64]:
-    """Closed speed loop in delta form.
+def closed_loop(plant: SampledPlant, kp: float, ki_period: float, rule: int) -> NDArray[np.float64]:
+    """A sampled plant with its PI controller around it, in delta form.
 
-    States: those of the plant, the older reference, the raw values of the window, the measured value, the
-    integrator, the previous error.
+    States: those of the plant, the older reference, the raw values of the window, the integrator, and where they count
+    the measured value (filter) and the previous error (trapezoid).
     """
     n = plant.m.shape[0]
     delayed = plant.window + plant.shift - 1
+    filtered, trapezoid = plant.filter_gain != 1.0, rule == TRAPEZOID
     older, raw = n, n + 1
-    value = raw + delayed
-    integral, previous = value + 1, value + 2
-    size = value + 3
+    integral = raw + delayed
+    value = integral + 1
+    previous = value + (1 if filtered else 0)
+    size = previous + (1 if trapezoid else 0)
     # Rows of what follows from the states at the tick: raw value, measured value, reference.
     now, measured = np.zeros(size), np.zeros(size)
     share = plant.filter_gain * plant.scale
@@ -187,12 +190,13 @@ def closed_speed(plant: SampledPlant, kp: float, ki_period: float, rule: int) ->
             measured[c] = share * plant.c[c]
     for j in range(max(plant.shift - 1, 0), delayed):
         measured[raw + j] = share
-    measured[value] = 1.0 - plant.filter_gain
-    half = 0.5 if rule == TRAPEZOID else 1.0
+    if filtered:
+        measured[value] = 1.0 - plant.filter_gain
+    half = 0.5 if trapezoid else 1.0
     change, reference = np.zeros(size), np.zeros(size)
     for c in range(size):
         change[c] = -half * ki_period * measured[c]
-    if rule == TRAPEZOID:
+    if trapezoid:
         change[previous] += half * ki_period
     for c in range(size):
         reference[c] = (0.0 if rule == FORWARD else change[c]) - kp * measured[c]
@@ -208,9 +212,11 @@ def closed_speed(plant: SampledPlant, kp: float, ki_period: float, rule: int) ->
         out[older, c] = reference[c]
         if delayed > 0:
             out[raw, c] = now[c] + plant.d0 * reference[c] + plant.dw * measured[c]
-        out[value, c] = measured[c]
         out[integral, c] = change[c]
-        out[previous, c] = -measured[c]
+        if filtered:
+            out[value, c] = measured[c]
+        if trapezoid:
+            out[previous, c] = -measured[c]
     if delayed > 0:
         out[raw, older] += plant.d1
     for j in range(1, delayed):

@@ -6,6 +6,8 @@ is a hundred times the arithmetic. The tests hold each function against scipy.li
 
 from __future__ import annotations
 
+import math
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -27,6 +29,55 @@ def matmul(a: NDArray[np.float64], b: NDArray[np.float64]) -> NDArray[np.float64
                 for j in range(columns):
                     out[i, j] += factor * b[k, j]
     return out
+
+
+@compiled
+def to_hessenberg(m: NDArray[np.float64], columns: NDArray[np.float64]) -> None:
+    """Bring ``m`` to Hessenberg form in place by Householder reflections, and ``columns``, shape (k, n), along.
+
+    References
+    ----------
+    G. H. Golub, C. F. Van Loan, Matrix Computations, section 7.4 (from memory).
+    """
+    n = m.shape[0]
+    v = np.zeros(n)
+    for k in range(n - 2):
+        norm = 0.0
+        for r in range(k + 1, n):
+            norm += m[r, k] * m[r, k]
+        norm = math.sqrt(norm)
+        rest = 0.0
+        for r in range(k + 2, n):
+            rest += abs(m[r, k])
+        if rest == 0.0:
+            continue
+        for r in range(n):
+            v[r] = m[r, k] if r > k else 0.0
+        v[k + 1] += norm if v[k + 1] >= 0.0 else -norm
+        size = 0.0
+        for r in range(k + 1, n):
+            size += v[r] * v[r]
+        beta = 2.0 / size
+        for j in range(n):
+            total = 0.0
+            for r in range(k + 1, n):
+                total += v[r] * m[r, j]
+            for r in range(k + 1, n):
+                m[r, j] -= beta * total * v[r]
+        for r in range(n):
+            total = 0.0
+            for j in range(k + 1, n):
+                total += m[r, j] * v[j]
+            for j in range(k + 1, n):
+                m[r, j] -= beta * total * v[j]
+        for column in range(columns.shape[0]):
+            total = 0.0
+            for r in range(k + 1, n):
+                total += v[r] * columns[column, r]
+            for r in range(k + 1, n):
+                columns[column, r] -= beta * total * v[r]
+        for r in range(k + 2, n):
+            m[r, k] = 0.0
 
 
 @compiled

@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gainbench.kernels.compiled import compiled
-from gainbench.kernels.lifting import FORWARD, TRAPEZOID
+from gainbench.kernels.lifting import FORWARD, TRAPEZOID, held_step
 
 LONGEST = 400_000
 """Ticks after which a step that still moves is taken as it is."""
@@ -36,21 +36,14 @@ class LockedPi(NamedTuple):
 
 
 class Winding(NamedTuple):
-    """The locked machine and the sampler's filter, exactly over both parts of a tick: exp - I and input columns."""
+    """The locked machine and the sampler's filter."""
 
     resistance: float
     """[ohm]."""
-    lag: float
-    """L/R [s]."""
-    filtered: bool
-    early: NDArray[np.float64]
-    """Over the first part of a tick, states current and filtered current, shape (2, 2)."""
-    early_in: NDArray[np.float64]
-    """shape (2,)."""
-    late: NDArray[np.float64]
-    """Over the rest, shape (2, 2)."""
-    late_in: NDArray[np.float64]
-    """shape (2,)."""
+    inductance: float
+    """[H]."""
+    filter_time: float
+    """[s]; 0 is none."""
 
 
 class StepTimes(NamedTuple):
@@ -84,6 +77,8 @@ def met(start: float, rest: float, level: float, time: float) -> float:
 @compiled
 def run_step(
     winding: Winding,
+    steps: NDArray[np.float64],
+    inputs: NDArray[np.float64],
     period: float,
     held: int,
     part: float,
@@ -92,10 +87,22 @@ def run_step(
     curve: NDArray[np.float64],
     per_tick: int,
 ) -> StepTimes:
-    """Run the step; ``curve`` takes the current ``per_tick`` times a tick, for as long as it is."""
-    resistance, tau = winding.resistance, winding.lag
-    early, early_in = winding.early, winding.early_in
-    late, late_in = winding.late, winding.late_in
+    """Run the step; ``curve`` takes the current ``per_tick`` times a tick, for as long as it is.
+
+    ``steps``, shape (2, 2, 2), and ``inputs``, shape (2, 2), are the winding exactly over both parts of a tick: exp - I
+    and what a volt adds, states current and filtered current.
+    """
+    resistance, tau = winding.resistance, winding.inductance / winding.resistance
+    sampled_late = winding.filter_time > 0.0
+    # What the exponential is at the points of each stretch, at even parts of the tick; NaN outside the stretch.
+    decay = np.full((2, per_tick), math.nan)
+    for stretch in range(2):
+        low = 0.0 if stretch == 0 else part * period
+        width = part * period if stretch == 0 else (1.0 - part) * period
+        for j in range(per_tick):
+            moment = (j + 1.0) / per_tick * period
+            if low < moment + 1e-12 * period and moment <= low + width * (1.0 + 1e-9):
+                decay[stretch, j] = math.exp(-(moment - low) / tau)
     current, filtered = 0.0, 0.0
     integral, previous = 0.0, 0.0
     under_way = np.zeros(4)
@@ -105,7 +112,7 @@ def run_step(
     ended = ticks
     size = 1e-300
     for k in range(ticks):
-        sample = filtered if winding.filtered else current
+        sample = filtered if sampled_late else current
         error = 1.0 - sample
         voltage, integral = next_voltage(pi, error, previous, integral)
         previous = error
@@ -121,24 +128,16 @@ def run_step(
             applied = under_way[held + 1] if stretch == 0 else under_way[held]
             begin = k * period + (0.0 if stretch == 0 else part * period)
             rest = applied / resistance
-            if stretch == 0:
-                after = current + early[0, 0] * current + early_in[0] * applied
-                filtered += early[1, 0] * current + early[1, 1] * filtered + early_in[1] * applied
-            else:
-                after = current + late[0, 0] * current + late_in[0] * applied
-                filtered += late[1, 0] * current + late[1, 1] * filtered + late_in[1] * applied
+            after = current + steps[stretch, 0, 0] * current + inputs[stretch, 0] * applied
+            filtered += steps[stretch, 1, 0] * current + steps[stretch, 1, 1] * filtered + inputs[stretch, 1] * applied
             if math.isnan(at_low) and after >= 0.1:
                 at_low = begin + met(current, rest, 0.1, tau)
             if math.isnan(at_high) and after >= 0.9:
                 at_high = begin + met(current, rest, 0.9, tau)
-            if per_tick > 0:
-                # Points of this stretch, at even parts of the tick.
-                for j in range(per_tick):
-                    place = k * per_tick + j + 1
-                    moment = (j + 1.0) / per_tick * period
-                    low = 0.0 if stretch == 0 else part * period
-                    if place < curve.size and low < moment + 1e-12 * period and moment <= low + width * (1.0 + 1e-9):
-                        curve[place] = rest + (current - rest) * math.exp(-(moment - low) / tau)
+            for j in range(per_tick):
+                place = k * per_tick + j + 1
+                if place < curve.size and not math.isnan(decay[stretch, j]):
+                    curve[place] = rest + (current - rest) * decay[stretch, j]
             current = after
             largest = max(largest, current)
         size = max(size, abs(voltage))
@@ -163,13 +162,33 @@ def locked_step(
     held: int,
     part: float,
     pi: LockedPi,
-) -> tuple[StepTimes, NDArray[np.float64], int]:
-    """The step until it settles, its curve from the first to where it hardly moves, and points per tick."""
-    # np.int64: numba would compile a copy of the callee for each literal.
-    times = run_step(winding, period, held, part, pi, int(np.int64(LONGEST)), np.empty(0), int(np.int64(0)))
-    shown = min(max(times.ticks + times.ticks // 4, 12), LONGEST)
-    per_tick = max(1, min(16, POINTS // shown))
-    # The first point is the start, at rest.
-    curve = np.zeros(shown * per_tick + 1)
-    run_step(winding, period, held, part, pi, shown, curve, per_tick)
-    return times, curve, per_tick
+) -> tuple[float, float, NDArray[np.float64], NDArray[np.float64]]:
+    """The step until it settles: time from 10 to 90 %, the largest current, and its curve to where it hardly moves.
+
+    The curve is instants and current; what the step does not get to is NaN.
+    """
+    a, column = np.zeros((2, 2)), np.zeros(2)
+    a[0, 0] = -winding.resistance / winding.inductance
+    if winding.filter_time > 0.0:
+        a[1, 0], a[1, 1] = 1.0 / winding.filter_time, -1.0 / winding.filter_time
+    column[0] = 1.0 / winding.inductance
+    steps, inputs = np.empty((2, 2, 2)), np.empty((2, 2))
+    for stretch in range(2):
+        over, gained = held_step(a, column, (part if stretch == 0 else 1.0 - part) * period)
+        for r in range(2):
+            steps[stretch, r, 0], steps[stretch, r, 1] = over[r, 0], over[r, 1]
+            inputs[stretch, r] = gained[r]
+    # First until it settles, then once more for what is drawn: the first point is the start, at rest.
+    ticks, per_tick, curve = LONGEST, 0, np.zeros(0)
+    times = StepTimes(math.nan, math.nan, math.nan, 0)
+    for turn in range(2):
+        found = run_step(winding, steps, inputs, period, held, part, pi, ticks, curve, per_tick)
+        if turn == 0:
+            times = found
+            ticks = min(max(times.ticks + times.ticks // 4, 12), LONGEST)
+            per_tick = max(1, min(16, POINTS // ticks))
+            curve = np.zeros(ticks * per_tick + 1)
+    time, step = np.empty(curve.size), period / per_tick
+    for k in range(curve.size):
+        time[k] = k * step
+    return times.at_high - times.at_low, times.largest, time, curve

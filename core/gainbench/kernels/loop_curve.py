@@ -7,7 +7,7 @@ import math
 import numpy as np
 from numpy.typing import NDArray
 
-from gainbench.kernels.compiled import compiled
+from gainbench.kernels.compiled import compiled, inlined
 from gainbench.kernels.frequency import integral_turned, loop_at, workspace
 from gainbench.kernels.frequency_batch import plant_over
 from gainbench.kernels.loop_grid import Grid
@@ -56,6 +56,11 @@ def trace_loop(
     known = plant_over(plant, turned)
     for k in range(w.size):
         known[k] *= kp + ki_period * integral_turned(turned[0, k], turned[1, k], rule)
+    k = 1
+    while k < w.size and not far(known[k - 1], known[k]):
+        k += 1
+    if k == w.size:
+        return w, known
     room = 4 * w.size
     frequency = np.empty(room)
     loop = np.empty(room, dtype=np.complex128)
@@ -89,16 +94,28 @@ def trace_loop(
     return frequency[:count].copy(), loop[:count].copy()
 
 
+@inlined
+def beyond_one(value: complex) -> bool:
+    """Whether \\|L\\| is above 1."""
+    return value.real * value.real + value.imag * value.imag > 1.0
+
+
+@compiled
+def edge_count(loop: NDArray[np.complex128]) -> int:
+    """How often a curve goes from one side of \\|L\\| = 1 to the other."""
+    count = 0
+    for k in range(1, loop.size):
+        count += 1 if beyond_one(loop[k]) != beyond_one(loop[k - 1]) else 0
+    return count
+
+
 @compiled
 def edges_of_one(loop: NDArray[np.complex128]) -> NDArray[np.int64]:
     """The points after which a curve goes from one side of \\|L\\| = 1 to the other."""
-    out = np.empty(loop.size, dtype=np.int64)
+    out = np.empty(edge_count(loop), dtype=np.int64)
     count = 0
-    before = False
-    for k in range(loop.size):
-        above = loop[k].real * loop[k].real + loop[k].imag * loop[k].imag > 1.0
-        if k > 0 and above != before:
+    for k in range(1, loop.size):
+        if beyond_one(loop[k]) != beyond_one(loop[k - 1]):
             out[count] = k - 1
             count += 1
-        before = above
-    return out[:count]
+    return out

@@ -103,25 +103,56 @@ def summit(
     high: float,
     work: NDArray[np.complex128],
 ) -> tuple[float, float]:
-    """Frequency and value of the largest ``sign`` times measure within a bracket, by golden section."""
-    ratio = 0.5 * (math.sqrt(5.0) - 1.0)
-    left, right = high - ratio * (high - low), low + ratio * (high - low)
-    at_left = sign * measure(kind, loop_at(plant, kp, ki_period, rule, left, work))
-    at_right = sign * measure(kind, loop_at(plant, kp, ki_period, rule, right, work))
-    for _ in range(44):
-        if high - low <= 1e-9 * high:
+    """Frequency and value of the largest ``sign`` times measure within a bracket, by parabolas and golden sections.
+
+    References
+    ----------
+    R. P. Brent, Algorithms for Minimization without Derivatives, 1973, chapter 5 (from memory).
+    """
+    share = 0.5 * (3.0 - math.sqrt(5.0))
+    best = low + share * (high - low)
+    at_best = sign * measure(kind, loop_at(plant, kp, ki_period, rule, best, work))
+    # The best places so far, and the last two steps.
+    second, third, at_second, at_third = best, best, at_best, at_best
+    step, before = 0.0, 0.0
+    for _ in range(60):
+        middle = 0.5 * (low + high)
+        least = 3e-10 * best
+        if abs(best - middle) <= 2.0 * least - 0.5 * (high - low):
             break
-        if at_left > at_right:
-            high, right, at_right = right, left, at_left
-            left = high - ratio * (high - low)
-            at_left = sign * measure(kind, loop_at(plant, kp, ki_period, rule, left, work))
+        one, two = (best - second) * (at_best - at_third), (best - third) * (at_best - at_second)
+        top, under = (best - third) * two - (best - second) * one, 2.0 * (one - two)
+        if under < 0.0:
+            top, under = -top, -under
+        # A parabola counts within the bracket, and where it moves by less than half the step before last.
+        if (
+            abs(before) > least
+            and abs(top) < abs(0.5 * under * before)
+            and (under * (low - best) < top < under * (high - best))
+        ):
+            before, step = step, top / under
         else:
-            low, left, at_left = left, right, at_right
-            right = low + ratio * (high - low)
-            at_right = sign * measure(kind, loop_at(plant, kp, ki_period, rule, right, work))
-    if at_left > at_right:
-        return left, sign * at_left
-    return right, sign * at_right
+            before = high - best if best < middle else low - best
+            step = share * before
+        place = best + (step if abs(step) >= least else math.copysign(least, step))
+        value = sign * measure(kind, loop_at(plant, kp, ki_period, rule, place, work))
+        if value >= at_best:
+            if place >= best:
+                low = best
+            else:
+                high = best
+            third, at_third, second, at_second = second, at_second, best, at_best
+            best, at_best = place, value
+            continue
+        if place < best:
+            low = place
+        else:
+            high = place
+        if value >= at_second or second == best:
+            third, at_third, second, at_second = second, at_second, place, value
+        elif value >= at_third or third in (best, second):
+            third, at_third = place, value
+    return best, sign * at_best
 
 
 @compiled
@@ -255,8 +286,25 @@ def loop_numbers(
     ki_period: float,
     rule: int,
     grid: Grid,
-) -> tuple[LoopNumbers, NDArray[np.float64], NDArray[np.complex128]]:
-    """Figures and curve of a loop over its grid and the points between; figures mean something for a stable one."""
+) -> tuple[tuple[float, float, float, float, float, float, float], NDArray[np.float64], NDArray[np.complex128]]:
+    """Figures and curve of a loop over its grid and the points between; figures mean something for a stable one.
+
+    The figures are those of :class:`gainbench.results.LoopFigures`, in its units and order, NaN where there is none;
+    the curve is frequency in Hz and L. Plain results: numba looks up a class anew each time it gives back one.
+    """
     reduced = hessenberg(plant)
     w, loop = trace_loop(reduced, kp, ki_period, rule, grid)
-    return numbers_of(reduced, kp, ki_period, rule, w, loop), w, loop
+    found = numbers_of(reduced, kp, ki_period, rule, w, loop)
+    hertz = np.empty(w.size)
+    for k in range(w.size):
+        hertz[k] = w[k] / math.tau
+    figures = (
+        found.crossover / math.tau,
+        math.degrees(found.phase_margin),
+        found.delay_margin,
+        20.0 * math.log10(found.gain_margin),
+        20.0 * math.log10(found.gain_reduction),
+        found.peak_sensitivity,
+        found.bandwidth / math.tau,
+    )
+    return figures, hertz, loop

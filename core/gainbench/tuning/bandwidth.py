@@ -13,7 +13,7 @@ import numpy as np
 from gainbench.margins import read_loop
 from gainbench.results import Refusal
 from gainbench.sampling import Loop
-from gainbench.tuning.exact import crossover_grid, gains_for, holds
+from gainbench.tuning.exact import crossover_grid, gains_for, gains_that_hold
 from gainbench.tuning.outcome import Design
 
 AGREES = 1e-6
@@ -80,10 +80,10 @@ def reached_bandwidth(loop: Loop, crossover: float, *, margin: float) -> float |
         [rad/s]; None where positive gains with a stable loop do not meet the two, where the loop has another crossover
         before this one, or where ``|L/(1 + L)|`` never falls through ``1/sqrt(2)``.
     """
-    gains = gains_for(loop, crossover, margin=margin)
-    if gains is None or not holds(loop, gains):
+    gains = gains_that_hold(loop, crossover, margin=margin)
+    if gains is None:
         return None
-    figures = read_loop(loop, gains).figures
+    figures = read_loop(loop, gains, stable=True).figures
     if figures.crossover_hz is None or figures.bandwidth_hz is None:
         return None
     if abs(figures.crossover_hz * math.tau / crossover - 1.0) > AGREES:

@@ -58,6 +58,26 @@ def holds(loop: Loop, gains: Gains | None) -> bool:
     return is_stable(loop, gains)
 
 
+def gains_that_hold(loop: Loop, crossover: float, *, margin: float) -> Gains | None:
+    """As :func:`gains_for`; None too where they are not positive and finite, or do not keep the loop stable.
+
+    Parameters
+    ----------
+    loop : Loop
+        Current or speed loop.
+    crossover : float
+        wc [rad/s], > 0.
+    margin : float
+        [rad].
+
+    Returns
+    -------
+    Gains or None
+    """
+    gains = gains_for(loop, crossover, margin=margin)
+    return gains if holds(loop, gains) else None
+
+
 def crossover_margin(loop: Loop, *, crossover: float, margin: float) -> Design:
     """Gains with this margin at this crossover, exact on the sampled loop.
 
@@ -76,12 +96,12 @@ def crossover_margin(loop: Loop, *, crossover: float, margin: float) -> Design:
         A refusal where no positive gains with a stable loop meet both, with the nearest crossover and the largest
         margin that can be met.
     """
-    gains = gains_for(loop, crossover, margin=margin)
-    if holds(loop, gains):
+    gains = gains_that_hold(loop, crossover, margin=margin)
+    if gains is not None:
         return Design(gains=gains, stable=True, asked_crossover=crossover)
     return Design(
         refusal=Refusal(
-            reason=_limit(loop, gains, crossover=crossover, margin=margin),
+            reason=_limit(loop, crossover=crossover, margin=margin),
             nearest_crossover=nearest_crossover(loop, crossover, margin=margin),
             largest_margin=largest_margin(loop, crossover),
         ),
@@ -108,7 +128,7 @@ def nearest_crossover(loop: Loop, crossover: float, *, margin: float) -> float |
         if is_stable(loop, Gains(kp=float(kp[k]), ki=float(ki_period[k]) / period)):
             beyond = min(max(crossover, grid[0]), grid[-1])
             return _edge(
-                lambda w: holds(loop, gains_for(loop, w, margin=margin)),
+                lambda w: gains_that_hold(loop, w, margin=margin) is not None,
                 met=float(grid[k]),
                 unmet=float(grid[k - 1] if beyond < grid[k] else grid[min(k + 1, GRID - 1)]),
                 stop=beyond,
@@ -123,11 +143,11 @@ def largest_margin(loop: Loop, crossover: float) -> float | None:
     top = math.pi / 2.0
     steps = np.arange(top, -1e-9, -MARGIN_STEP)
     for k, margin in enumerate(steps):
-        if holds(loop, gains_for(loop, crossover, margin=float(margin))):
+        if gains_that_hold(loop, crossover, margin=float(margin)) is not None:
             if k == 0:
                 return top
             return _edge(
-                lambda value: holds(loop, gains_for(loop, crossover, margin=value)),
+                lambda value: gains_that_hold(loop, crossover, margin=value) is not None,
                 met=float(margin),
                 unmet=float(steps[k - 1]),
                 stop=float(steps[k - 1]),
@@ -149,8 +169,9 @@ def _edge(meets: Callable[[float], bool], *, met: float, unmet: float, stop: flo
     return met
 
 
-def _limit(loop: Loop, gains: Gains | None, *, crossover: float, margin: float) -> str:
+def _limit(loop: Loop, *, crossover: float, margin: float) -> str:
     """What stands in the way, as a sentence."""
+    gains = gains_for(loop, crossover, margin=margin)
     hertz, wanted = crossover / math.tau, math.degrees(margin)
     nyquist = 0.5 / loop.plant.period
     if gains is None:

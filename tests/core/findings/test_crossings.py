@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from gainbench.findings.crossings import crossings
+from gainbench.findings.crossings import crosses_again, crossings
 from gainbench.results import LoopCurve
 
 
@@ -20,6 +20,8 @@ def test_an_integrator_with_delay_crosses_once_with_its_margin(bench):
 def test_a_peak_makes_three(bench):
     found = crossings(bench.curve(60.0, delay=1e-3, nyquist=1e3, bumps=((200.0, 8.0),)))
     assert [one.falling for one in found] == [True, False, True]
+    assert crosses_again(bench.curve(60.0, delay=1e-3, nyquist=1e3, bumps=((200.0, 8.0),)))
+    assert not crosses_again(bench.curve(60.0, delay=1e-3, nyquist=1e3))
     assert 60.0 < found[1].frequency_hz < 200.0 < found[2].frequency_hz
 
 

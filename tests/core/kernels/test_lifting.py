@@ -11,13 +11,11 @@ from gainbench.kernels.lifting import (
     BACKWARD,
     FORWARD,
     TRAPEZOID,
-    closed_current,
-    closed_speed,
+    closed_loop,
     closed_tick,
     held_step,
-    lifted_tick,
+    lifted_loop,
     tick_step,
-    without,
 )
 from gainbench.kernels.loop_records import SampledPlant
 from quantities import assert_quantity
@@ -37,14 +35,13 @@ def parts_of(tick):
 
 def speed_plant(*, held, part, rule, back_emf, divisor, delay, window, gain):
     """What the library's sampling makes of the kernels, for this plant."""
-    closed = closed_tick(tick_step(A, BV, TS, part), 0, held, part > 0.0, KP, KI_T, rule, back_emf)
-    whole = lifted_tick(closed, 2, delay, divisor)
-    n = whole.shape[0] - 1
-    growth = whole[n] if window else np.concatenate((np.eye(n)[1], np.zeros(3)))
+    tick = tick_step(A, BV, TS, part)
+    rows, *still = lifted_loop(tick, 0, held, part > 0.0, KP, KI_T, rule, back_emf, delay, divisor)
+    n = rows.shape[1]
+    d0, d1, dw = still if window else (0.0, 0.0, 0.0)
     tw = divisor * TS
     return SampledPlant(
-        whole[:n, :n].copy(), growth[:n].copy(), whole[:n, n].copy(), whole[:n, n + 1].copy(), whole[:n, n + 2].copy(),
-        float(growth[n]), float(growth[n + 1]), float(growth[n + 2]),
+        rows[:n], rows[n + 3] if window else np.eye(n)[1], rows[n], rows[n + 1], rows[n + 2], d0, d1, dw,
         tw, 1 if window else 0, max(window, 1), 1.0 / (window * tw) if window else 1.0, gain,
     )  # fmt: skip
 
@@ -149,6 +146,12 @@ def test_the_lifted_loop_is_the_fast_loop_seen_at_speed_ticks(rule, held, part, 
         older = asked[n]
 
 
+def test_a_stretch_of_no_time_changes_nothing():
+    step, column = held_step(A, BV, 0.0)
+    assert not step.any()
+    assert not column.any()
+
+
 def test_a_delay_of_no_tick_leaves_no_share_of_the_older_reference():
     plant = speed_plant(held=1, part=0.0, rule=BACKWARD, back_emf=0.0, divisor=10, delay=0, window=1, gain=1.0)
     assert_quantity(plant.b1, np.zeros(plant.m.shape[0]), atol=1e-15, unit="1", why="difference of equal columns")
@@ -162,9 +165,11 @@ def test_the_closed_speed_loop_is_its_parts_closed(rule, delay, window, gain, ba
     plant = speed_plant(
         held=1, part=0.2, rule=BACKWARD, back_emf=back_emf, divisor=6, delay=delay, window=window, gain=gain
     )
-    matrix = closed_speed(plant, kp, ki_t, rule)
+    matrix = closed_loop(plant, kp, ki_t, rule)
     size = matrix.shape[0]
     n = plant.m.shape[0]
+    # Older reference, integrator and the raw values under way, and what filter and trapezoid keep.
+    assert size == n + 2 + plant.window + plant.shift - 1 + int(gain != 1.0) + int(rule == TRAPEZOID)
     rng = np.random.default_rng(4)
     start = rng.standard_normal(n)
     state = np.zeros(size)
@@ -183,15 +188,3 @@ def test_the_closed_speed_loop_is_its_parts_closed(rule, delay, window, gain, ba
         older = r
         state = state + matrix @ state
         assert_quantity(state[:n], x, rtol=1e-9, atol=1e-10, unit="states of the plant", why=ROUNDING)
-
-
-def test_the_current_loop_leaves_the_angle_out():
-    closed = closed_current(tick_step(A, BV, TS, 0.0), 0, 1, False, KP, KI_T, BACKWARD)
-    assert closed.shape == (4, 4)
-    poles = np.linalg.eigvals(closed) + 1.0
-    assert np.all(np.abs(poles) < 1.0)
-
-
-def test_without_drops_one_row_and_column():
-    d = np.arange(16.0).reshape(4, 4)
-    assert_quantity(without(d, 1, 4), d[np.ix_([0, 2, 3], [0, 2, 3])], unit="1", why="a copy")

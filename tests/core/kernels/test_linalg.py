@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from scipy.linalg import expm
 
-from gainbench.kernels.linalg import expm_minus_identity, matmul, power_minus_identity
+from gainbench.kernels.linalg import expm_minus_identity, matmul, power_minus_identity, to_hessenberg
 from quantities import assert_quantity
 
 ROUNDING = "rounding through a dozen squarings"
@@ -67,3 +67,13 @@ def test_product():
     rng = np.random.default_rng(9)
     a, b = rng.standard_normal((3, 5)), rng.standard_normal((5, 2))
     assert_quantity(matmul(a, b), a @ b, atol=1e-14, unit="1", why="order of summation")
+
+
+def test_reflections_turn_a_matrix_and_what_comes_along():
+    rng = np.random.default_rng(3)
+    matrix, columns = rng.standard_normal((5, 5)), rng.standard_normal((2, 5))
+    h, along = matrix.copy(), columns.copy()
+    to_hessenberg(h, along)
+    assert not np.tril(h, -2).any()
+    assert_quantity(along @ along.T, columns @ columns.T, rtol=1e-13, unit="1", why=ROUNDING)
+    assert_quantity(along[0] @ h @ along[1], columns[0] @ matrix @ columns[1], rtol=1e-12, unit="1", why=ROUNDING)

@@ -7,7 +7,7 @@ import math
 import numpy as np
 
 from gainbench.kernels.frequency import hessenberg
-from gainbench.kernels.loop_curve import edges_of_one, far, trace_loop
+from gainbench.kernels.loop_curve import edge_count, edges_of_one, far, trace_loop
 from gainbench.kernels.loop_grid import loop_grid
 from gainbench.kernels.loop_records import SampledPlant
 from quantities import assert_quantity
@@ -47,5 +47,6 @@ def test_edges_are_where_the_gain_goes_through_one():
     loop = np.array([2.0, 1.5j, 0.5, -0.2, -3.0, 1.0, 0.1], dtype=complex)
     loop.setflags(write=False)
     assert edges_of_one(loop).tolist() == [1, 3, 4]
+    assert [edge_count(loop), edge_count(loop[:2]), edge_count(loop[:0])] == [3, 0, 0]
     assert edges_of_one(loop[:2]).size == 0
     assert edges_of_one(loop[:0]).size == 0

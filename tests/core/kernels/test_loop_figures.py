@@ -7,15 +7,17 @@ import math
 import numpy as np
 import pytest
 
-from gainbench.kernels import loop_figures
 from gainbench.kernels.frequency import hessenberg, loop_at, workspace
+from gainbench.kernels.loop_curve import trace_loop
 from gainbench.kernels.loop_figures import (
     ACROSS,
     CLOSED,
     SENSITIVITY,
     SIZE,
     first_fall,
+    loop_numbers,
     measure,
+    numbers_of,
     root,
     summit,
 )
@@ -28,7 +30,9 @@ ROUNDING = "roots refined to rounding"
 
 
 def figures_of(plant, kp, ki_period, grid):
-    return loop_figures.loop_numbers(plant, kp, ki_period, 0, Grid(grid.w, half_turns(grid.w, plant.period)))
+    reduced = hessenberg(plant)
+    w, loop = trace_loop(reduced, kp, ki_period, 0, Grid(grid.w, half_turns(grid.w, plant.period)))
+    return numbers_of(reduced, kp, ki_period, 0, w, loop), w, loop
 
 
 def integrator(gain_period: float, *, period: float = 1.0, shift: int = 1) -> SampledPlant:
@@ -175,3 +179,39 @@ def test_root_and_summit_of_a_bracket():
     assert_quantity(
         value, measure(SENSITIVITY, loop_at(plant, 1.0, 0.0, 0, place, work)), rtol=1e-12, unit="1", why=ROUNDING
     )
+
+
+def test_a_summit_within_a_wide_bracket_and_at_its_edge():
+    # Where |1 + L| of an integrator with a sample of delay is least, against a dense grid around that place.
+    plant = hessenberg(integrator(0.5))
+    work = workspace(plant)
+
+    def value_at(w):
+        return measure(SENSITIVITY, loop_at(plant, 1.0, 0.0, 0, w, work))
+
+    place, value = summit(plant, 1.0, 0.0, 0, SENSITIVITY, 1.0, 1e-3, 3.0, work)
+    assert 0.1 < place < 2.9
+    around = place * (1.0 + np.linspace(-1e-3, 1e-3, 401))
+    assert value >= max(value_at(w) for w in around) - 1e-14
+    # A bracket whose largest value is at its edge gives that edge.
+    edge, _ = summit(plant, 1.0, 0.0, 0, SENSITIVITY, 1.0, 0.2 * place, 0.5 * place, work)
+    assert_quantity(edge, 0.5 * place, rtol=1e-8, unit="rad", why="width at which the search ends")
+
+
+def test_figures_and_curve_in_the_units_of_results():
+    plant = integrator(1.0 / 3.0, period=1e-3)
+    grid = loop_grid(plant.period, 1, peaks=np.empty(0), spreads=np.empty(0))
+    numbers, w, loop = figures_of(plant, 1.0, 0.0, grid)
+    figures, hertz, response = loop_numbers(plant, 1.0, 0.0, 0, grid)
+    expected = (
+        numbers.crossover / math.tau,
+        math.degrees(numbers.phase_margin),
+        numbers.delay_margin,
+        20.0 * math.log10(numbers.gain_margin),
+        numbers.peak_sensitivity,
+        numbers.bandwidth / math.tau,
+    )
+    assert math.isnan(figures[4])
+    assert_quantity((*figures[:4], *figures[5:]), expected, rtol=1e-15, unit="of each", why="the same numbers")
+    assert_quantity(hertz, w / math.tau, rtol=1e-15, unit="Hz", why="the same numbers")
+    assert_quantity(np.abs(response / loop - 1.0), 0.0, atol=1e-8, unit="1", why="sine and cosine of the grid's shares")

@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 from gainbench.kernels.frequency import hessenberg, plant_response
-from gainbench.kernels.lifting import closed_speed
+from gainbench.kernels.lifting import closed_loop
 from gainbench.kernels.loop_grid import loop_grid
 from gainbench.kernels.winding import fed_part, growth
 from gainbench.model import Firmware, SpeedSensor
@@ -44,7 +44,7 @@ def test_the_count_of_unstable_poles(window, feedforward, ki):
     assert slow.imag == 0.0
     seen = set()
     for kp in np.geomspace(0.003, 30.0, 15):
-        poles = 1.0 + np.linalg.eigvals(closed_speed(plant, kp, ki * 5e-4, 0))
+        poles = 1.0 + np.linalg.eigvals(closed_loop(plant, kp, ki * 5e-4, 0))
         expected = int(np.sum(np.abs(poles) > 1.0))
         turns = growth(plant, kp, ki * 5e-4, 0, slow.real, grid)
         outside = int(np.sum(np.abs(1.0 + np.delete(own, np.argmin(np.abs(own)))) > 1.0)) + 1 + (ki != 0.0) - turns
