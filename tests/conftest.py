@@ -16,7 +16,7 @@ TREE = Path(__file__).resolve().parents[1]
 OUTSIDE_DATA = TREE.parent / "shared" / "data"
 
 # Kernels that were compiled once are not compiled again for the folders that the tests give themselves.
-os.environ.setdefault("NUMBA_CACHE_DIR", str(code_cache("linalg").parents[1]))
+os.environ.setdefault("NUMBA_CACHE_DIR", str(code_cache("linalg").parents[2]))
 # Before anything imports Qt: a window that a test opens must never come up on the screen of the one who runs it.
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
 

@@ -161,9 +161,12 @@ def window(qtbot, qapp, desk, appearance, answers):
 
 @pytest.fixture(autouse=True)
 def nothing_left_over(request):
-    """A window that a test leaves on the screen is a failure."""
+    """A window that a test leaves on the screen is a failure; what is to be deleted goes now."""
     yield
     if "qapp" in request.fixturenames:
+        from PySide6.QtCore import QCoreApplication, QEvent
         from PySide6.QtWidgets import QApplication
 
         assert not [one for one in QApplication.topLevelWidgets() if one.isVisible()]
+        # Outside of an event loop nothing else does it, and each style sheet is applied to all that is left.
+        QCoreApplication.sendPostedEvents(None, QEvent.Type.DeferredDelete.value)

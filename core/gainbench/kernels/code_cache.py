@@ -49,8 +49,8 @@ def code_cache(module: str) -> Path:
 def _home() -> Path:
     chosen = os.environ.get("NUMBA_CACHE_DIR")
     if chosen:
-        return Path(chosen) / "gainbench-kernels"
-    if sys.platform == "win32":
+        home = Path(chosen)
+    elif sys.platform == "win32":
         home = Path(os.environ.get("LOCALAPPDATA") or Path.home() / "AppData" / "Local")
     elif sys.platform == "darwin":
         home = Path.home() / "Library" / "Caches"

@@ -14,7 +14,7 @@ from gainbench.kernels.code_cache import code_cache
 
 def test_a_chosen_folder_is_used(monkeypatch, tmp_path):
     monkeypatch.setenv("NUMBA_CACHE_DIR", str(tmp_path))
-    assert code_cache("linalg").parent == tmp_path / "gainbench-kernels"
+    assert code_cache("linalg").parent == tmp_path / "gainbench" / "kernels"
 
 
 @pytest.mark.skipif(sys.platform in ("win32", "darwin"), reason="the rule of other systems is another")
