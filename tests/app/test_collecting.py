@@ -1,4 +1,5 @@
 import gc
+import weakref
 
 import pytest
 
@@ -21,6 +22,22 @@ def test_the_collector_comes_back_with_the_last_hold():
     assert not gc.isenabled()
     second.release()
     assert gc.isenabled()
+
+
+class Knot:
+    """Refers to itself: only the collector takes it away."""
+
+    def __init__(self):
+        self.own = self
+
+
+def test_what_piled_up_goes_with_the_hold():
+    hold = CollectorHold()
+    hold.take()
+    left = weakref.ref(Knot())
+    assert left() is not None
+    hold.release()
+    assert left() is None
 
 
 def test_taking_or_releasing_twice_is_once():

@@ -325,7 +325,7 @@ class Bench:
         timer.start(1)
         loop.exec()
         self.rest(0.3)
-        run.last_painted = not run.due and (not run.unsaid or not run.word_waits)
+        run.last_painted = not run.due and not run.unsaid
         return run
 
     # Stretches of events
@@ -338,7 +338,8 @@ class Bench:
         def act(number: int) -> None:
             self.floor.shift = number % 100
             self.floor.update()
-            self.run.ready = len(self.run.due)
+            self._computed()
+            self._told()
 
         found = self.stretch(rate, act)
         self.floor.hide()

@@ -113,7 +113,7 @@ class LoopCard(Card):
         outer.addWidget(self.gains)
         desk.changed.connect(self.refresh)
         desk.number_moved.connect(self._follow)
-        desk.assessed.connect(lambda: self._show_map())
+        desk.assessed.connect(self._show_map)
         desk.words_due.connect(self.show_words)
         self.refresh()
         self._show_map()

@@ -1,4 +1,4 @@
-"""Small dense linear algebra for kernels: the matrix exponential as a difference from one, and products.
+"""Small dense linear algebra for kernels: the matrix exponential as a difference from one, Hessenberg form, products.
 
 Everything here works on matrices of fewer than twenty rows, where the call overhead of a general library
 is a hundred times the arithmetic. The tests hold each function against scipy.linalg.

@@ -24,17 +24,7 @@ from gainbench.kernels.response_records import (
     Script,
     Tally,
 )
-from gainbench.kernels.returned import (
-    CURRENT_AFTER,
-    CURRENT_BEFORE,
-    LOAD_SPEED_BEFORE,
-    LOGGED,
-    SPEED_BEFORE,
-    TWIST_BEFORE,
-    VOLTAGE_DURING,
-    new_log,
-    returned_energy,
-)
+from gainbench.kernels.returned import LOGGED, new_log, note_segment, returned_energy
 from gainbench.kernels.travel import travel
 
 REFERENCE = 0
@@ -216,26 +206,14 @@ def tick_loop(elastic: bool, plain: bool) -> Callable[[Run, NDArray[np.float64],
                     if strays(first_table, elastic, rests, x, y):
                         strayed = int(FIRST)
                         break
-                    first_log[CURRENT_BEFORE + place] = x.current
-                    first_log[SPEED_BEFORE + place] = x.speed
-                    first_log[VOLTAGE_DURING + place] = voltage
-                    first_log[CURRENT_AFTER + place] = y.current
-                    if elastic:
-                        first_log[LOAD_SPEED_BEFORE + place] = x.load_speed
-                        first_log[TWIST_BEFORE + place] = x.twist
+                    note_segment(first_log, place, elastic, x, voltage, y)
                     x = y
                 voltage = voltage_of(held_ticks, newest, held, older)
                 y = glide(table, elastic, not plain, x, voltage)
                 if strays(table, elastic, rests, x, y):
                     strayed = int(SECOND)
                     break
-                log[CURRENT_BEFORE + place] = x.current
-                log[SPEED_BEFORE + place] = x.speed
-                log[VOLTAGE_DURING + place] = voltage
-                log[CURRENT_AFTER + place] = y.current
-                if elastic:
-                    log[LOAD_SPEED_BEFORE + place] = x.load_speed
-                    log[TWIST_BEFORE + place] = x.twist
+                note_segment(log, place, elastic, x, voltage, y)
                 x = y
                 logged += 1
                 tick += 1

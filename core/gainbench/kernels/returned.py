@@ -71,6 +71,20 @@ def state_before(log: NDArray[np.float64], place: int) -> PlantState:
 
 
 @inlined
+def note_segment(
+    log: NDArray[np.float64], place: int, elastic: bool, x: PlantState, voltage: float, y: PlantState
+) -> None:
+    """Note a segment that began with x and ended with y."""
+    log[CURRENT_BEFORE + place] = x.current
+    log[SPEED_BEFORE + place] = x.speed
+    log[VOLTAGE_DURING + place] = voltage
+    log[CURRENT_AFTER + place] = y.current
+    if elastic:
+        log[LOAD_SPEED_BEFORE + place] = x.load_speed
+        log[TWIST_BEFORE + place] = x.twist
+
+
+@inlined
 def next_term(flow: Flow, resting: int, term: Term, u: Inputs, share: float) -> Term:
     """The term behind ``term``: its derivative times ``share``, the segment's length over the order of the new term."""
     i, w, l, t = term.current, term.speed, term.load_speed, term.twist  # noqa: E741
